@@ -1,0 +1,1 @@
+"""Formulas: arrays in, arrays out; no records, no files, no printing."""
