@@ -266,6 +266,44 @@ class InputNote:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Trace:
+    """A received waveform at one corner; both lists have one entry per sample. [s], [V]"""
+
+    receiver_pin: str
+    corner: str
+    edge: str
+    state: Literal["now", "after"]
+    time_s: list[float]
+    volt: list[float]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Spectrum:
+    """Emission of one net over frequency; a list entry per judged line. [Hz], [dBuV/m]"""
+
+    state: Literal["now", "after"]
+    detector: str
+    frequency_hz: list[float]
+    order: list[int]
+    expected_dbuv_per_m: list[float]
+    up_to_dbuv_per_m: list[float]
+    trace_dbuv_per_m: list[float]
+    cable_dbuv_per_m: list[float]
+    limit_dbuv_per_m: list[float]
+    corner_low_hz: float | None = None
+    corner_high_hz: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Pictures:
+    """What a plot of one net needs; filled by explain, empty elsewhere."""
+
+    waveforms: list[Trace] = field(default_factory=list)
+    spectra: list[Spectrum] = field(default_factory=list)
+    thresholds_v: dict[str, float] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class NetResult:
     """Everything known about one judged net."""
 
@@ -298,6 +336,7 @@ class NetResult:
     checks: list[Check] = field(default_factory=list)
     remedies: list[Remedy] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
+    pictures: Pictures | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
