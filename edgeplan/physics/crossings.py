@@ -1,0 +1,247 @@
+"""Where sampled rows cross their thresholds: first, last, and between the samples."""
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+Array = NDArray[Any]
+
+GUARD = 0.01  # a threshold is read at -1 %, 0 and +1 % of the swing
+NEAR = 4  # samples in which a clean edge passes the three readings
+
+
+def first_reach(level: Array, threshold: Array) -> Array:
+    """Index of the first sample at or above the threshold of its row, n where there is none.
+
+    Parameters
+    ----------
+    level : numpy.ndarray
+        Samples (M, n). [-]
+    threshold : numpy.ndarray
+        One a row (M,). [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Indices (M,). [-]
+
+    Examples
+    --------
+    >>> first_reach(np.array([[0.0, 0.6, 0.4, 1.0]]), np.array([0.5])).tolist()
+    [1]
+    """
+    above = level >= threshold[:, None]
+    index = above.argmax(axis=1)
+    index[~above[np.arange(len(level)), index]] = level.shape[1]
+    return np.asarray(index)
+
+
+def last_reach(level: Array, threshold: Array) -> Array:
+    """Index of the sample from which a row stays at or above its threshold, n if it does not.
+
+    Parameters
+    ----------
+    level : numpy.ndarray
+        Samples (M, n). [-]
+    threshold : numpy.ndarray
+        One a row (M,). [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Indices (M,). [-]
+
+    Examples
+    --------
+    >>> last_reach(np.array([[0.0, 0.6, 0.4, 1.0]]), np.array([0.5])).tolist()
+    [3]
+    """
+    below = (level < threshold[:, None])[:, ::-1]
+    back = below.argmax(axis=1)
+    never = ~below[np.arange(len(level)), back]
+    return np.where(never, 0, level.shape[1] - back)
+
+
+def first_readings(level: Array, threshold: Array) -> Array:
+    """First reach of k thresholds, each read at -1 %, 0 and +1 % of the swing.
+
+    Parameters
+    ----------
+    level : numpy.ndarray
+        Samples (M, n). [-]
+    threshold : numpy.ndarray
+        Thresholds (k, M). [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Indices (3, k, M), n where never reached. [-]
+
+    Examples
+    --------
+    >>> first_readings(np.array([[0.0, 0.495, 0.4, 1.0]]), np.array([[0.5]])).ravel().tolist()
+    [1, 3, 3]
+    """
+    samples = level.shape[1]
+    index = np.empty((3, *threshold.shape), dtype=np.intp)
+    for kind, own in enumerate(threshold):
+        index[0, kind] = first_reach(level, own - level.dtype.type(GUARD))
+    near = _near(level, index[0])
+    for reading, wanted in ((1, threshold), (2, threshold + level.dtype.type(GUARD))):
+        above = near >= wanted
+        step = above.argmax(axis=0)
+        index[reading] = index[0] + step
+        found = above.any(axis=0)
+        for kind, row in _pairs(~found & (index[0] < samples)):
+            index[reading, kind, row] = first_reach(level[row], wanted[kind, row])
+    return np.minimum(index, samples)
+
+
+def last_readings(level: Array, threshold: Array, first: Array) -> Array:
+    """Last reach of q thresholds, each read at -1 %, 0 and +1 % of the swing.
+
+    Parameters
+    ----------
+    level : numpy.ndarray
+        Samples (M, n). [-]
+    threshold : numpy.ndarray
+        Thresholds (q, M). [-]
+    first : numpy.ndarray
+        Indices (3, q, M) of :func:`first_readings`. [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Indices (3, q, M), n where the row does not stay above. [-]
+
+    Examples
+    --------
+    >>> wave = np.array([[0.0, 0.6, 0.495, 1.0]])
+    >>> threshold = np.array([[0.5]])
+    >>> last_readings(wave, threshold, first_readings(wave, threshold)).ravel().tolist()
+    [1, 3, 3]
+    """
+    index = first.copy()
+    guard = level.dtype.type(GUARD)
+    for kind, own in enumerate(threshold):
+        # Lowest sample after the edge: where it stays clear the last reach is the first one.
+        lowest = lowest_after(level, first[2, kind])
+        row = np.flatnonzero(lowest < own + guard)
+        again = level[row]
+        for reading, shift in enumerate((-guard, 0, guard)):
+            index[reading, kind, row] = last_reach(again, own[row] + shift)
+    return index
+
+
+def lowest_after(level: Array, start: Array) -> Array:
+    """Lowest sample of each row from an index on; that of the last sample beyond the row.
+
+    >>> lowest_after(np.array([[0.0, 1.0, 0.8], [0.0, 0.5, 1.0]]), np.array([1, 2])).tolist()
+    [0.8, 1.0]
+    """
+    return _reduce_after(np.minimum, level, start)
+
+
+def highest_after(level: Array, start: Array) -> Array:
+    """Highest sample of each row from an index on; that of the last sample beyond the row.
+
+    >>> highest_after(np.array([[0.0, 1.0, 0.8], [0.0, 0.5, 1.0]]), np.array([2, 1])).tolist()
+    [0.8, 1.0]
+    """
+    return _reduce_after(np.maximum, level, start)
+
+
+def lowest_between(level: Array, start: Array, stop: Array) -> Array:
+    """Lowest sample of each row from start to before stop, at least the one at start.
+
+    >>> lowest_between(np.array([[3.0, 1.0, 0.0]]), np.array([0]), np.array([2])).tolist()
+    [1.0]
+    """
+    rows, samples = level.shape
+    begin = np.arange(rows) * samples
+    start = np.minimum(start, samples - 2)
+    cuts = np.stack([start, np.clip(stop, start + 1, samples - 1)], axis=1) + begin[:, None]
+    return np.asarray(np.minimum.reduceat(level.ravel(), cuts.ravel())[::2])
+
+
+def cubic_time(level: Array, row: Array, index: Array, threshold: Array) -> Array:
+    """Crossing between two samples by a cubic through four, in samples.
+
+    Parameters
+    ----------
+    level : numpy.ndarray
+        Samples (M, n). [-]
+    row, index : numpy.ndarray
+        Row and index of the first sample at or above the threshold, any shape. [-]
+    threshold : numpy.ndarray
+        Threshold of each crossing. [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Times [samples]; 0 for index 0 and NaN for an index beyond the row.
+
+    Notes
+    -----
+    Four-point Lagrange polynomial and two Newton steps from the straight line: at ten
+    samples a raised-cosine edge 0.07 % of the edge, where the straight line has 2 %.
+
+    Examples
+    --------
+    >>> wave = np.arange(8.0)[None] ** 3 / 343
+    >>> print(f"{cubic_time(wave, np.array([0]), np.array([4]), np.array([0.125]))[0]:.3f}")
+    3.500
+    """
+    samples = level.shape[1]
+    inner = np.clip(index, 2, samples - 2)
+    flat, at = level.ravel(), row * samples + inner
+    y0, y1, y2, y3 = (flat[at + offset] for offset in (-2, -1, 0, 1))
+    cubic = (y3 - y0) / 6 + (y1 - y2) / 2
+    square = (y0 + y2) / 2 - y1
+    slope = y2 - y0 / 3 - y1 / 2 - y3 / 6
+    rest = y1 - threshold
+    with np.errstate(divide="ignore", invalid="ignore"):
+        u = np.clip(-rest / (y2 - y1), 0, 1)
+        for _ in range(2):
+            value = ((cubic * u + square) * u + slope) * u + rest
+            u = np.clip(u - value / ((3 * cubic * u + 2 * square) * u + slope), 0, 1)
+    time = np.where(index < 1, 0, inner - 1 + u)
+    return np.where(index < samples, time, np.nan)
+
+
+def straight_time(level: Array, row: Array, index: Array, threshold: Array) -> Array:
+    """Crossing between two samples by a straight line, in samples; as cubic_time in shape.
+
+    >>> print(straight_time(np.array([[0.0, 1.0]]), np.array([0]), np.array([1]), np.array([0.5])))
+    [0.5]
+    """
+    samples = level.shape[1]
+    inner = np.clip(index, 1, samples - 1)
+    flat, at = level.ravel(), row * samples + inner
+    after, before = flat[at], flat[at - 1]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        time = inner - (after - threshold) / (after - before)
+    time = np.where(index < 1, 0, time)
+    return np.where(index < samples, time, np.inf)
+
+
+def _reduce_after(extreme: np.ufunc, level: Array, start: Array) -> Array:
+    """Reduce each row from an index on."""
+    rows, samples = level.shape
+    begin = np.arange(rows) * samples
+    cuts = np.stack([begin + np.minimum(start, samples - 1), begin + samples], axis=1)
+    return np.asarray(extreme.reduceat(level.ravel(), cuts.ravel()[:-1])[::2])
+
+
+def _near(level: Array, index: Array) -> Array:
+    """Give the samples from each index on (NEAR + 1, k, M), the last one where the row ends."""
+    rows, samples = level.shape
+    begin = np.arange(rows) * samples
+    offset = np.arange(NEAR + 1)[:, None, None]
+    return np.asarray(level.ravel()[begin + np.minimum(index + offset, samples - 1)])
+
+
+def _pairs(mask: Array) -> list[tuple[int, Array]]:
+    """Rows to look at again, for each kind that has any."""
+    return [(kind, np.flatnonzero(rows)) for kind, rows in enumerate(mask) if rows.any()]
