@@ -1,0 +1,155 @@
+"""A board folder as one record, or every problem of every file in one pass."""
+
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+from pydantic import BaseModel, ValidationError
+
+from edgeplan import levels
+from edgeplan.board import Board, BoardFile, Columns, Group, RouteSegment
+from edgeplan.errors import InputError, Problem
+from edgeplan.readers import (
+    limit_table,
+    net_checks,
+    netlist,
+    references,
+    routes,
+    toml,
+    wording,
+)
+from edgeplan.readers.files import Folder
+from edgeplan.readers.references import EACH, Names
+
+BOARD_FILE = "board.toml"
+FROM_FILE = {"from_file": True}  # numbers without a unit are refused
+
+
+def read_board(path: Path) -> Board:
+    """Read a board folder.
+
+    Parameters
+    ----------
+    path : Path
+        The folder, or the board.toml in it.
+
+    Returns
+    -------
+    Board
+        SI inside, with the hash of every file read.
+
+    Raises
+    ------
+    InputError
+        Every problem of every file, sorted by file, row and column.
+
+    Notes
+    -----
+    A missing value is no problem here: it stays None and leaves its net undecided.
+    """
+    path = Path(path)
+    folder = Folder(path if path.is_dir() else path.parent)
+    document = _document(folder, BOARD_FILE if path.is_dir() else path.name)
+    file = _validated(BoardFile, document, folder.problems) if document else None
+    nets, notes = _nets(folder, document)
+    segments = _routes(folder, document, nets)
+    limits = list(_named_files(folder, document)) if document else []
+    if folder.problems or file is None or nets is None:
+        raise InputError(folder.problems)
+    return Board(
+        file=file,
+        nets=tuple(entry.net(nets.file) for entry in nets.entries.values()),
+        routes=tuple(segments),
+        user_limits=tuple(limits),
+        inputs=tuple(folder.inputs[name] for name in sorted(folder.inputs)),
+        notes=tuple(notes),
+    )
+
+
+def _document(folder: Folder, name: str) -> toml.Document | None:
+    """Parse board.toml."""
+    text = folder.text(name)
+    if text is None:
+        return None
+    document = toml.read(text, name)
+    if isinstance(document, Problem):
+        folder.problems.append(document)
+        return None
+    return document
+
+
+def _validated(
+    model: type[BoardFile], document: toml.Document, problems: list[Problem]
+) -> BoardFile | None:
+    """Validate the whole file."""
+    try:
+        return model.model_validate(document.data, context=FROM_FILE)
+    except ValidationError as error:
+        problems += wording.problems(error, document, model)
+        return None
+
+
+def _part(model: type[BaseModel], data: Any) -> Any:
+    """Validate a part of the file alone; None if it is not in order (told elsewhere)."""
+    try:
+        return model.model_validate(data, context=FROM_FILE)
+    except ValidationError:
+        return None
+
+
+def _nets(
+    folder: Folder, document: toml.Document | None
+) -> tuple[netlist.NetList | None, list[str]]:
+    """Read nets.csv with what board.toml says about its columns and groups."""
+    problems = folder.problems
+    text = folder.text(netlist.FILE)
+    data = document.data if document else {}
+    if text is None:
+        names = Names.of(data, levels.ids())
+        problems += references.problems(document, names, None) if document else ()
+        return None, []
+    columns = (_part(Columns, data.get("columns", {})) or Columns()) if document else None
+    nets = netlist.read(text, columns, problems)
+    if document is None:
+        return nets, []
+    owned = {name: set(entry.values) for name, entry in nets.entries.items()}
+    notes = netlist.apply_groups(nets, _groups(document), document)
+    names = Names.of(data, levels.ids())
+    pairs = [str(net) for _, net in references.found(data, ("pair", EACH, "nets", EACH))]
+    net_checks.complete(nets, names, pairs, owned)
+    problems += net_checks.problems(nets, names)
+    problems += references.problems(document, names, nets.names() if nets.entries else None)
+    return nets, notes
+
+
+def _groups(document: toml.Document) -> dict[int, Group]:
+    """Return the groups that are in order."""
+    found = references.found(document.data, ("group", EACH))
+    groups = ((path[-1], _part(Group, value)) for path, value in found)
+    return {int(index): group for index, group in groups if group is not None}
+
+
+def _routes(
+    folder: Folder, document: toml.Document | None, nets: netlist.NetList | None
+) -> list[RouteSegment]:
+    """Read routes.csv if there is one."""
+    if not folder.has(routes.FILE):
+        return []
+    text = folder.text(routes.FILE)
+    if text is None:
+        return []
+    names = Names.of(document.data, ()) if document else None
+    columns = _part(Columns, document.data.get("columns", {})) if document else None
+    return routes.read(text, nets, names, columns, folder.problems)
+
+
+def _named_files(folder: Folder, document: toml.Document) -> Iterator[Any]:
+    """Read the files that board.toml names: limit tables now, models by their reader."""
+    for path, name in references.found(document.data, ("driver", EACH, "ibis", "file")):
+        if isinstance(name, str):
+            folder.read(name, document.where(path))
+    for path, name in references.found(document.data, ("emission", "limit_files", EACH)):
+        text = folder.text(name, document.where(path)) if isinstance(name, str) else None
+        line = limit_table.line(text, name, folder.problems) if text is not None else None
+        if line is not None:
+            yield line
