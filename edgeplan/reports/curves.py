@@ -1,0 +1,171 @@
+"""Spectrum and waveforms of one net in letters, for a reader without a picture."""
+
+from collections.abc import Iterator
+from itertools import pairwise
+
+from edgeplan.reports import phrases
+from edgeplan.results import NetResult, Spectrum, Trace
+
+_BAR = 30  # columns of a bar
+_BAR_SPAN_DB = 30.0  # from the left end of a bar to its right end
+_PLOT_COLUMNS = 72
+_PLOT_ROWS = 12
+
+
+def spectra(net: NetResult, margin_db: float, worst: int) -> Iterator[str]:
+    """Yield the worst lines of each spectrum: level, mechanisms, parity, excess and a bar.
+
+    Parameters
+    ----------
+    net : NetResult
+        A net with pictures; nothing is written without.
+    margin_db : float
+        What the limit is lowered by. [dB]
+    worst : int
+        How many lines of each spectrum are shown. [-]
+
+    Yields
+    ------
+    str
+        Lines without a line feed.
+    """
+    for spectrum in net.pictures.spectra if net.pictures else ():
+        yield from ("", f"Spectrum {spectrum.state}, {spectrum.detector}, the {worst} worst lines")
+        yield (
+            "   frequency  harmonic      expected   up to   trace   cable   limit  budget    over"
+            f"   over the budget by -{_BAR_SPAN_DB / 2:.0f} to +{_BAR_SPAN_DB / 2:.0f} dB"
+        )
+        for index in _worst(spectrum, worst):
+            yield _spectrum_line(spectrum, index, margin_db)
+        yield from _corner_note(spectrum)
+
+
+def _worst(spectrum: Spectrum, worst: int) -> list[int]:
+    """Return the lines that come closest to the limit, by frequency."""
+    levels = zip(spectrum.expected_dbuv_per_m, spectrum.limit_dbuv_per_m, strict=True)
+    excess = [level - limit for level, limit in levels]
+    order = sorted(range(len(excess)), key=lambda index: -excess[index])
+    return sorted(order[:worst])
+
+
+def _spectrum_line(spectrum: Spectrum, index: int, margin_db: float) -> str:
+    """Write one line of a spectrum; levels are in dBµV/m."""
+    order = spectrum.order[index]
+    parity = "even" if order % 2 == 0 else "odd"
+    limit = spectrum.limit_dbuv_per_m[index]
+    expected = spectrum.expected_dbuv_per_m[index]
+    over = expected - limit + margin_db
+    levels = (
+        expected,
+        spectrum.up_to_dbuv_per_m[index],
+        spectrum.trace_dbuv_per_m[index],
+        spectrum.cable_dbuv_per_m[index],
+        limit,
+        limit - margin_db,
+    )
+    frequency = phrases.engineering(spectrum.frequency_hz[index], "Hz")
+    numbers = "".join(f"{level:8.1f}" for level in levels)
+    return (
+        f"  {frequency:>10}  {order:>4} {parity:4}    {numbers}{over:+8.1f}   {_bar(over)}".rstrip()
+    )
+
+
+def _bar(over_db: float) -> str:
+    """Draw the excess over the budget as a bar with the budget in its middle.
+
+    >>> _bar(3.0)
+    '==============|###'
+    """
+    half = _BAR // 2
+    columns = round((over_db + _BAR_SPAN_DB / 2) / _BAR_SPAN_DB * _BAR)
+    columns = max(0, min(_BAR, columns))
+    inside = "=" * min(columns, half - 1)
+    return f"{inside}|{'#' * (columns - half)}" if columns >= half else inside
+
+
+def _corner_note(spectrum: Spectrum) -> Iterator[str]:
+    """Tell the corner frequencies of the trapezoid's envelope."""
+    low, high = spectrum.corner_low_hz, spectrum.corner_high_hz
+    if low is not None and high is not None:
+        corners = f"{phrases.engineering(low, 'Hz')} and {phrases.engineering(high, 'Hz')}"
+        yield f"  envelope falls 20 dB per decade from {corners.replace(' and ', ', 40 from ')}"
+
+
+def waveforms(net: NetResult) -> Iterator[str]:
+    """Yield each received waveform in numbers, and one picture in letters per state.
+
+    Parameters
+    ----------
+    net : NetResult
+        A net with pictures; nothing is written without.
+
+    Yields
+    ------
+    str
+        Lines without a line feed.
+    """
+    if net.pictures is None or not net.pictures.waveforms:
+        return
+    levels = net.pictures.thresholds_v
+    named = ", ".join(f"{name} {phrases.engineering(v, 'V')}" for name, v in levels.items())
+    yield from ("", f"Waveforms at the receiver ({phrases.inert(named)})")
+    yield (
+        "  state  receiver      corner   edge      from      to  lowest highest"
+        "     between the thresholds"
+    )
+    for trace in net.pictures.waveforms:
+        yield _trace_line(trace, sorted(levels.values()))
+    drawn: set[str] = set()
+    for trace in net.pictures.waveforms:
+        if trace.corner == "fast" and trace.state not in drawn:
+            drawn.add(trace.state)
+            yield from (
+                "",
+                f"  {trace.state}, {phrases.inert(trace.receiver_pin)}, fast, {trace.edge}",
+            )
+            yield from _plot(trace, levels)
+
+
+def _trace_line(trace: Trace, levels: list[float]) -> str:
+    """Write a waveform's ends, extremes and time between the thresholds."""
+    volt = trace.volt
+    numbers = "".join(f"{v:8.2f}" for v in (volt[0], volt[-1], min(volt), max(volt)))
+    pin = phrases.cut_middle(phrases.inert(trace.receiver_pin), 12)
+    between = phrases.engineering(_between(trace, levels), "s")
+    return f"  {trace.state:5}  {pin:12}  {trace.corner:7}  {trace.edge:7}{numbers} V   {between}"
+
+
+def _between(trace: Trace, levels: list[float]) -> float | None:
+    """Return the time from the first crossing of one threshold to that of the other. [s]."""
+    if len(levels) < 2:
+        return None
+    times = [_first_crossing(trace, level) for level in (levels[0], levels[-1])]
+    return None if times[0] is None or times[1] is None else abs(times[1] - times[0])
+
+
+def _first_crossing(trace: Trace, level: float) -> float | None:
+    """Return when a waveform first passes a level, by a straight line between samples. [s]."""
+    pairs = list(zip(trace.time_s, trace.volt, strict=True))
+    for (t0, v0), (t1, v1) in pairwise(pairs):
+        if (v0 - level) * (v1 - level) <= 0 and v0 != v1:
+            return t0 + (level - v0) / (v1 - v0) * (t1 - t0)
+    return None
+
+
+def _plot(trace: Trace, levels: dict[str, float]) -> Iterator[str]:
+    """Draw a waveform in letters, its thresholds dotted."""
+    low = min(*trace.volt, *levels.values())
+    high = max(*trace.volt, *levels.values())
+    step = (high - low) / (_PLOT_ROWS - 1) or 1.0
+    grid = [[" "] * _PLOT_COLUMNS for _ in range(_PLOT_ROWS)]
+    for level in levels.values():
+        grid[round((high - level) / step)] = ["."] * _PLOT_COLUMNS
+    start, span = trace.time_s[0], (trace.time_s[-1] - trace.time_s[0]) or 1.0
+    for time, volt in zip(trace.time_s, trace.volt, strict=True):
+        column = round((time - start) / span * (_PLOT_COLUMNS - 1))
+        grid[round((high - volt) / step)][column] = "*"
+    for row, line in enumerate(grid):
+        yield f"  {round(high - row * step, 2) + 0.0:7.2f} V |{''.join(line)}".rstrip()
+    begin, end = phrases.engineering(start, "s"), phrases.engineering(trace.time_s[-1], "s")
+    yield f"  {'':9} +{'-' * _PLOT_COLUMNS}"
+    yield f"  {'':11}{begin}{end:>{_PLOT_COLUMNS - len(begin)}}"
