@@ -165,16 +165,18 @@ class Quantity:
         """
         units = "|".join(re.escape(unit) for unit in self.units)
         units = units.replace("μ", "[uµμ]").replace("Ω", "[\u2126\u03a9]")
-        forms = [rf"{_NUMBER}\s*(?:{units})"]
+        sign = "[+-]?" if self.signed else "[+]?"
+        number = _NUMBER.replace("[+-]?", sign, 1)
+        forms = [rf"{number}\s*(?:{units})"]
         if self.letters:
-            forms.append(rf"[+-]?\d*[{''.join(self.letters)}]\d+")
+            forms.append(rf"{sign}\d*[{''.join(self.letters)}]\d+")
         description = f"{self.name}: {self.takes()}".replace("write ", "").partition(", for")[0]
         text = {
             "type": "string",
-            "pattern": rf"^\s*(?:{'|'.join(forms)}|{_NUMBER if self.bare else '0'})\s*$",
+            "pattern": rf"^\s*(?:{'|'.join(forms)}|{number if self.bare else '0'})\s*$",
         }
-        number = {"type": "number"} if self.bare else {"const": 0}
-        return {"anyOf": [text, number], "description": description, "examples": [self.example]}
+        alone = {"type": "number"} if self.bare else {"const": 0}
+        return {"anyOf": [text, alone], "description": description, "examples": [self.example]}
 
 
 def _scaled(number: str, factor: float) -> float:
