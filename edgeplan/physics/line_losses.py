@@ -80,8 +80,8 @@ def skin_factor(
     -----
     For strips more than about four skin depths thick (8 um at 1 GHz); smooth copper.
     Within 0.8 % of the currents of a field solution (tests/reference/
-    microstrip_skin_loss.csv), where the current factor exp(-1.2 (Z/eta0)^0.7), common
-    in programs, is up to 60 % (t/h 0.3) and 90 % (w/h 0.5) high.
+    microstrip_skin_loss.csv), where the usual current factor exp(-1.2 (Z/eta0)^0.7)
+    is up to 60 % (t/h 0.3) and 90 % (w/h 0.5) high.
 
     Examples
     --------
