@@ -9,10 +9,10 @@ MECHANISMS = {
 }
 
 
-def mechanism(name: str) -> ModuleType:
+def mechanism_of(name: str) -> ModuleType:
     """Look up the module of a mechanism: its ``MODEL`` and ``field_per_forward_ampere``.
 
-    >>> mechanism("trace").MODEL.name
+    >>> mechanism_of("trace").MODEL.name
     'trace'
     """
     return import_module(MECHANISMS[name])

@@ -58,11 +58,11 @@ def null_free_edge_factor(x: ArrayLike) -> Array:
     x = np.asarray(x)
     x = x.astype(np.result_type(x, np.float32), copy=False)
     inside = np.clip(x, SMALLEST, LOBES)
-    lobe = np.fmin(inside, LOBES - 1).astype(np.intp)  # fmin: NaN must not reach the cast
-    falling = np.sin(np.pi * np.abs(inside - lobe)) / (np.pi * inside)
-    height = HEIGHT.astype(x.dtype)
+    first = np.fmin(np.floor(inside), LOBES - 1)  # fmin: NaN must not reach the cast
+    falling = np.sin(np.pi * (inside - first)) / (np.pi * inside)
+    lobe, height = first.astype(np.intp), HEIGHT.astype(x.dtype)
     factor = np.maximum(falling, height[lobe + 1])
-    factor = np.where(x < PLACE.astype(x.dtype)[lobe], height[lobe], factor)
+    factor = np.where(x <= PLACE.astype(x.dtype)[lobe], height[lobe], factor)
     beyond = np.minimum(1 / (np.pi * np.maximum(x, LOBES)), height[LOBES])
     return np.asarray(np.where(x >= LOBES, beyond, factor))
 

@@ -96,10 +96,11 @@ def trace_field_per_ampere(
         wave_per_m, length_m, height_m, permittivity, propagation_per_m, load_reflection
     )
     flat = _Points(*(np.ravel(array) for array in arrays))
-    out = np.empty(flat.wave_per_m.shape)
+    out = np.full(flat.wave_per_m.shape, np.nan)
+    known = np.isfinite(sum(flat))
     bins = np.searchsorted([limit for limit, _ in STEPS_TO_KL], flat.wave_per_m * flat.length_m)
     for step_bin, (_, steps) in enumerate(STEPS_TO_KL):
-        members = np.flatnonzero(np.minimum(bins, len(STEPS_TO_KL) - 1) == step_bin)
+        members = np.flatnonzero(known & (bins == step_bin))
         for start in range(0, members.size, BLOCK):
             block = members[start : start + BLOCK]
             out[block] = _largest_over_u(_Points(*(array[block] for array in flat)), steps)
