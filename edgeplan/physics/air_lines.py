@@ -1,4 +1,4 @@
-"""Impedance in air of a strip over a plane and between planes: the shared kernel.
+"""Impedance in air of a strip over a plane and between planes.
 
 Impedance over the speed of light is inductance per metre, so the same formulas
 give impedance (`cross_section`) and, by their derivative, skin loss
@@ -46,7 +46,7 @@ def strip_widening(u: Array, t: Array) -> Array:
     .. [1] E. Hammerstad and O. Jensen, IEEE MTT-S Symposium Digest, 1980, eq. (6).
     """
     t = np.where(t == 0, NO_THICKNESS, t)
-    return t / np.pi * np.log(1 + 4 * np.e / t * np.tanh(np.sqrt(6.517 * u)) ** 2)
+    return np.asarray(t / np.pi * np.log(1 + 4 * np.e / t * np.tanh(np.sqrt(6.517 * u)) ** 2))
 
 
 def microstrip_air_ohm(u: Array) -> Array:
@@ -76,7 +76,7 @@ def microstrip_air_ohm(u: Array) -> Array:
     .. [1] E. Hammerstad and O. Jensen, IEEE MTT-S Symposium Digest, 1980, eq. (1), (2).
     """
     f = 6 + (2 * np.pi - 6) * np.exp(-((30.666 / u) ** 0.7528))
-    return ETA_0_OHM / (2 * np.pi) * np.log(f / u + np.sqrt(1 + (2 / u) ** 2))
+    return np.asarray(ETA_0_OHM / (2 * np.pi) * np.log(f / u + np.sqrt(1 + (2 / u) ** 2)))
 
 
 def stripline_air_ohm(w: Array, b: Array, t: Array) -> Array:
@@ -106,4 +106,5 @@ def stripline_air_ohm(w: Array, b: Array, t: Array) -> Array:
     bend = (x / (2 - x)) ** 2 + (0.0796 * x / (w / b + 1.1 * x)) ** n
     m = w / (b - t) + x / (np.pi * (1 - x)) * (1 - 0.5 * np.log(bend))
     a = 8 / (np.pi * m)
-    return ETA_0_OHM / (4 * np.pi) * np.log(1 + 4 / (np.pi * m) * (a + np.sqrt(a**2 + 6.27)))
+    bracket = 1 + 4 / (np.pi * m) * (a + np.sqrt(a**2 + 6.27))
+    return np.asarray(ETA_0_OHM / (4 * np.pi) * np.log(bracket))

@@ -210,4 +210,4 @@ def _stripline_ohm(w: Array, h_1: Array, h_2: Array, t: Array) -> Array:
     """Impedance in air of a thick strip between two planes by the parallel rule."""
     z_a = stripline_air_ohm(w, 2 * h_1 + t, t)
     z_b = stripline_air_ohm(w, 2 * h_2 + t, t)
-    return 2 * z_a * z_b / (z_a + z_b)
+    return np.asarray(2 * z_a * z_b / (z_a + z_b))

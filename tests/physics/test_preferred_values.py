@@ -51,8 +51,8 @@ def test_e48_and_e96_follow_the_rule_without_exception(series):
 
 
 def test_e24_shares_only_six_values_with_e96():
-    shared = set((10 * decade("E24")).tolist()) & set(decade("E96").tolist())
-    assert shared == {100, 110, 130, 150, 200, 750}
+    common = set((10 * decade("E24")).tolist()) & set(decade("E96").tolist())
+    assert common == {100, 110, 130, 150, 200, 750}
 
 
 @pytest.mark.parametrize(

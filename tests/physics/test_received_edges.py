@@ -6,7 +6,7 @@ import pytest
 from edgeplan.physics import received_edges
 
 RAMP_S = 1.0
-STEP_S = 1e-3
+STEP_S = 2e-3
 
 
 def wave_through_pole(tau_s):
