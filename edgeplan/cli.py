@@ -81,7 +81,7 @@ _OUTPUT = click.option(
 def _judging(formats: Mapping[str, str], first: str) -> "Callable[[Command], Command]":
     """Give a command the options of a run; no two results may go to one file."""
     options = (
-        click.option("--format", "form", type=click.Choice(list(formats)), default=first,
+        click.option("--format", type=click.Choice(list(formats)), default=first,
                      show_default=True, help="How the result is written."),
         _OUTPUT,
         click.option("--write", type=FormatAndPath(formats), multiple=True,
@@ -101,6 +101,7 @@ def _judging(formats: Mapping[str, str], first: str) -> "Callable[[Command], Com
         def checked(**given: Any) -> Any:
             paths = (given["output"], given.get("plot"), *(path for _, path in given["write"]))
             refuse_clashes(path for path in paths if path is not None)
+            given["form"] = given.pop("format")  # the option's name makes its EDGEPLAN_ variable
             return command(**given)
 
         return functools.reduce(lambda inner, option: option(inner), reversed(options), checked)

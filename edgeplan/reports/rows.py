@@ -108,11 +108,10 @@ def _transition(net: NetResult) -> str:
     """Tell the receiver's transition where the line and the load make it, not the edge."""
     now = _slowed(net.transition_now_s, net.edge_now_s.typical or net.edge_now_s.slow)
     after = _slowed(net.transition_after_s, net.edge_after_s.typical or net.edge_after_s.slow)
-    parts = [f"{now} now"] if now else []
-    if after and after != now:
-        parts.append(f"{after} after")
+    times = ((now, "now"), (after, "after"))
+    words = now if now == after else ", ".join(f"{time} {when}" for time, when in times if time)
     reason = "the resistor and the load set it"
-    return f"transition at the receiver {', '.join(parts)}: {reason}" if parts else ""
+    return f"transition at the receiver {words}: {reason}" if words else ""
 
 
 def _slowed(transition_s: float | None, edge_s: float | None) -> str:

@@ -81,7 +81,7 @@ def render(results: Results, *, width: int | None, colour: bool) -> str:
     lines = [line for text in summary.heading(results) for line in phrases.wrap(text, width)]
     lines += [*phrases.wrap(_LEGEND, width), ""]
     lines += [*_body(results, width, colour=colour), ""]
-    lines += [*_grid(summary.totals(results)), ""]
+    lines += [*_totals(summary.totals(results), width), ""]
     for section in summary.sections(results):
         lines += section_lines(section.title, section.lines, width)
     return "\n".join(lines) + "\n"
@@ -203,8 +203,15 @@ def _left_out(results: Results, columns: list[Column], width: int) -> Iterator[s
         yield from phrases.wrap(f"no room for: {phrases.listed(names)}", width)
 
 
+def _totals(cells: list[list[str]], width: int) -> list[str]:
+    """Return the totals as a grid; a verdict per line where the terminal is narrow."""
+    wide = list(_grid(cells))
+    fits = max(map(len, wide)) <= width
+    return wide if fits else list(_grid([list(column) for column in zip(*cells, strict=True)]))
+
+
 def _grid(cells: list[list[str]]) -> Iterator[str]:
-    """Yield the totals: first column to the left, numbers to the right."""
+    """Yield lines of counts: first column to the left, the others to the right."""
     widths = [max(map(len, column)) for column in zip(*cells, strict=True)]
     for line in cells:
         numbers = [text.rjust(size) for text, size in zip(line[1:], widths[1:], strict=True)]

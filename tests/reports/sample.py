@@ -22,6 +22,7 @@ from edgeplan.results import (
     Cost,
     EmissionPart,
     FillIn,
+    Finding,
     Input,
     InputNote,
     LineNote,
@@ -492,6 +493,29 @@ def _spectrum(state: Any, start: float) -> Spectrum:
     )
 
 
+RULES = {
+    "too fast": "edge-too-fast",
+    "too slow": "edge-too-slow",
+    "no window": "window-closed",
+    "undecided": "edge-undecided",
+}
+WAIVED = Finding(
+    rule="edge-too-fast",
+    net="DEBUG_CLK",
+    message="emission 3.0 dB over",
+    fingerprint="beef",
+    waived="until 2027-03-31 by reviewer: port not fitted",
+)
+
+
+def _finding(entry: NetResult) -> Finding:
+    """Return what a net that is not inside adds to the findings."""
+    rule = RULES[entry.verdict_after]
+    return Finding(
+        rule=rule, net=entry.net, message=entry.what_binds, fingerprint=f"{rule} {entry.net}"
+    )
+
+
 def _board_line(mhz: float, level: float, budget: float, parts: dict[str, float]) -> BoardLine:
     return BoardLine(
         frequency_hz=mhz * 1e6,
@@ -516,6 +540,7 @@ def record(command: str = "plan", nets: list[NetResult] | None = None) -> Result
         replace(entry, at=Place(file="nets.csv", row=row))
         for row, entry in enumerate(nets, start=2)
     ]
+    unsettled = [entry for entry in nets if entry.verdict_after != "inside"]
     return Results(
         command=command,
         tool=Tool(version="0.1.0"),
@@ -597,7 +622,7 @@ def record(command: str = "plan", nets: list[NetResult] | None = None) -> Result
             ],
             arrays=[],
         ),
-        findings=[],
+        findings=[*map(_finding, unsettled), WAIVED],
         totals=_count(nets, "verdict"),
         totals_after=_count(nets, "verdict_after"),
         fill_in=[FillIn(value="smallest edge", of="cm1 fixed", nets=["CAM_D0", "CAM_PCLK"])],
@@ -617,6 +642,7 @@ def checked() -> Results:
             verdict_after=entry.verdict,
             edge_after_s=entry.edge_now_s,
             window_after=entry.window_now,
+            transition_after_s=entry.transition_now_s,
             proposal=entry.candidate_now,
             proposal_text="no change",
         )
