@@ -1,7 +1,6 @@
 """Commands and exit codes; everything heavier than click is imported when a command runs."""
 
 import functools
-import json
 import os
 import shutil
 import sys
@@ -33,6 +32,7 @@ if TYPE_CHECKING:
 
 PASS, NOT_JUDGED, INTERRUPTED = 0, 2, 130
 PICTURES = (".svg", ".png")
+SCHEMAS = ("board", "net-list", "results")
 EXITS = "Exit: 0 every judged net {}, 1 some {}, or undecided, 2 could not judge, 130 interrupted."
 _THREADS = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS")
 _PATIENCE_S = 2.0  # a run that ends sooner shows no progress
@@ -189,14 +189,13 @@ def start(directory: Path) -> int:
 
 
 @main.command(epilog="Exit: 0 printed, 2 no such schema.")
-@click.argument("name", type=click.Choice(["board", "nets", "results"]), default="results")
+@click.argument("name", type=click.Choice(SCHEMAS), required=False)
 @_OUTPUT
-def schema(name: str, output: Path) -> int:
-    """Print the JSON schema of the results or an input."""
+def schema(name: str | None, output: Path) -> int:
+    """Print the JSON schema of the inputs and the results, or one."""
     from edgeplan import schemas
 
-    text = json.dumps(schemas.schema(name), indent=1)
-    return _put({output: f"{text}\n".encode()}, quiet=True)
+    return _put({output: _bytes(schemas.text(name))}, quiet=True)
 
 
 @contextmanager
@@ -319,7 +318,8 @@ def _code() -> int:
     except (click.Abort, KeyboardInterrupt):
         return INTERRUPTED
     except OSError as error:
-        _say(_shown(f"error: {error}"))
+        place = f"{error.filename}: {error.strerror}" if error.filename else str(error)
+        _say(_shown(f"error: {place}"))
     except Exception:  # noqa: BLE001 - an uncaught exception would end in 1, which means findings
         traceback.print_exc()
     return NOT_JUDGED

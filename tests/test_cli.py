@@ -389,3 +389,30 @@ def test_a_limit_line_nobody_knows_is_refused(run):
     code, out, err = run("limits", "cispr99")
     assert (code, out) == (2, "")
     assert "cispr99" in err
+
+
+def test_schemas_are_printed_by_the_names_there_are(run):
+    from edgeplan import schemas
+
+    assert tuple(schemas.SCHEMAS) == cli.SCHEMAS
+    for name in cli.SCHEMAS:
+        code, out, err = run("schema", name)
+        assert (code, out, err) == (0, schemas.text(name), "")
+    assert run("schema")[1] == schemas.text()
+
+
+def test_pictures_are_those_that_can_be_drawn():
+    from edgeplan.reports import pictures
+
+    assert cli.PICTURES == pictures.SUFFIXES
+
+
+def test_a_starter_folder_is_written_and_never_over_anything(run, tmp_path):
+    folder = tmp_path / "board"
+    code, out, err = run("start", folder)
+    assert (code, out) == (0, "")
+    assert err == f"next: edgeplan plan {folder}\n"
+    code, _, err = run("start", folder)
+    assert code == 2
+    assert "is not empty" in err
+    assert "Traceback" not in err

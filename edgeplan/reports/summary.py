@@ -7,7 +7,7 @@ from edgeplan.names import natural_key
 from edgeplan.reports import phrases
 from edgeplan.results import VERDICTS, BoardLine, Results
 
-NOT_USED = "accepted, not yet used"  # an assumption that begins so is listed by every name
+NOT_USED = "not used"  # the subject of an input that was accepted and has no effect yet
 _NAMES_SHOWN = 6
 _CONTRIBUTORS = 3
 
@@ -178,13 +178,19 @@ def _fill_in(results: Results) -> Iterator[str]:
 
 
 def _assumptions(results: Results) -> Iterator[str]:
-    """Tell what was taken for granted; inputs not yet used all by name, and first."""
-    groups = _grouped([(entry.text, entry.subject) for entry in results.assumptions])
-    for text, subjects in sorted(
-        groups.items(), key=lambda group: not group[0].startswith(NOT_USED)
-    ):
-        most = None if text.startswith(NOT_USED) else _NAMES_SHOWN
-        yield f"{text}: {phrases.listed(subjects, most)}"
+    """Tell inputs not yet used, all by name and first, then what was taken for granted."""
+    unused = [entry.text for entry in results.assumptions if entry.subject == NOT_USED]
+    named = [text.partition(": ")[2] or text for text in unused]
+    if named:
+        yield f"accepted, not used yet: {phrases.listed(named)}"
+    groups = _grouped(
+        [(entry.text, entry.subject) for entry in results.assumptions if entry.subject != NOT_USED]
+    )
+    for text, subjects in groups.items():
+        one = len(subjects) == 1
+        yield (
+            f"{subjects[0]}: {text}" if one else f"{text}: {phrases.listed(subjects, _NAMES_SHOWN)}"
+        )
 
 
 def _models(results: Results) -> Iterator[str]:

@@ -579,9 +579,18 @@ def record(command: str = "plan", nets: list[NetResult] | None = None) -> Result
             for name in ("SDR_A0", "SDR_DQ2", "UART_TX")
         ]
         + [
-            Assumption(subject="[[pair]]", text="accepted, not yet used", provenance="bound"),
             Assumption(
-                subject="deadline of exp", text="accepted, not yet used", provenance="bound"
+                subject="not used", text="accepted but not used yet: [[pair]]", provenance="assumed"
+            ),
+            Assumption(
+                subject="not used",
+                text="accepted but not used yet: deadline of exp",
+                provenance="assumed",
+            ),
+            Assumption(
+                subject="geometry",
+                text="3 nets state no distance to the side and count as centred",
+                provenance="assumed",
             ),
         ],
         nets=nets,

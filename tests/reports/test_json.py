@@ -4,7 +4,10 @@ import dataclasses
 import json
 import math
 
-from edgeplan import reports
+import jsonschema
+import pytest
+
+from edgeplan import reports, schemas
 
 
 def _read(results):
@@ -46,3 +49,10 @@ def test_a_name_comes_back_as_it_was(results):
     name = "A\x1b\x7f\u202e数\ud800"
     net = dataclasses.replace(results.nets[0], net=name)
     assert _read(dataclasses.replace(results, nets=[net]))["nets"][0]["net"] == name
+
+
+@pytest.mark.parametrize("record", ["record", "checked", "one_net"])
+def test_a_record_follows_the_schema_that_is_printed(record, sample):
+    validator = jsonschema.Draft202012Validator(schemas.results_schema())
+    found = [error.message for error in validator.iter_errors(_read(getattr(sample, record)()))]
+    assert found == []

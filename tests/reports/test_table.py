@@ -102,7 +102,7 @@ def test_everything_a_reader_must_know_stands_below_the_rows(results):
         "most from SDR_CLK 71 %, REF50_PHY 20 %, SDR_A0 6 %",
         "differential (2): USB_DN, USB_DP",
         "smallest edge of cm1 fixed: decides 2 nets (CAM_D0, CAM_PCLK)",
-        "accepted, not yet used: [[pair]], deadline of exp",
+        "accepted, not used yet: [[pair]], deadline of exp",
         "DEBUG_CLK: edge-too-fast: until 2027-03-31 by reviewer",
         "compared with the printed edition: cispr32-class-b-3m",
         "cable, version 1: ±3.4 dB",
@@ -114,11 +114,14 @@ def test_everything_a_reader_must_know_stands_below_the_rows(results):
 def test_inputs_not_yet_used_are_all_named(results, sample):
     names = [f"key{number}" for number in range(30)]
     taken = [
-        sample.Assumption(subject=n, text="accepted, not yet used", provenance="bound")
-        for n in names
+        sample.Assumption(
+            subject="not used", text=f"accepted but not used yet: {name}", provenance="assumed"
+        )
+        for name in names
     ]
     text = reports.render(dataclasses.replace(results, assumptions=taken), "table")
     assert all(name in text for name in names)
+    assert text.count("not used yet") == 1
 
 
 def test_a_board_without_nets_still_prints(sample):
