@@ -97,6 +97,10 @@ def impulse_bandwidth_hz(bandwidth_hz: ArrayLike) -> Array:
     numpy.ndarray
         Peak of the response to a short pulse over the pulse's area times 2. [Hz]
 
+    Notes
+    -----
+    Above 1 GHz the standard states 1 MHz as the impulse bandwidth itself: 0.4 dB high there.
+
     Examples
     --------
     >>> print(f"{impulse_bandwidth_hz(120e3):.0f}")

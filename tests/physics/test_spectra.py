@@ -148,3 +148,11 @@ def test_the_raised_cosine_factor_is_the_transform_of_its_slope():
     x = np.array([0.0, 0.3, 0.5, 1.0, 1.7, 4.25])
     transform = np.abs((slope * np.exp(-2j * np.pi * x[:, None] * time)).mean(axis=1))
     np.testing.assert_allclose(spectra.raised_cosine_factor(x), transform, atol=1e-7)
+
+
+def test_emission_is_not_computed_with_the_softer_edge_of_the_waveforms():
+    # the design's own number: for 1 ns from 10 to 90 % and 1 GHz the raised cosine is 9.7 dB lower
+    slower = np.geomspace(1, 50, 20_000)
+    ramp = np.abs(np.sinc(1.0 / 0.8 * slower)).max()
+    soft = spectra.raised_cosine_factor(1.0 / 0.5903 * slower).max()
+    assert 20 * np.log10(ramp / soft) == pytest.approx(9.7, abs=0.1)
