@@ -5,7 +5,7 @@ import dataclasses
 import numpy as np
 import pytest
 
-from edgeplan.emission import cable
+from edgeplan.emission import cable, trace
 from edgeplan.emission.mechanism import Cable
 from edgeplan.physics import floor_reflection, imbalance, radiation, spectra
 
@@ -173,3 +173,19 @@ def test_tables_are_linear_in_the_logarithm_and_never_extrapolated():
 
 def test_a_single_number_holds_everywhere():
     np.testing.assert_array_equal(cable.table_at(np.array([1.0, 1e12]), 6.0), [6.0, 6.0])
+
+
+def test_an_unknown_net_is_unknown_in_both_mechanisms_and_stays_alone(nets):
+    unknown = {"height_m": np.array([[0.2e-3], [np.nan]]), "length_m": np.array([[0.1], [0.1]])}
+    for cables in ((Cable(length_m=1.5),), None, (Cable(length_m=0.2, floating=True),)):
+        net = nets(BAND_HZ, cables=cables, **unknown)
+        for mechanism in (trace, cable):
+            level = mechanism.field_per_forward_ampere(net, BAND_HZ)
+            assert np.all(np.isfinite(level[0]))
+            assert np.all(np.isnan(level[1]))
+
+
+def test_a_trace_of_no_length_radiates_nothing(nets):
+    net = nets(BAND_HZ, length_m=0.0, cables=(Cable(length_m=1.5),))
+    assert np.all(trace.field_per_forward_ampere(net, BAND_HZ) < 1e-12)
+    assert np.all(cable.field_per_forward_ampere(net, BAND_HZ) < 1e-12)
