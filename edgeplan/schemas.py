@@ -62,26 +62,28 @@ def _plain(shape: Any, names: dict[str, str]) -> Any:
     bounds = [f"{_BOUNDS[key]} {shape[key]:g}" for key in _BOUNDS if key in shape]
     if bounds:
         kept["description"] = f"{kept.get('description', '')}; {' and '.join(bounds)}"
-    if "default" in kept:
-        kept |= _default(kept)
-    if kept.get("default", "") is None:
-        del kept["default"]
     if len(kept.get("anyOf", ())) == 1:
         kept = {**kept.pop("anyOf")[0], **kept}
-    if _is_range(kept):
-        typical = {key: value for key, value in kept["properties"]["typ"].items() if key != "title"}
-        return {"anyOf": [kept, typical], "description": kept.get("description", "")}
-    return kept
+    return _single_value_too(_with_default(kept))
 
 
-def _default(shape: dict[str, Any]) -> dict[str, Any]:
-    """Write the default of a quantity as a person would: "470 ohm"."""
-    default, examples = shape["default"], shape.get("examples")
-    bare = {"type": "number"} in shape.get("anyOf", ())
-    if bare or not examples or not isinstance(default, float):
-        return {}
+def _single_value_too(shape: dict[str, Any]) -> dict[str, Any]:
+    """Let a range be a single value, its typical one."""
+    if not _is_range(shape):
+        return shape
+    typical = {key: value for key, value in shape["properties"]["typ"].items() if key != "title"}
+    return {"anyOf": [shape, typical], "description": shape.get("description", "")}
+
+
+def _with_default(shape: dict[str, Any]) -> dict[str, Any]:
+    """Write the default of a quantity as a person would, "470 ohm"; no default is no key."""
+    default, examples = shape.get("default"), shape.get("examples")
+    if default is None:
+        return {key: value for key, value in shape.items() if key != "default"}
+    if {"type": "number"} in shape.get("anyOf", ()) or not examples:
+        return shape
     unit = examples[0].split()[-1]  # ohm and dB; other defaults are 0, which needs no unit
-    return {"default": f"{default:g} {unit}" if default else 0}
+    return {**shape, "default": f"{default:g} {unit}" if default else 0}
 
 
 def _columns(table: tuple[columns.Column, ...]) -> Iterator[dict[str, Any]]:

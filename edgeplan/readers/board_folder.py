@@ -1,6 +1,5 @@
 """A board folder as one record, or every problem of every file in one pass."""
 
-from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
@@ -53,7 +52,9 @@ def read_board(path: Path) -> Board:
     file = _validated(BoardFile, document, folder.problems) if document else None
     nets, notes = _nets(folder, document)
     segments = _routes(folder, document, nets)
-    limits = list(_named_files(folder, document)) if document else []
+    limits = _limits(folder, document) if document else []
+    if document:
+        _models(folder, document)
     if folder.problems or file is None or nets is None:
         raise InputError(folder.problems)
     return Board(
@@ -143,13 +144,23 @@ def _routes(
     return routes.read(text, nets, names, columns, folder.problems)
 
 
-def _named_files(folder: Folder, document: toml.Document) -> Iterator[Any]:
-    """Read the files that board.toml names: limit tables now, models by their reader."""
+def _limits(folder: Folder, document: toml.Document) -> list[Any]:
+    """Read the user's limit tables and hold the ids of the target against what there is."""
+    lines = []
+    own = []
+    for path, name in references.found(document.data, ("emission", "limit_files", EACH)):
+        if not isinstance(name, str):
+            continue
+        own.append(limit_table.limit_id(name))
+        text = folder.text(name, document.where(path))
+        line = limit_table.line(text, name, folder.problems) if text is not None else None
+        lines += [line] if line is not None else []
+    folder.problems += references.limit_problems(document, own)
+    return lines
+
+
+def _models(folder: Folder, document: toml.Document) -> None:
+    """Note the hash of each driver model; it is read where it is needed."""
     for path, name in references.found(document.data, ("driver", EACH, "ibis", "file")):
         if isinstance(name, str):
             folder.read(name, document.where(path))
-    for path, name in references.found(document.data, ("emission", "limit_files", EACH)):
-        text = folder.text(name, document.where(path)) if isinstance(name, str) else None
-        line = limit_table.line(text, name, folder.problems) if text is not None else None
-        if line is not None:
-            yield line

@@ -35,6 +35,17 @@ class LimitRows(NamedTuple):
         return self.table.where(line, header.index(column)) if column in header else place
 
 
+def limit_id(file: str) -> str:
+    """Return the id of a user's line: the name of its file without the ending.
+
+    Examples
+    --------
+    >>> limit_id("limits/house.csv")
+    'house'
+    """
+    return PurePosixPath(file).stem
+
+
 def read(text: str, file: str, problems: list[Problem]) -> LimitRows | None:
     r"""Read the cells of a limit table.
 
@@ -114,8 +125,8 @@ def line(text: str, file: str, problems: list[Problem]) -> limits.LimitLine | No
         problems.append(where.problem("a line has one measuring distance", "split the table"))
         return None
     try:
-        name = PurePosixPath(file).stem
-        return limits.user_line(found.rows, limit_id=name, distance_m=float(distances.pop()))
+        distance_m = float(distances.pop())
+        return limits.user_line(found.rows, limit_id=limit_id(file), distance_m=distance_m)
     except limits.UserLineError as error:
         problems += [found.where(row, column).problem(text) for row, column, text in error.faults]
         return None

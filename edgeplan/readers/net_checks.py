@@ -127,7 +127,9 @@ def _names(entry: Entry, what: str, known: Iterable[str]) -> Iterator[Problem]:
     value = entry.values.get(what, ())
     for name in (value,) if isinstance(value, str) else value:
         if name not in known:
-            hint = f"{instead(name, known)}; each {what} has a [[{what}]] table in board.toml"
+            hint = instead(name, known)
+            if "did you mean" not in hint:
+                hint += f"; each {what} has a [[{what}]] table in board.toml"
             yield entry.where(what).problem(f"no {what} {name!r}", hint)
 
 

@@ -7,7 +7,7 @@ from typing import Any, NamedTuple
 
 from edgeplan.board import Columns, Group, Net, Point
 from edgeplan.errors import Problem
-from edgeplan.names import instead, matches
+from edgeplan.names import matches
 from edgeplan.readers import foreign_headers, tables
 from edgeplan.readers.columns import NET_COLUMNS, Column, Placed, known_headers, place
 from edgeplan.readers.files import Where
@@ -64,11 +64,11 @@ class NetList:
 
     file: str = FILE
     entries: dict[str, Entry] = field(default_factory=dict)
+    spoilt: set[str] = field(default_factory=set)  # in rows that cannot be read
 
     def names(self) -> set[str]:
         """Return every name a net goes by, on either side of its series part."""
-        far = {entry.values.get("far_net") for entry in self.entries.values()}
-        return set(self.entries) | {str(name) for name in far if name}
+        return set(self.entries) | set(self.near_names()) | self.spoilt
 
     def near_names(self) -> dict[str, str]:
         """Return the name at the driver's end for each name behind a series part."""
@@ -105,16 +105,19 @@ def read(text: str, columns: Columns | None, problems: list[Problem], file: str 
     table = tables.read(text, file, problems)
     if table is None:
         return found
+    before = len(problems)
     placed = find_columns(table, NET_COLUMNS, columns, problems)
     name = next((place for place in placed if place.column.field == "net"), None)
     if name is None:
-        if columns is not None:
+        offered = any('= "net"' in problem.hint for problem in problems[before:])
+        if columns is not None and not offered:
             where = table.where(table.header, 0)
             hint = "rename the column that names the nets, or add it"
             problems.append(where._replace(field="").problem("there is no column 'net'", hint))
         return found
     for row in table.rows:
         _add(found, row, table, placed, problems)
+    found.spoilt = {row.cells[name.index] for row in table.spoilt}
     return found
 
 
@@ -130,7 +133,8 @@ def find_columns(
     placed, unknown, twice = place(table, columns, rename)
     problems += [where.problem(message, hint) for where, message, hint in twice]
     cells = table.header.cells
-    unknown = [index for index in unknown if cells[index] not in ignore]
+    told = {*ignore, *rename}  # a renamed column that is no column of ours is told at its rename
+    unknown = [index for index in unknown if cells[index] not in told]
     if unknown and settings is not None:
         headers = list(dict.fromkeys(cells[index] for index in unknown))
         ours = [rename.get(header, header) for header in cells]
@@ -255,8 +259,3 @@ def _fill(entry: Entry, name: str, value: Any, where: Callable[[], Where]) -> No
         ]
     if name not in entry.values:
         entry.values[name], entry.places[name] = value, where
-
-
-def unknown_net(name: str, nets: NetList) -> tuple[str, str]:
-    """Return message and hint for a net that nets.csv does not hold."""
-    return f"no net {name!r} in {nets.file}", instead(name, nets.names())

@@ -4,8 +4,10 @@ from collections.abc import Collection, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any
 
+from edgeplan import limits
 from edgeplan.errors import Problem
 from edgeplan.names import instead, matches
+from edgeplan.readers.columns import NET_COLUMNS, ROUTE_COLUMNS, known_headers
 from edgeplan.readers.toml import Document, Path
 from edgeplan.units import QUANTITIES, UnitError
 
@@ -55,6 +57,8 @@ class Names:
         >>> Names.of(data, ["lvttl-3v3"]).drivers
         {'d1': ('FIX',)}
         """
+        # a table in single brackets is told about elsewhere; its name is a name all the same
+        data = {key: [value] if isinstance(value, dict) else value for key, value in data.items()}
         copper = [
             layer
             for _, layer in found(data, ("stack", EACH))
@@ -135,6 +139,7 @@ def problems(document: Document, names: Names, nets: Collection[str] | None) -> 
             where = document.where(("impedance", layer))
             yield where.problem(f"no layer {layer!r} with copper", instead(layer, names.layers))
     yield from _ranges(document, document.data, ())
+    yield from _renamed_to_nothing(document)
     if nets is not None:
         yield from _dangling(document, ("interface", EACH, "clock_net"), "net", nets)
         yield from _dangling(document, ("pair", EACH, "nets", EACH), "net", nets)
@@ -192,6 +197,39 @@ def _clock_sources(document: Document, nets: Collection[str]) -> Iterator[Proble
     for path, pattern in found(document.data, ("clock_source", EACH, "nets", EACH)):
         if isinstance(pattern, str) and not any(matches(pattern, net) for net in nets):
             yield document.where(path).problem(f"no net fits {pattern!r}", instead(pattern, nets))
+
+
+def _renamed_to_nothing(document: Document) -> Iterator[Problem]:
+    """Yield renamed columns whose new name no table has."""
+    known = {**known_headers(NET_COLUMNS), **known_headers(ROUTE_COLUMNS)}
+    for path, renames in found(document.data, ("columns", "rename")):
+        for old, new in renames.items() if isinstance(renames, dict) else ():
+            if isinstance(new, str) and new not in known:
+                where = document.where((*path, old))
+                yield where.problem(f"no such column {new!r}", instead(new, known))
+
+
+def limit_problems(document: Document, own: Collection[str]) -> Iterator[Problem]:
+    """Yield limit lines that are neither shipped nor the user's own.
+
+    Parameters
+    ----------
+    document : Document
+        board.toml.
+    own : collection of str
+        Ids of the user's own lines.
+
+    Yields
+    ------
+    Problem
+        At the id; half an id or "class B" is answered with the ids it may mean.
+    """
+    for path, name in found(document.data, ("emission", "limits", EACH)):
+        if isinstance(name, str) and name not in limits.ids() and name not in own:
+            likely = limits.matching(name)
+            few = f"did you mean {' or '.join(likely)}?" if likely else ""
+            hint = few or "edgeplan limits prints all ids"
+            yield document.where(path).problem(f"no limit line {name!r}", hint)
 
 
 def _ranges(document: Document, data: Any, path: Path) -> Iterator[Problem]:

@@ -11,13 +11,14 @@ from edgeplan.names import instead
 from edgeplan.readers import tables
 from edgeplan.readers.columns import ROUTE_COLUMNS
 from edgeplan.readers.files import Where
-from edgeplan.readers.netlist import Entry, NetList, cells_of, find_columns, unknown_net
+from edgeplan.readers.netlist import Entry, NetList, cells_of, find_columns
 from edgeplan.readers.references import Names
 from edgeplan.texts import text_length_m
 
 FILE = "routes.csv"
 NEEDED = ("net", "start", "end", "length_m", "layer")
 CORNERS = ("x1", "y1", "x2", "y2")
+MANY_NAMES = 50_000  # comparisons, about a second
 ROUNDING = 0.01  # a length may be this share shorter than its ends are apart
 
 
@@ -64,8 +65,10 @@ def read(
     if not set(NEEDED) <= there:
         return []
     pieces = [piece for row in table.rows if (piece := _piece(row, table, placed, problems))]
+    if nets is not None and nets.entries:
+        problems += _unknown_nets(pieces, nets)
     for piece in pieces:
-        problems += _piece_problems(piece, nets, names)
+        problems += _piece_problems(piece, names)
     if len(problems) == before:
         problems += _shape_problems(pieces, nets)
     near = nets.near_names() if nets else {}
@@ -120,10 +123,20 @@ def _piece(
     return _Piece(row.number, values, places) if set(NEEDED) <= set(values) else None
 
 
-def _piece_problems(piece: _Piece, nets: NetList | None, names: Names | None) -> Iterator[Problem]:
-    """Names nothing answers to, and a length its own ends contradict."""
-    if nets is not None and nets.entries and piece.net not in nets.names():
-        yield piece.where("net").problem(*unknown_net(piece.net, nets))
+def _unknown_nets(pieces: Sequence[_Piece], nets: NetList) -> Iterator[Problem]:
+    """Yield routes of nets that the net list does not hold."""
+    known = nets.names()
+    unknown = {piece.net for piece in pieces} - known
+    few = len(unknown) * len(known) < MANY_NAMES  # looking for the nearest name takes its time
+    hints = {net: instead(net, known) if few else "" for net in unknown}
+    for piece in pieces:
+        if piece.net in unknown:
+            message = f"no net {piece.net!r} in {nets.file}"
+            yield piece.where("net").problem(message, hints[piece.net])
+
+
+def _piece_problems(piece: _Piece, names: Names | None) -> Iterator[Problem]:
+    """Yield a layer nothing answers to, and a length its own ends contradict."""
     layer = piece.values["layer"]
     if names is not None and layer not in names.layers:
         hint = instead(layer, names.layers)

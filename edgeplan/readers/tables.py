@@ -26,12 +26,13 @@ class Row:
 
 @dataclass(frozen=True, slots=True)
 class Table:
-    """A header and the rows below it."""
+    """A header and the rows below it; spoilt rows are told about already."""
 
     file: str
     separator: str
     header: Row
     rows: list[Row]
+    spoilt: list[Row]
     decimal_comma: bool
 
     def where(self, row: Row, index: int) -> Where:
@@ -150,11 +151,13 @@ def read(text: str, file: str, problems: list[Problem]) -> Table | None:
         hint = "save it with commas or semicolons between the columns"
         problems.append(Where(file, header.number).problem("columns are separated by tabs", hint))
         return None
-    kept = [row for row in rest if _fits(row, header, separator, file, problems)]
+    spoilt = [row for row in rest if any(row.cells[len(header.cells) :])]
+    problems += [_too_long(row, header, separator, file) for row in spoilt]
+    kept = [row for row in rest if not any(row.cells[len(header.cells) :])]
     comma = separator == ";" and any(
         _DECIMAL_COMMA.fullmatch(cell) for row in kept for cell in row.cells
     )
-    return Table(file, separator, header, kept, comma)
+    return Table(file, separator, header, kept, spoilt, comma)
 
 
 def _rows(lines: list[str], separator: str, file: str, problems: list[Problem]) -> Iterator[Row]:
@@ -176,16 +179,13 @@ def _rows(lines: list[str], separator: str, file: str, problems: list[Problem]) 
             yield Row(index + 1, line, cells)
 
 
-def _fits(row: Row, header: Row, separator: str, file: str, problems: list[Problem]) -> bool:
-    """Tell whether a row has a header above each of its cells."""
+def _too_long(row: Row, header: Row, separator: str, file: str) -> Problem:
+    """Word a row with more cells than the header."""
     width = len(header.cells)
-    if not any(row.cells[width:]):
-        return True
     column = _starts(row.line, separator)[width]
     message = f"{len(row.cells)} cells under {width} columns"
     hint = "is there a decimal comma? Write 12.5, or separate the columns with ;"
-    problems.append(Where(file, row.number, column).problem(message, hint))
-    return False
+    return Where(file, row.number, column).problem(message, hint)
 
 
 def _starts(line: str, separator: str) -> list[int]:
