@@ -48,6 +48,11 @@ def _tightest(read: Callable[[Check], Cell], *, now: bool) -> Callable[[NetResul
     return cell
 
 
+def _unit(check: Check) -> str:
+    """Name the unit of a margin."""
+    return "share" if check.unit in phrases.SHARE else check.unit
+
+
 def _yes(condition: object) -> str:
     """Write a condition as a word."""
     return "yes" if condition else "no"
@@ -77,7 +82,7 @@ COLUMNS: dict[str, Callable[[NetResult], Cell]] = {
     "window_now_slowest_word": lambda net: _word(net.window_now.slowest_allowed),
     "tightest_check_now": _tightest(lambda check: check.check, now=True),
     "tightest_margin_now": _tightest(lambda check: _number(check.margin), now=True),
-    "tightest_margin_now_unit": _tightest(lambda check: check.unit or "share", now=True),
+    "tightest_margin_now_unit": _tightest(_unit, now=True),
     "edge_after_fast_ns": lambda net: _ns(net.edge_after_s.fast),
     "edge_after_typical_ns": lambda net: _ns(net.edge_after_s.typical),
     "edge_after_slow_ns": lambda net: _ns(net.edge_after_s.slow),
@@ -87,7 +92,7 @@ COLUMNS: dict[str, Callable[[NetResult], Cell]] = {
     "window_after_slowest_word": lambda net: _word(net.window_after.slowest_allowed),
     "tightest_check_after": _tightest(lambda check: check.check, now=False),
     "tightest_margin_after": _tightest(lambda check: _number(check.margin), now=False),
-    "tightest_margin_after_unit": _tightest(lambda check: check.unit or "share", now=False),
+    "tightest_margin_after_unit": _tightest(_unit, now=False),
     "transition_now_ns": lambda net: _ns(net.transition_now_s),
     "transition_after_ns": lambda net: _ns(net.transition_after_s),
     "remarks": lambda net: "; ".join((*net.undecided_because, *rows.below(net), *net.notes)),

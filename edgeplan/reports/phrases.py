@@ -8,6 +8,7 @@ import unicodedata
 from edgeplan.results import Check, Corners, Window, WindowEnd
 
 UNKNOWN = "?"
+SHARE = ("", "1")  # units of a number relative to something
 _PREFIXES = (
     (1e9, "G"),
     (1e6, "M"),
@@ -148,7 +149,7 @@ def engineering(value: float | None, unit: str, *, signed: bool = False) -> str:
         In the unit named, SI. [unit]
     unit : str
         ``s``, ``V``, ``Hz``, ``ohm`` and the like take a prefix; decibels one decimal; an empty
-        unit is a share and is written in percent.
+        unit or ``1`` is a share and is written in percent.
     signed : bool
         Write a plus as well.
 
@@ -169,8 +170,8 @@ def engineering(value: float | None, unit: str, *, signed: bool = False) -> str:
     sign = "+" if signed and value >= 0 else ""
     if unit.startswith("dB"):
         return f"{sign}{value + 0.0:.1f} {unit}"
-    if unit in ("", "%"):
-        return f"{sign}{_short(value * (1 if unit else 100))} %"
+    if unit in SHARE:
+        return f"{sign}{_short(value * 100)} %"
     factor, prefix = _prefix(value)
     number = _figures(value / factor) if unit == "s" else _short(value / factor)
     return f"{sign}{number} {prefix}{_UNITS.get(unit, unit)}"

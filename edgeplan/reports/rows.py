@@ -105,9 +105,9 @@ def _levels(net: NetResult) -> str:
 
 
 def _transition(net: NetResult) -> str:
-    """Tell the receiver's transition where the line and the load make it, not the edge."""
-    now = _slowed(net.transition_now_s, net.edge_now_s.typical or net.edge_now_s.slow)
-    after = _slowed(net.transition_after_s, net.edge_after_s.typical or net.edge_after_s.slow)
+    """Tell the receiver's transition, slow corner, where line and load make it, not the edge."""
+    now = _slowed(net.transition_now_s, net.edge_now_s.slow)
+    after = _slowed(net.transition_after_s, net.edge_after_s.slow)
     times = ((now, "now"), (after, "after"))
     words = now if now == after else ", ".join(f"{time} {when}" for time, when in times if time)
     reason = "the resistor and the load set it"

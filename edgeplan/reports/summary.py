@@ -182,7 +182,7 @@ def _assumptions(results: Results) -> Iterator[str]:
     unused = [entry.text for entry in results.assumptions if entry.subject == NOT_USED]
     named = [text.partition(": ")[2] or text for text in unused]
     if named:
-        yield f"accepted, not used yet: {phrases.listed(named)}"
+        yield f"accepted, not used yet: {'; '.join(named)}"
     groups = _grouped(
         [(entry.text, entry.subject) for entry in results.assumptions if entry.subject != NOT_USED]
     )

@@ -107,9 +107,9 @@ def _body(results: Results, width: int, *, colour: bool) -> Iterator[str]:
 
 def _group(interface: str, nets: list[NetResult]) -> str:
     """Return the heading line of an interface."""
-    classes = dict.fromkeys(net.timing_class for net in nets)
+    classes = sorted({net.timing_class for net in nets if net.timing_class})
     count = f"{len(nets)} net{'s' if len(nets) != 1 else ''}"
-    return f"{interface or 'no interface'}: {count}, {', '.join(sorted(classes))}"
+    return f"{interface or 'no interface'}: {', '.join([count, *classes])}"
 
 
 def _fitted(results: Results, words: list[Row], width: int) -> tuple[list[Column], list[int]]:

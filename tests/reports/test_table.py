@@ -74,9 +74,9 @@ def test_check_shows_no_proposal(sample):
 
 def test_a_receiver_slower_than_one_and_a_half_edges_is_told(results):
     text = reports.render(results, "table")
-    assert "transition at the receiver 6.40 ns now, 2.10 ns after" in text
+    assert "transition at the receiver 8.40 ns now, 2.70 ns after" in text
     net = dataclasses.replace(
-        results.nets[2], transition_now_s=1.5 * 3.6e-9, transition_after_s=None
+        results.nets[2], transition_now_s=1.5 * 4.9e-9, transition_after_s=None
     )
     calm = reports.render(dataclasses.replace(results, nets=[net]), "table")
     assert "transition at the receiver" not in calm
@@ -102,7 +102,7 @@ def test_everything_a_reader_must_know_stands_below_the_rows(results):
         "most from SDR_CLK 71 %, REF50_PHY 20 %, SDR_A0 6 %",
         "differential (2): USB_DN, USB_DP",
         "smallest edge of cm1 fixed: decides 2 nets (CAM_D0, CAM_PCLK)",
-        "accepted, not used yet: [[pair]], deadline of exp",
+        "accepted, not used yet: [[pair]]; deadline of exp",
         "DEBUG_CLK: edge-too-fast: until 2027-03-31 by reviewer",
         "compared with the printed edition: cispr32-class-b-3m",
         "cable, version 1: ±3.4 dB",
