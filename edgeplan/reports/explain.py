@@ -138,14 +138,19 @@ def _line(net: NetResult) -> Iterator[list[str]]:
 def _edges(net: NetResult) -> Iterator[list[str]]:
     """Yield the launched edge at the corners and the receiver's transition."""
     yield ["ns", "fast", "typical", "slow", "transition at the receiver"]
-    yield ["now", *_corners(net.edge_now_s), phrases.nanoseconds(net.transition_now_s)]
+    yield ["now", *_corners(net.edge_now_s), _told(net.transition_now_s)]
     if _changes(net):
-        yield ["after", *_corners(net.edge_after_s), phrases.nanoseconds(net.transition_after_s)]
+        yield ["after", *_corners(net.edge_after_s), _told(net.transition_after_s)]
 
 
 def _corners(edge_s: Corners) -> list[str]:
     """Write an edge at its three corners."""
     return [phrases.nanoseconds(value) for value in (edge_s.fast, edge_s.typical, edge_s.slow)]
+
+
+def _told(transition_s: float | None) -> str:
+    """Write a transition where the record tells one."""
+    return "" if transition_s is None else phrases.nanoseconds(transition_s)
 
 
 def _window(window: Window) -> Iterator[list[str]]:
@@ -205,6 +210,8 @@ def _margin(check: Check) -> str:
     words = phrases.engineering(check.margin, check.unit, signed=True)
     if check.error is None or check.margin is None:
         return words if check.decided else "undecided"
+    if check.error.low == -check.error.high:
+        return f"{words} ±{phrases.engineering(check.error.high, check.unit)}"
     low = phrases.engineering(check.error.low, check.unit, signed=True)
     high = phrases.engineering(check.error.high, check.unit, signed=True)
     return f"{words} ({low}/{high})"
@@ -273,14 +280,33 @@ def _cost(entry: Candidate) -> str:
 
 
 def _outcome(entry: Candidate, net: NetResult) -> str:
-    """Tell whether a candidate is drawn or proposed, and what rejects it."""
+    """Tell whether a candidate is drawn or proposed, and why it was not taken."""
     words = [
         "as drawn" if entry.candidate == net.candidate_now else "",
         "proposed" if entry.candidate == net.proposal and _changes(net) else "",
-        "passes every check" if entry.passes else "",
+        _passing(entry, net) if entry.passes else "",
         entry.why_rejected or ("" if entry.passes else _rejecting(entry, net)),
     ]
     return "; ".join(word for word in words if word)
+
+
+def _passing(entry: Candidate, net: NetResult) -> str:
+    """Tell why a candidate that passes was not taken: least change, then the largest share."""
+    proposed = next((other for other in net.candidates if other.candidate == net.proposal), entry)
+    if entry is proposed or entry.why_rejected:
+        return "passes every check"
+    if _dearness(entry) > _dearness(proposed):
+        return "passes, dearer change"
+    shares = (entry.smallest_share or 0.0, proposed.smallest_share or 0.0)
+    if _dearness(entry) == _dearness(proposed) and shares[0] <= shares[1]:
+        return "passes, smaller share"
+    return "passes by itself, not with the other nets"
+
+
+def _dearness(entry: Candidate) -> tuple[int, int, int, int]:
+    """Return the changes of a candidate, the dearest kind first."""
+    cost = entry.cost
+    return cost.new_site, cost.link_to_value, cost.value, cost.setting
 
 
 def _rejecting(entry: Candidate, net: NetResult) -> str:

@@ -171,9 +171,10 @@ def engineering(value: float | None, unit: str, *, signed: bool = False) -> str:
     if unit.startswith("dB"):
         return f"{sign}{value + 0.0:.1f} {unit}"
     if unit in SHARE:
-        return f"{sign}{_short(value * 100)} %"
+        return f"{sign}{_short(value * 100, 3)} %"
     factor, prefix = _prefix(value)
-    number = _figures(value / factor) if unit == "s" else _short(value / factor)
+    figures = 4 if unit == "Hz" else 3
+    number = _figures(value / factor) if unit == "s" else _short(value / factor, figures)
     return f"{sign}{number} {prefix}{_UNITS.get(unit, unit)}"
 
 
@@ -192,9 +193,9 @@ def _figures(number: float) -> str:
     return f"{number:.{decimals}f}"
 
 
-def _short(number: float) -> str:
-    """Four figures at most, without zeros at the end: 33, 66.67, 4.7."""
-    return f"{float(f'{number:.4g}'):.10g}"
+def _short(number: float, figures: int) -> str:
+    """Some figures at most, without zeros at the end: 33, 66.67, 4.7."""
+    return f"{float(f'{number:.{figures}g}'):.10g}"
 
 
 def nanoseconds(duration_s: float | None) -> str:

@@ -36,6 +36,7 @@ def test_a_candidate_without_a_sentence_names_the_checks_it_fails(sample):
 def test_each_mechanism_of_an_emission_level_has_its_error(text):
     assert "by cable" in text
     assert "(-3.4/+3.4 dB)" in text
+    assert "-7.3 dB ±3.4 dB" in text
 
 
 def test_spectrum_tells_parity_parts_and_excess(text):
@@ -79,3 +80,22 @@ def test_a_net_without_pictures_is_explained_all_the_same(results):
     text = reports.render(results, "text")
     assert "Spectrum" not in text
     assert "EXP_STB" in text
+
+
+def test_a_candidate_that_passes_says_why_another_was_taken(sample):
+    net = sample.memory_clock()
+    more = [
+        sample.candidate(4, "D2S", 33, passes=True, share=0.2, new_site=1),
+        sample.candidate(5, "D1S", 33, passes=True, share=0.1, setting=1, link_to_value=1),
+        sample.candidate(6, "D3F", 22, passes=True, share=0.9, setting=1),
+    ]
+    record = sample.record(
+        "explain", [dataclasses.replace(net, candidates=[*net.candidates, *more])]
+    )
+    lines = reports.render(record, "text").splitlines()
+    outcomes = [line for line in lines if line.lstrip().startswith(("4 ", "5 ", "6 "))]
+    assert [line.rpartition("  ")[2] for line in outcomes] == [
+        "passes, dearer change",
+        "passes, smaller share",
+        "passes by itself, not with the other nets",
+    ]

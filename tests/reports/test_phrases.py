@@ -21,6 +21,7 @@ from edgeplan.results import Corners, Window, WindowEnd
         (4700.0, "ohm", "4.7 kΩ"),
         (0.0, "ohm", "0 Ω"),
         (0.3, "V", "300 mV"),
+        (-0.4949, "V", "-495 mV"),
         (-0.04, "dB", "-0.0 dB"),
         (41.25, "dBµV/m", "41.2 dBµV/m"),
         (0.155, "", "15.5 %"),
