@@ -158,7 +158,7 @@ def _shape_problems(pieces: Sequence[_Piece], nets: NetList | None) -> Iterator[
         by_net.setdefault(far.get(piece.net, piece.net), []).append(piece)
     for net, own in by_net.items():
         yield from _one_tree(own)
-        if nets is not None:
+        if nets is not None and net in nets.entries:
             yield from _pins(own, nets.entries[net])
 
 

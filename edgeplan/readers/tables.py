@@ -190,15 +190,13 @@ def _too_long(row: Row, header: Row, separator: str, file: str) -> Problem:
 
 def _starts(line: str, separator: str) -> list[int]:
     """Return the column, from 1, at which the text of each cell starts."""
-    starts = []
-    position = 0
-    quoted = False
+    starts = [0]
+    inside = False  # of quotes, which count only in a cell that starts with one
     for index, letter in enumerate(line):
-        quoted ^= letter == '"'
-        if letter == separator and not quoted:
-            starts.append(position)
-            position = index + 1
-    starts.append(position)
+        if letter == '"' and line[starts[-1]] == '"':
+            inside = not inside
+        elif letter == separator and not inside:
+            starts.append(index + 1)
     return [start + 1 + _blanks(line, start, separator) for start in starts]
 
 

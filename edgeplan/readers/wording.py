@@ -18,6 +18,7 @@ _BOUNDS = {
     "less_than_equal": "has to be at most",
 }
 _BOUND_KEYS = {"greater_than": "gt", "greater_than_equal": "ge", "less_than": "lt"}
+_COUNTS = {"too_short": "few", "too_long": "many"}
 _WANTED = {
     "string_type": ("a text", 'write it in quotes: "..."'),
     "float_type": ("a number", "write digits with a decimal point and no quotes"),
@@ -76,6 +77,8 @@ class _Finding:
         """Word the error."""
         kind = self.detail["type"]
         where = self.document.where(self.path)
+        if kind in _COUNTS or (kind == "missing" and isinstance(self.detail["loc"][-1], int)):
+            return where.problem(f"the list has too {_COUNTS.get(kind, 'few')} entries")
         if kind == "missing":
             key = str(self.detail["loc"][-1])
             return where.problem(
