@@ -1,0 +1,245 @@
+"""What earlier edges do to a later one: interference between bits, clocks that never settle."""
+
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan.nets import Nets
+from edgeplan.physics import waveforms
+from edgeplan.physics.interference import peak_distortion
+from edgeplan.physics.network import Trees
+from edgeplan.physics.sources import Drive
+
+Array = NDArray[Any]
+
+SETTLED = 1e-3  # of the swing: what is left after one bit counts from here on
+SAMPLES_PER_BIT = 32
+STEPS_PER_SAMPLE = 5  # of the engine, so that a ramp of a sixteenth of a bit has ten steps
+BITS = 8  # length of the pulse that is folded
+ROWS = 512  # waveforms held at once
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class BitEffects:
+    """Later crossing than that of an isolated edge, worst level at the end of a bit. (R, C)
+
+    ``transition_s`` is NaN except for clocks in a periodic state that differs from an
+    isolated edge.
+    """
+
+    delay_rising_s: Array
+    delay_falling_s: Array
+    worst_level: Array
+    transition_s: Array
+
+
+def bit_effects(
+    nets: Nets, trees: Trees, source: Drive, levels: waveforms.Levels, readings: waveforms.Readings
+) -> BitEffects:
+    """Effects of earlier edges where an edge has not settled within one bit.
+
+    Parameters
+    ----------
+    nets : Nets
+        N nets with R receivers.
+    trees : Trees
+        Their trees at the same corner as the source.
+    source : Drive
+        Candidates (N, C) at one corner.
+    levels : Levels
+        Thresholds (R,).
+    readings : Readings
+        Of isolated edges, (R, C).
+
+    Returns
+    -------
+    BitEffects
+        Zero delay and the isolated level where an edge settles in time. [s], [-]
+    """
+    shape = readings.level_after.shape
+    effects = BitEffects(
+        delay_rising_s=np.zeros(shape),
+        delay_falling_s=np.zeros(shape),
+        worst_level=np.array(readings.level_after, dtype=float),
+        transition_s=np.full(shape, np.nan),
+    )
+    with np.errstate(invalid="ignore"):
+        unsettled = readings.residual > SETTLED
+    unsettled &= np.isfinite(nets.bit_s)[nets.receiver_net][:, None]
+    clock = np.array([f.timing == "clock" for f in nets.facts])[nets.receiver_net][:, None]
+    if np.any(unsettled & ~clock):
+        _data(nets, trees, source, levels, readings, unsettled & ~clock, effects)
+    if np.any(unsettled & clock):
+        _clocks(nets, trees, source, levels, readings, unsettled & clock, effects)
+    return effects
+
+
+def _chosen(nets: Nets, source: Drive, rows: Array) -> tuple[Array, Drive]:
+    """Nets and candidates that have an unsettled row at any of their receivers."""
+    wanted = np.zeros(source.exists.shape, dtype=bool)
+    np.logical_or.at(wanted, nets.receiver_net, rows)
+    index = np.flatnonzero((wanted & source.exists).any(axis=1))
+    picked = source.take(index)
+    return index, replace(picked, exists=picked.exists & wanted[index])
+
+
+def _place(nets: Nets, index: Array, found: waveforms.StepRows) -> tuple[Array, Array]:
+    """Receiver row and candidate of every waveform in the tables of the block."""
+    counts = np.diff(nets.first_receiver)[index]
+    start = np.concatenate([[0], np.cumsum(counts)])[:-1]
+    receiver = nets.first_receiver[index][found.net] + found.receiver - start[found.net]
+    return receiver, found.candidate
+
+
+def _data(
+    nets: Nets,
+    trees: Trees,
+    source: Drive,
+    levels: waveforms.Levels,
+    readings: waveforms.Readings,
+    rows: Array,
+    effects: BitEffects,
+) -> None:
+    """Worst pattern of earlier bits, by peak distortion of the step response."""
+    index, drive = _chosen(nets, source, rows)
+    for few in _parts(drive, np.diff(nets.first_receiver)[index]):
+        own = index[few]
+        step_s = nets.bit_s[own] / (SAMPLES_PER_BIT * STEPS_PER_SAMPLE)
+        found = waveforms.step_rows(
+            trees.take(own),
+            _not_faster(drive.take(few), 10 * step_s),
+            duration_s=BITS * nets.bit_s[own],
+            step_s=step_s,
+        )
+        _fold(nets, own, found, levels, readings, effects)
+
+
+def _parts(drive: Drive, receivers: Array) -> Iterator[Array]:
+    """Nets in groups of about so many waveforms as are held at once."""
+    rows = drive.exists.sum(axis=1) * receivers
+    group = np.cumsum(rows) // ROWS
+    return (np.flatnonzero(group == g) for g in np.unique(group))
+
+
+def _not_faster(drive: Drive, shortest_s: Array) -> Drive:
+    """The same sources with ramps no shorter than the steps can carry.
+
+    What is left after a whole bit does not depend on an edge that is a sixteenth of it.
+    """
+    return replace(drive, ramp_s=np.maximum(drive.ramp_s, shortest_s[:, None]))
+
+
+def _fold(
+    nets: Nets,
+    index: Array,
+    found: waveforms.StepRows,
+    levels: waveforms.Levels,
+    readings: waveforms.Readings,
+    effects: BitEffects,
+) -> None:
+    """Worst bits of the waveforms found, written into the tables."""
+    receiver, candidate = _place(nets, index, found)
+    step = found.level[:, ::STEPS_PER_SAMPLE][:, : BITS * SAMPLES_PER_BIT]
+    one, zero, start_bit = _worst_bits(step)
+    low = np.asarray(levels.threshold_low)[receiver]
+    high = np.asarray(levels.threshold_high)[receiver]
+    bit = nets.bit_s[index][found.net]
+    phase = (start_bit[:, None] + np.arange(SAMPLES_PER_BIT) / SAMPLES_PER_BIT) * bit[:, None]
+    for name, level, threshold, isolated in (
+        ("delay_rising_s", one, high, readings.rise_last_s),
+        ("delay_falling_s", 1 - zero, 1 - low, readings.fall_last_s),
+    ):
+        crossing = _last_crossing(phase, level, threshold)
+        delay = np.maximum(crossing - isolated[receiver, candidate], 0.0)
+        getattr(effects, name)[receiver, candidate] = delay
+    worst = np.minimum(one.max(axis=1), (1 - zero).max(axis=1))
+    effects.worst_level[receiver, candidate] = worst
+
+
+def _worst_bits(step: Array) -> tuple[Array, Array, Array]:
+    """Worst one and worst zero over one bit, starting where the pulse is largest. (M, n)"""
+    one, zero, _ = peak_distortion(step, SAMPLES_PER_BIT)
+    pulse = step[:, SAMPLES_PER_BIT:] - step[:, :-SAMPLES_PER_BIT]
+    whole = step.shape[1] // SAMPLES_PER_BIT
+    first = np.argmax(
+        np.concatenate([step[:, :SAMPLES_PER_BIT], pulse], axis=1).reshape(
+            len(step), whole, SAMPLES_PER_BIT
+        )[:, :, -1],
+        axis=1,
+    )
+    return one, zero, first
+
+
+def _last_crossing(time_s: Array, level: Array, threshold: Array) -> Array:
+    """Latest time within the bit at which the level is still below its threshold. (M,) [s]"""
+    below = level < threshold[:, None]
+    width = level.shape[1]
+    last = np.where(below.any(axis=1), width - 1 - np.argmax(below[:, ::-1], axis=1), -1)
+    rows = np.arange(len(level))
+    here, after = np.maximum(last, 0), np.minimum(last + 1, width - 1)
+    rise = level[rows, after] - level[rows, here]
+    share = (threshold - level[rows, here]) / np.where(rise == 0, 1, rise)
+    step = time_s[rows, after] - time_s[rows, here]
+    crossing = time_s[rows, here] + np.clip(share, 0, 1) * step
+    never = last == width - 1
+    return np.where(never, np.inf, np.where(last < 0, time_s[:, 0], crossing))
+
+
+def _clocks(
+    nets: Nets,
+    trees: Trees,
+    source: Drive,
+    levels: waveforms.Levels,
+    readings: waveforms.Readings,
+    rows: Array,
+    effects: BitEffects,
+) -> None:
+    """Periodic steady state: crossings, transition and level of the first half of the period."""
+    index, drive = _chosen(nets, source, rows)
+    facts = [nets.facts[i] for i in index]
+    period = np.array([1 / (f.net.clock_hz or np.nan) for f in facts])
+    duty = np.array([f.interface.duty for f in facts])
+    found = waveforms.periodic_rows(trees.take(index), drive, period, duty)
+    receiver, candidate = _place(nets, index, found)
+    low = np.asarray(levels.threshold_low)[receiver]
+    high = np.asarray(levels.threshold_high)[receiver]
+    duty_row = duty[found.net]
+    for name, level, threshold, isolated, share in (
+        ("delay_rising_s", found.level, high, readings.rise_last_s, duty_row),
+        ("delay_falling_s", _falling(found.level, duty_row), 1 - low, readings.fall_last_s, 1 - duty_row),
+    ):
+        arrival = readings.half_s[receiver, candidate]
+        time, half = _after_arrival(found.time_s, level, arrival, share)
+        crossing = _last_crossing(time, half, threshold)
+        getattr(effects, name)[receiver, candidate] = np.maximum(
+            crossing - isolated[receiver, candidate], 0.0
+        )
+        worst = np.minimum(effects.worst_level[receiver, candidate], half.max(axis=1))
+        effects.worst_level[receiver, candidate] = worst
+    start = np.asarray(levels.transition_low)[receiver]
+    stop = np.asarray(levels.transition_high)[receiver]
+    time, half = _after_arrival(found.time_s, found.level, readings.half_s[receiver, candidate], duty_row)
+    spread = _last_crossing(time, half, stop) - _last_crossing(time, half, start)
+    effects.transition_s[receiver, candidate] = spread
+
+
+def _falling(level: Array, duty: Array) -> Array:
+    """One period seen from its falling edge, upside down, so that it reads like a rising one."""
+    shift = np.round(duty * level.shape[1]).astype(int)
+    columns = (np.arange(level.shape[1])[None, :] + shift[:, None]) % level.shape[1]
+    return 1 - np.take_along_axis(level, columns, axis=1)
+
+
+def _after_arrival(
+    time_s: Array, level: Array, half_s: Array, share: Array
+) -> tuple[Array, Array]:
+    """The stretch from a quarter before to a share of the period after the edge arrives. (M, n)"""
+    count = level.shape[1]
+    period = time_s[:, 1] * count
+    width = int(np.ceil(np.max(share) * count))
+    begin = np.round((half_s / period - 0.25 * share) * count).astype(int)
+    columns = begin[:, None] + np.arange(width)[None, :]
+    return columns * time_s[:, 1:2], np.take_along_axis(level, columns % count, axis=1)

@@ -1,0 +1,199 @@
+"""Checks as tables: value, limit and signed margin of every net and candidate."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from typing import Any, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan.results import Missing
+
+Array = NDArray[Any]
+Wants = Literal["faster", "slower"]
+
+CONDITION_CORNERS = ("slow", "fast")
+CONDITION_EDGES = ("rising", "falling")
+CONDITION_STATES = ("run", "boot")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CheckTable:
+    """One check of N nets and C candidates.
+
+    ``margin`` is signed, in ``unit``; ``share`` is the margin relative to what it is
+    measured against.  NaN in ``margin`` where the check applies means undecided;
+    ``because`` then says why, per net.  ``condition`` encodes receiver, corner, edge
+    and state of the worst case.
+    """
+
+    check: str
+    wants: Wants
+    unit: str
+    applies: Array
+    value: Array
+    limit: Array
+    margin: Array
+    share: Array
+    condition: Array
+    because: tuple[str, ...]
+    missing: tuple[Missing | None, ...]
+    error_low: Array
+    error_high: Array
+    extra: dict[str, Array] = field(default_factory=dict)
+
+    @property
+    def decided(self) -> Array:
+        """Where the check gave a number. (N, C)"""
+        return np.isfinite(self.margin)
+
+    @property
+    def fails(self) -> Array:
+        """Where the check is decided, applies and does not hold. (N, C)"""
+        with np.errstate(invalid="ignore"):
+            return self.applies[:, None] & (self.margin < 0)
+
+    @property
+    def open(self) -> Array:
+        """Where the check applies but could not be decided. (N, C)"""
+        return self.applies[:, None] & ~self.decided
+
+
+def condition_code(receiver: int, corner: str, edge: str, state: str) -> int:
+    """Where and when, in one number."""
+    return (
+        receiver * 8
+        + CONDITION_CORNERS.index(corner) * 4
+        + CONDITION_EDGES.index(edge) * 2
+        + CONDITION_STATES.index(state)
+    )
+
+
+def condition_words(code: int) -> tuple[int, str, str, str]:
+    """Receiver, corner, edge and state of a code.
+
+    >>> condition_words(condition_code(2, "fast", "falling", "run"))
+    (2, 'fast', 'falling', 'run')
+    """
+    return (
+        code // 8,
+        CONDITION_CORNERS[code // 4 % 2],
+        CONDITION_EDGES[code // 2 % 2],
+        CONDITION_STATES[code % 2],
+    )
+
+
+class Worst:
+    """Gathers the worst of one check over receivers, corners, edges and states."""
+
+    def __init__(self, check: str, wants: Wants, unit: str, shape: tuple[int, int]) -> None:
+        """Start with nothing seen for (N, C)."""
+        self.check, self.wants, self.unit = check, wants, unit
+        self.margin = np.full(shape, np.inf)
+        self.value = np.full(shape, np.nan)
+        self.limit = np.full(shape, np.nan)
+        self.share = np.full(shape, np.inf)
+        self.condition = np.zeros(shape, dtype=int)
+        self.applies = np.zeros(shape[0], dtype=bool)
+        self.because = [""] * shape[0]
+        self.missing: list[Missing | None] = [None] * shape[0]
+        self.error = np.zeros(shape)
+
+    def cannot(self, net: int, because: str, missing: Missing | None = None) -> None:
+        """The check applies to a net but a value is missing."""
+        self.applies[net] = True
+        self.margin[net] = np.nan
+        self.share[net] = np.nan
+        self.because[net] = self.because[net] or because
+        self.missing[net] = self.missing[net] or missing
+
+    def add(
+        self,
+        first_receiver: Array,
+        value: Array,
+        limit: Array,
+        scale: Array,
+        condition: tuple[str, str, str],
+        *,
+        larger_is_better: bool = False,
+        error: Array | float = 0.0,
+    ) -> None:
+        """Take in values (R, C) against limits that broadcast with them.
+
+        ``scale`` turns a margin into its share.  Rows of nets with several receivers are
+        reduced to the worst one; NaN stays NaN.  A NaN limit means the check does not
+        apply to that receiver.
+        """
+        value, limit, scale, error = np.broadcast_arrays(value, limit, scale, error)
+        margin = value - limit if larger_is_better else limit - value
+        stated = np.isfinite(limit)
+        counts = np.diff(first_receiver)
+        for k in range(int(counts.max(initial=0))):
+            nets = np.flatnonzero(counts > k)
+            rows = first_receiver[nets] + k
+            self._keep(nets, rows, k, margin, value, limit, scale, error, stated, condition)
+
+    def _keep(
+        self,
+        nets: Array,
+        rows: Array,
+        receiver: int,
+        margin: Array,
+        value: Array,
+        limit: Array,
+        scale: Array,
+        error: Array,
+        stated: Array,
+        condition: tuple[str, str, str],
+    ) -> None:
+        """Keep the rows of one receiver per net where they are worse than what was seen."""
+        self.applies[nets] |= stated[rows].any(axis=1)
+        new = margin[rows]
+        with np.errstate(invalid="ignore"):
+            worse = stated[rows] & ~(new >= self.margin[nets]) & ~np.isnan(self.margin[nets])
+        code = condition_code(receiver, *condition)
+        for table, source in (
+            (self.margin, new),
+            (self.value, value[rows]),
+            (self.limit, limit[rows]),
+            (self.share, new / scale[rows]),
+            (self.error, error[rows]),
+        ):
+            table[nets] = np.where(worse, source, table[nets])
+        self.condition[nets] = np.where(worse, code, self.condition[nets])
+
+    def table(self, extra: dict[str, Array] | None = None) -> CheckTable:
+        """The finished table; a check that never applied stays out of every count."""
+        return CheckTable(
+            check=self.check,
+            wants=self.wants,
+            unit=self.unit,
+            applies=self.applies,
+            value=self.value,
+            limit=self.limit,
+            margin=self.margin,
+            share=self.share,
+            condition=self.condition,
+            because=tuple(self.because),
+            missing=tuple(self.missing),
+            error_low=-self.error,
+            error_high=self.error,
+            extra=extra or {},
+        )
+
+
+def smallest_share(tables: Sequence[CheckTable]) -> tuple[Array, Array]:
+    """Smallest share over all checks that apply, and the index of its table.
+
+    Undecided checks do not count: they are counted by ``CheckTable.open``.
+
+    Returns
+    -------
+    numpy.ndarray, numpy.ndarray
+        (N, C) shares (inf where nothing applies) and indices of tables.
+    """
+    shares = np.stack(
+        [np.where(t.applies[:, None] & t.decided, t.share, np.inf) for t in tables], axis=0
+    )
+    best = np.argmin(shares, axis=0)
+    return np.take_along_axis(shares, best[None], axis=0)[0], best

@@ -1,0 +1,185 @@
+"""One candidate per net: least change first, then the largest smallest share, then the common value.
+
+Nets that share a setting field (a bank) or a resistor array are chosen together, exactly, by
+going through the settings of their banks and the values of their arrays.
+"""
+
+from collections import Counter, defaultdict
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from itertools import product
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan.candidates import Candidates
+from edgeplan.nets import NetFacts
+
+Array = NDArray[Any]
+
+SHARE_STEP = 0.1  # shares this close count as equal, so that the common value can decide
+# Weights keep the order of preference: a failing net outweighs every cost, a dearer kind of
+# change outweighs any number of cheaper ones on one net, and a share outweighs the value's rank.
+FAIL = 1e12
+COST = np.array([1e9, 1e8, 1e7, 1e6])
+SHARE = 1e3
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Tied:
+    """Nets that must be chosen together, and by what: bank or array name to its nets."""
+
+    nets: tuple[int, ...]
+    banks: dict[str, tuple[int, ...]]
+    arrays: dict[str, tuple[int, ...]]
+
+
+def tied_groups(facts: Sequence[NetFacts]) -> list[Tied]:
+    """Connected groups of nets that share banks or arrays; nets without either are left out."""
+    banks: dict[str, list[int]] = defaultdict(list)
+    arrays: dict[str, list[int]] = defaultdict(list)
+    for i, f in enumerate(facts):
+        if f.net.bank and f.net.bank[0]:
+            banks[f.net.bank[0]].append(i)
+        if f.net.array:
+            arrays[f.net.array].append(i)
+    groups: list[set[int]] = []
+    for members in [*banks.values(), *arrays.values()]:
+        joined = set(members)
+        apart = []
+        for group in groups:
+            if group & joined:
+                joined |= group
+            else:
+                apart.append(group)
+        groups = [*apart, joined]
+    return [
+        Tied(
+            nets=tuple(sorted(group)),
+            banks={name: tuple(m) for name, m in banks.items() if m[0] in group},
+            arrays={name: tuple(m) for name, m in arrays.items() if m[0] in group},
+        )
+        for group in sorted(groups, key=min)
+    ]
+
+
+def scores(
+    candidates: Candidates, passes: Array, share: Array, allowed: Array, common: Counter[float]
+) -> Array:
+    """What each candidate costs a net; lower is better, infinite where it may not be chosen.
+
+    Parameters
+    ----------
+    candidates : Candidates
+        Tables (N, C).
+    passes, allowed : numpy.ndarray
+        Whether a candidate passes every check, and whether it may be chosen. (N, C)
+    share : numpy.ndarray
+        Smallest share of its checks; -inf counts as the worst. (N, C)
+    common : Counter
+        How often a value stands on the board; the commoner wins a tie.
+
+    Returns
+    -------
+    numpy.ndarray
+        (N, C). A passing candidate is ranked by cost, then share; a failing one by share,
+        then cost: the least excess.
+    """
+    change = candidates.cost @ COST
+    steps = np.round(np.clip(np.nan_to_num(share, nan=-9.0), -9.0, 1.0) / SHARE_STEP)
+    rank = np.array(
+        [common.get(v, 0) for v in np.nan_to_num(candidates.series_ohm).ravel().tolist()]
+    ).reshape(candidates.series_ohm.shape)
+    tie = 0.5 * candidates.series_ohm / (1 + np.nanmax(candidates.series_ohm, initial=1.0))
+    tie = np.nan_to_num(tie) - np.minimum(rank, 400)
+    passing = change - SHARE * steps + tie
+    failing = FAIL - 1e7 * 1e3 * steps + 1e-3 * change + 1e-3 * tie
+    return np.where(candidates.exists & allowed, np.where(passes, passing, failing), np.inf)
+
+
+def choose(facts: Sequence[NetFacts], candidates: Candidates, score: Array) -> Array:
+    """Index of the chosen candidate per net, (N,), with every bank and array agreeing.
+
+    Parameters
+    ----------
+    facts : sequence of NetFacts
+        N nets.
+    candidates : Candidates
+        Tables (N, C).
+    score : numpy.ndarray
+        (N, C) from :func:`scores`.
+
+    Returns
+    -------
+    numpy.ndarray
+        Indices; a net of a group in which no common choice exists keeps candidate 0.
+    """
+    chosen = np.argmin(score, axis=1)
+    chosen = np.where(np.isfinite(score[np.arange(len(chosen)), chosen]), chosen, 0)
+    for group in tied_groups(facts):
+        best = _choose_together(facts, candidates, score, group)
+        for net, index in best.items():
+            chosen[net] = index
+    return chosen
+
+
+def _setting_name(facts: NetFacts, candidates: Candidates, net: int) -> list[str]:
+    """Setting name of every candidate of one net."""
+    names = [s.setting for s in facts.settings]
+    return [names[k] for k in candidates.setting[net]]
+
+
+def _choose_together(
+    facts: Sequence[NetFacts], candidates: Candidates, score: Array, group: Tied
+) -> dict[int, int]:
+    """Cheapest common choice of one group, by going through its banks' settings."""
+    names = {i: np.array(_setting_name(facts[i], candidates, i)) for i in group.nets}
+    options = [
+        sorted({str(n) for n in np.unique(np.concatenate([names[i] for i in members]))})
+        for members in group.banks.values()
+    ]
+    best: tuple[float, dict[int, int]] = (np.inf, {i: 0 for i in group.nets})
+    for settings in product(*options):
+        masked = {i: score[i].copy() for i in group.nets}
+        for setting, members in zip(settings, group.banks.values(), strict=True):
+            for i in members:
+                masked[i][names[i] != setting] = np.inf
+        total, picked = _arrays_agree(candidates, masked, group)
+        if total < best[0]:
+            best = (total, picked)
+    return best[1]
+
+
+def _arrays_agree(
+    candidates: Candidates, masked: dict[int, Array], group: Tied
+) -> tuple[float, dict[int, int]]:
+    """Cheapest candidates with one value per array, for fixed settings."""
+    total, picked = 0.0, {}
+    tied = {i for members in group.arrays.values() for i in members}
+    for i, score in masked.items():
+        if i not in tied:
+            picked[i] = int(np.argmin(score))
+            total += float(score[picked[i]])
+    for members in group.arrays.values():
+        cost, choice = _one_value(candidates, masked, members)
+        total += cost
+        picked.update(choice)
+    return total, picked
+
+
+def _one_value(
+    candidates: Candidates, masked: dict[int, Array], members: Iterable[int]
+) -> tuple[float, dict[int, int]]:
+    """Cheapest single value that every member of an array can take."""
+    members = list(members)
+    best: tuple[float, dict[int, int]] = (np.inf, {})
+    for value in np.unique(candidates.series_ohm[members]):
+        cost, choice = 0.0, {}
+        for i in members:
+            score = np.where(candidates.series_ohm[i] == value, masked[i], np.inf)
+            choice[i] = int(np.argmin(score))
+            cost += float(score[choice[i]])
+        if cost < best[0]:
+            best = (cost, choice)
+    return best

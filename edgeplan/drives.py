@@ -1,0 +1,158 @@
+"""Settings of a driver at the three corners, ready to become arrays."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from math import isnan, nan
+
+from edgeplan.board import Driver, Range, Setting
+
+CORNERS = ("slow", "typical", "fast")
+DIRECTIONS = ("rising", "falling")
+
+# 0-100 % of the waveform edge (raised cosine) and of the spectrum edge (straight ramp) for an
+# edge stated between two levels; raised cosine: t = te (1 - 2 acos(1 - 2 p)/pi) for p to 1 - p.
+RAISED_COSINE_SHARE = {"10-90": 0.590334, "20-80": 0.409666, "30-70": 0.261980, "0-100": 1.0}
+STRAIGHT_SHARE = {"10-90": 0.8, "20-80": 0.6, "30-70": 0.4, "0-100": 1.0}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Quantity:
+    """One quantity of a setting at the three corners; NaN where no value stands."""
+
+    slow: float = nan
+    typical: float = nan
+    fast: float = nan
+    provenance: str = "datasheet"
+
+    def at(self, corner: str) -> float:
+        """Value at one corner."""
+        return float(getattr(self, corner))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SettingCorners:
+    """One setting: resistance, edges and pad capacitance at every corner and direction.
+
+    ``ramp_s`` is the 0-100 % raised cosine of the waveforms, ``trapezoid_s`` the 0-100 %
+    straight ramp of the spectrum; both come from the same stated edge.
+    """
+
+    setting: str
+    resistance_ohm: Mapping[str, Quantity]
+    ramp_s: Mapping[str, Quantity]
+    trapezoid_s: Mapping[str, Quantity]
+    pad_f: Quantity
+    source: str = ""
+    missing: tuple[str, ...] = field(default=())
+
+    @property
+    def symmetric(self) -> bool:
+        """Whether rising and falling are mirror images."""
+        return (
+            self.resistance_ohm["rising"] == self.resistance_ohm["falling"]
+            and self.ramp_s["rising"] == self.ramp_s["falling"]
+        )
+
+
+def _corners(
+    stated: Range[float] | float | None, spread: float | None, provenance: str
+) -> Quantity:
+    """Slow, typical and fast of a quantity whose maximum is the slow side."""
+    if stated is None:
+        return Quantity(provenance=provenance)
+    if not isinstance(stated, Range):
+        return Quantity(slow=stated, typical=stated, fast=stated, provenance=provenance)
+    low, typical, high = (nan if v is None else float(v) for v in _three(stated))
+    if spread is not None and not isnan(typical):
+        bound = isnan(low) or isnan(high)
+        low = typical * (1 - spread) if isnan(low) else low
+        high = typical * (1 + spread) if isnan(high) else high
+        provenance = "bound" if bound else provenance
+    if isnan(typical) and not (isnan(low) or isnan(high)):
+        typical = 0.5 * (low + high)
+    return Quantity(slow=high, typical=typical, fast=low, provenance=provenance)
+
+
+def _three(stated: Range[float]) -> tuple[float | None, float | None, float | None]:
+    """Minimum, typical, maximum."""
+    return stated.min, stated.typ, stated.max
+
+
+def _scaled(quantity: Quantity, factor: float) -> Quantity:
+    """The same quantity times a constant."""
+    return Quantity(
+        slow=quantity.slow * factor,
+        typical=quantity.typical * factor,
+        fast=quantity.fast * factor,
+        provenance=quantity.provenance,
+    )
+
+
+def _missing(name: str, quantities: Mapping[str, Quantity]) -> list[str]:
+    """Which of minimum and maximum a setting does not state."""
+    found = []
+    for corner, word in (("fast", "minimum"), ("slow", "maximum")):
+        if any(isnan(q.at(corner)) for q in quantities.values()):
+            found.append(f"{word} {name}")
+    return found
+
+
+def setting_corners(setting: Setting) -> SettingCorners:
+    """Corner values of one setting.
+
+    The slow corner takes the highest resistance, the longest edge and the largest
+    capacitance; the fast corner the opposite.  A value that is not stated stays NaN:
+    a maximum is never used as a minimum.
+
+    Parameters
+    ----------
+    setting : Setting
+        As the user wrote it, edges between ``edge_levels`` of the open-circuit voltage.
+
+    Returns
+    -------
+    SettingCorners
+        Resistance [ohm], edges [s] and pad capacitance [F].
+
+    Examples
+    --------
+    >>> corners = setting_corners(
+    ...     Setting(setting="A", resistance_ohm={"min": 20, "typ": 30, "max": 40},
+    ...             edge_s={"max": 1.6e-9}))
+    >>> corners.resistance_ohm["rising"].slow, corners.missing
+    (40.0, ('minimum edge',))
+    """
+    spread, origin = setting.spread, setting.provenance
+    up = setting.resistance_up_ohm or setting.resistance_ohm
+    down = setting.resistance_down_ohm or setting.resistance_ohm
+    edge_up = setting.edge_up_s or setting.edge_s
+    edge_down = setting.edge_down_s or setting.edge_s
+    resistance = {
+        "rising": _corners(up, spread, origin),
+        "falling": _corners(down, spread, origin),
+    }
+    edge = {
+        "rising": _corners(edge_up, spread, origin),
+        "falling": _corners(edge_down, spread, origin),
+    }
+    raised = 1 / RAISED_COSINE_SHARE[setting.edge_levels]
+    straight = 1 / STRAIGHT_SHARE[setting.edge_levels]
+    pad = 0.0 if setting.capacitance_f is None else setting.capacitance_f
+    stated_pad = pad.typ if isinstance(pad, Range) else pad
+    pads = _corners(pad, None, origin)
+    if isinstance(pad, Range) and (isnan(pads.slow) or isnan(pads.fast)):
+        pads = _corners(stated_pad, None, origin)
+    return SettingCorners(
+        setting=setting.setting,
+        resistance_ohm=resistance,
+        ramp_s={d: _scaled(q, raised) for d, q in edge.items()},
+        trapezoid_s={d: _scaled(q, straight) for d, q in edge.items()},
+        pad_f=pads,
+        source=setting.source,
+        missing=tuple(_missing("resistance", resistance) + _missing("edge", edge)),
+    )
+
+
+def driver_corners(driver: Driver) -> dict[str, SettingCorners]:
+    """Every setting of a driver by its name."""
+    return {s.setting: setting_corners(s) for s in driver.settings}

@@ -1,0 +1,139 @@
+"""Waveforms and spectra of one net as drawn and as proposed, for pictures."""
+
+from typing import TYPE_CHECKING, Any, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan.candidates import Candidates, drive, setting_table
+from edgeplan.emission_lines import is_data
+from edgeplan.nets import Nets
+from edgeplan.physics import waveforms
+from edgeplan.physics.radiation import level_dbuv_per_m
+from edgeplan.physics.spectra import corner_frequencies_hz
+from edgeplan.radiated import Passive, source_levels
+from edgeplan.results import Pictures, Spectrum, Trace
+from edgeplan.scoring import Block
+
+if TYPE_CHECKING:
+    from edgeplan.record import Draft
+
+Array = NDArray[Any]
+
+SAMPLES = 240
+When = Literal["now", "after"]
+
+
+def draw(block: Block, row: int, draft: "Draft") -> Pictures:
+    """Received waveforms at both corners and the judged spectrum, now and after.
+
+    Parameters
+    ----------
+    block : Block
+        The block that holds the net.
+    row : int
+        Its row there.
+    draft : Draft
+        The run.
+
+    Returns
+    -------
+    Pictures
+        Waveforms [s], [V] and levels [dBuV/m].
+    """
+    nets = block.nets.take([row])
+    candidates = block.candidates.take(np.array([row]))
+    index = int(block.index[row])
+    changes: list[tuple[When, Candidates]] = [
+        ("now", candidates.state(draft.now.chosen[[index]])),
+        ("after", candidates.state(draft.after.chosen[[index]])),
+    ]
+    if draft.now.chosen[index] == draft.after.chosen[index]:
+        changes = changes[:1]
+    bench = draft.bench_after
+    traces, spectra = [], []
+    for when, state in changes:
+        traces += _traces(nets, state, bench.tolerance, when)
+        passive = bench.radiation.passive(nets)
+        levels = source_levels(nets, state, passive, bench.tolerance)[0, 0]
+        if np.isfinite(levels).all() and passive.lines.exists[0].any():
+            margin = bench.radiation.target.margin_db
+            spectra.append(_spectrum(nets, state, passive, levels, margin, when))
+    supply = nets.swing_v["typical"][0]
+    thresholds = {
+        "VIL": float(nets.threshold_low["typical"][0] * supply),
+        "VIH": float(nets.threshold_high["typical"][0] * supply),
+    }
+    return Pictures(waveforms=traces, spectra=spectra, thresholds_v=thresholds)
+
+
+def _traces(nets: Nets, state: Candidates, tolerance: float, when: When) -> list[Trace]:
+    """Edges at every receiver, slow and fast corner."""
+    facts = nets.facts[0]
+    direction = "falling" if facts.timing == "open-drain" else "rising"
+    found = []
+    for corner in ("slow", "fast"):
+        source = drive(nets, state, corner, direction, tolerance)
+        if not source.exists.any():
+            continue
+        window = _window_s(nets, source)
+        rows = waveforms.step_rows(nets.trees[corner], source, duration_s=np.array([window]))
+        keep = rows.time_s[0] <= window
+        step = max(1, int(keep.sum() // SAMPLES))
+        swing = nets.swing_v[corner][0]
+        for k, level in enumerate(rows.level):
+            volts = swing * (level if direction == "rising" else 1 - level)
+            pins = facts.net.receiver_pin
+            found.append(
+                Trace(
+                    receiver_pin=pins[k] if k < len(pins) else "",
+                    corner=corner,
+                    edge=direction,
+                    state=when,
+                    time_s=[float(t) for t in rows.time_s[k][keep][::step]],
+                    volt=[float(v) for v in volts[keep][::step]],
+                )
+            )
+    return found
+
+
+def _window_s(nets: Nets, source: Any) -> float:
+    """Time worth showing: the edge, eight line delays, never beyond two bits. [s]"""
+    path = nets.facts[0].path
+    delay = path.main_length_m * path.main_line.delay_s_per_m
+    wanted = float(2 * source.candidate_ramp_s().max() + 8 * delay + 1e-9)
+    bit = float(nets.bit_s[0])
+    return min(wanted, max(2 * bit, 2e-9)) if np.isfinite(bit) else wanted
+
+
+def _spectrum(
+    nets: Nets, state: Candidates, passive: Passive, levels: Array, margin_db: float, when: When
+) -> Spectrum:
+    """Levels of every judged line against its limit."""
+    facts, lines = nets.facts[0], passive.lines
+    shown = lines.exists[0] & (passive.over_budget[0] > 0)
+    ramp = setting_table(nets, "trapezoid_s", "fast", "falling")
+    ramp_s = float(ramp[0, state.setting[0, 0]] * state.ramp_factor[0, 0])
+    low, high = corner_frequencies_hz(facts.interface.duty, ramp_s, 1 / lines.toggle_hz[0])
+    trace = levels * passive.trace[0]
+    expected = levels * passive.cable_expected[0]
+    up_to = levels * passive.cable_up_to[0]
+    detector = passive.entries[int(passive.entry[0, int(np.argmax(shown))])][1]
+
+    def decibels(field: Array) -> list[float]:
+        with np.errstate(divide="ignore"):
+            return [round(float(v), 3) for v in np.maximum(level_dbuv_per_m(field), -99.0)[shown]]
+
+    return Spectrum(
+        state=when,
+        detector=detector,
+        frequency_hz=[float(f) for f in lines.frequency_hz[0][shown]],
+        order=[0 if is_data(facts) else round(float(n)) for n in lines.order[0][shown]],
+        expected_dbuv_per_m=decibels(np.hypot(trace, expected)),
+        up_to_dbuv_per_m=decibels(np.hypot(trace, up_to)),
+        trace_dbuv_per_m=decibels(trace),
+        cable_dbuv_per_m=decibels(expected),
+        limit_dbuv_per_m=[float(v) for v in (passive.budget_dbuv_per_m[0] + margin_db)[shown]],
+        corner_low_hz=float(low),
+        corner_high_hz=float(high),
+    )

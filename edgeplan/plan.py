@@ -1,0 +1,266 @@
+"""The whole run in the order the data flows; the front door of the library."""
+
+from collections import Counter
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan import record, scoring
+from edgeplan.board import Board
+from edgeplan.candidates import drawn_ohm
+from edgeplan.choice import per_net
+from edgeplan.evaluate import Bench, Evaluation, evaluate, strobe_flights
+from edgeplan.nets import NetFacts, resolve
+from edgeplan.radiated import radiation_of
+from edgeplan.readers import read_board
+from edgeplan.results import Results
+from edgeplan.scoring import Block, Progress, Scores
+from edgeplan.windows import StateWindow, solve
+
+Array = NDArray[Any]
+
+ROUNDS = 8  # of choosing again after an edge fell outside its own window
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class State:
+    """One candidate per net: its checks (one column) and its window, in board order."""
+
+    chosen: Array
+    evaluation: dict[int, tuple[Evaluation, int]]
+    window: dict[int, StateWindow]
+
+
+def plan(
+    board: Path | str,
+    *,
+    undecided: str | None = None,
+    jobs: int = 1,
+    progress: Callable[[str, float], None] | None = None,
+) -> Results:
+    """Windows, proposals and verdicts of a board.
+
+    Parameters
+    ----------
+    board : path
+        The board's folder or its ``board.toml``.
+    undecided : {"fail", "warn"}, optional
+        Overrides the board's policy.
+    jobs : int
+        Processes to use; the result does not depend on it.
+    progress : callable, optional
+        Called with a word and the share done.
+
+    Returns
+    -------
+    Results
+        The record that every report reads.
+
+    Raises
+    ------
+    edgeplan.errors.InputError
+        With every problem of the input files.
+    """
+    return _run(read_board(Path(board)), "plan", undecided, jobs, progress)
+
+
+def check(
+    board: Path | str,
+    *,
+    undecided: str | None = None,
+    jobs: int = 1,
+    progress: Callable[[str, float], None] | None = None,
+) -> Results:
+    """Verdicts of a board as drawn, without proposals; see `plan`."""
+    return _run(read_board(Path(board)), "check", undecided, jobs, progress)
+
+
+def explain(
+    board: Path | str,
+    net: str,
+    *,
+    undecided: str | None = None,
+    jobs: int = 1,
+    progress: Callable[[str, float], None] | None = None,
+) -> Results:
+    """One net with every candidate, every check and its pictures; see `plan`.
+
+    Raises
+    ------
+    edgeplan.errors.InputError
+        Also when the board has no such net.
+    """
+    read = read_board(Path(board))
+    name = record.find_net(read, net)
+    return _run(read, "explain", undecided, jobs, progress, only=name)
+
+
+def _run(
+    board: Board,
+    command: str,
+    undecided: str | None,
+    jobs: int,
+    progress: Progress | None,
+    only: str = "",
+) -> Results:
+    """Files to records to arrays to candidates to windows to choice to the record."""
+    facts, blocked = resolve(board)
+    bench = Bench(
+        tolerance=board.file.resistors.tolerance, radiation=radiation_of(board), strobe={}
+    )
+    blocks = scoring.blocks_of(facts, board, drawn_only=command == "check")
+    nothing = np.zeros(len(facts), dtype=int)
+    drawn_bench = bench.with_strobe(_flights(blocks, facts, nothing, bench))
+    now = _state(blocks, nothing, drawn_bench, progress)
+    if command == "check":
+        scores = _gathered(blocks, facts, drawn_bench, jobs, progress)
+        after, after_bench = now, drawn_bench
+    else:
+        scores, after, after_bench = _choose(blocks, facts, drawn_bench, jobs, progress)
+    able = scoring.can_pass(facts, board, after_bench, scores)
+    draft = record.Draft(
+        board=board,
+        command=command,
+        facts=tuple(facts),
+        blocked=tuple(blocked),
+        blocks=tuple(blocks),
+        scores=scores,
+        now=now,
+        after=after,
+        bench_now=drawn_bench,
+        bench_after=after_bench,
+        can_pass=able,
+        undecided=undecided or board.file.policy.undecided,
+        only=only,
+    )
+    return record.results(draft)
+
+
+def _gathered(
+    blocks: list[Block], facts: list[NetFacts], bench: Bench, jobs: int, progress: Progress | None
+) -> Scores:
+    """Scores of all candidates in board order."""
+    return scoring.gather(
+        blocks, scoring.score_blocks(blocks, bench, jobs, progress), len(facts)
+    )
+
+
+def _strobes(facts: list[NetFacts]) -> set[str]:
+    """Clock nets that source-synchronous data are timed against."""
+    return {
+        f.interface.clock_net
+        for f in facts
+        if f.timing == "source-synchronous" and f.interface.clock_net
+    }
+
+
+def _flights(
+    blocks: list[Block], facts: list[NetFacts], chosen: Array, bench: Bench
+) -> dict[str, Any]:
+    """Flights of all strobes with their chosen candidates."""
+    names = _strobes(facts)
+    flights: dict[str, Any] = {}
+    for block in blocks:
+        own = [i for i, f in enumerate(block.nets.facts) if f.net.net in names]
+        if own:
+            nets = block.nets.take(own)
+            state = block.candidates.take(own).state(chosen[block.index[own]])
+            flights.update(strobe_flights(nets, state, bench.tolerance))
+    return flights
+
+
+def _choose(
+    blocks: list[Block],
+    facts: list[NetFacts],
+    bench: Bench,
+    jobs: int,
+    progress: Progress | None,
+) -> tuple[Scores, State, Bench]:
+    """Choose, and choose again until strobes stand still and every edge lies in its own window."""
+    scores = _gathered(blocks, facts, bench, jobs, progress)
+    allowed = scores.candidates.exists.copy()
+    common = Counter(v for v in (drawn_ohm(f) for f in facts) if v > 0)
+    state: State | None = None
+    for _ in range(ROUNDS):
+        chosen = _chosen(facts, scores, allowed, common)
+        flights = _flights(blocks, facts, chosen, bench)
+        if flights != bench.strobe:
+            bench = bench.with_strobe(flights)
+            scores = _gathered(blocks, facts, bench, jobs, progress)
+            chosen = _chosen(facts, scores, allowed, common)
+            state = None
+        state = _state(blocks, chosen, bench, progress, known=state)
+        lucky = [
+            i
+            for i, k in enumerate(chosen)
+            if scores.passes[i, k] and not state.window[i].holds_present_edge
+        ]
+        if not lucky:
+            break
+        allowed[lucky, chosen[lucky]] = False
+        scores.passes[lucky, chosen[lucky]] = False
+        allowed[lucky, 0] = True
+    assert state is not None  # noqa: S101 - at least one round ran
+    return scores, state, bench
+
+
+def _chosen(
+    facts: list[NetFacts], scores: Scores, allowed: Array, common: Counter[float]
+) -> Array:
+    """One candidate per net; a second look prefers the values that the first one used most.
+
+    An undecided net keeps what is drawn, unless its bank or array moves it.
+    """
+    usable = scores.passes | ~scores.undecided
+    open_net = scores.undecided[:, 0]
+    usable = np.where(open_net[:, None], True, usable)
+    cost = per_net.scores(scores.candidates, scores.passes, scores.share, allowed & usable, common)
+    keep = np.where(np.arange(cost.shape[1])[None, :] == 0, -1.0, 0.0) * per_net.FAIL
+    cost = np.where(open_net[:, None] & ~scores.passes, cost + keep, cost)
+    first = per_net.choose(facts, scores.candidates, cost)
+    used = scores.candidates.series_ohm[np.arange(len(facts)), first]
+    counted = common + Counter(float(v) for v in used if v > 0)
+    cost = per_net.scores(
+        scores.candidates, scores.passes, scores.share, allowed & usable, counted
+    )
+    cost = np.where(open_net[:, None] & ~scores.passes, cost + keep, cost)
+    return per_net.choose(facts, scores.candidates, cost)
+
+
+def _state(
+    blocks: list[Block],
+    chosen: Array,
+    bench: Bench,
+    progress: Progress | None,
+    known: State | None = None,
+) -> State:
+    """Checks and windows of one candidate per net; what did not change is kept."""
+    evaluations: dict[int, tuple[Evaluation, int]] = {}
+    windows: dict[int, StateWindow] = {}
+    for done, block in enumerate(blocks):
+        if progress is not None:
+            progress("solving windows", done / len(blocks))
+        fresh = [
+            row
+            for row, i in enumerate(block.index)
+            if known is None or known.chosen[i] != chosen[i]
+        ]
+        if known is not None:
+            for i in block.index:
+                evaluations[int(i)] = known.evaluation[int(i)]
+                windows[int(i)] = known.window[int(i)]
+        if not fresh:
+            continue
+        nets = block.nets.take(fresh)
+        state = block.candidates.take(fresh).state(chosen[block.index[fresh]])
+        evaluation = evaluate(nets, state, bench)
+        for row, window in enumerate(solve(nets, state, bench)):
+            i = int(block.index[fresh[row]])
+            evaluations[i] = (evaluation, row)
+            windows[i] = window
+    return State(chosen=chosen, evaluation=evaluations, window=windows)
+

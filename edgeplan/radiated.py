@@ -1,0 +1,442 @@
+"""Emission of every candidate against the budget: limit less margin, at every judged line.
+
+What does not depend on driver and resistor is worked out once per net and frequency;
+a candidate costs one division and one multiplication per line.
+"""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan.board import Board, Cable
+from edgeplan.candidates import Candidates, setting_table
+from edgeplan.checks import CheckTable, condition_code
+from edgeplan.drives import DIRECTIONS
+from edgeplan.emission import cable as cable_part
+from edgeplan.emission import trace as trace_part
+from edgeplan.emission.mechanism import Cable as RadiatingCable
+from edgeplan.emission.mechanism import RadiationInputs
+from edgeplan.emission_lines import EmissionLines, lines_of
+from edgeplan.emission_target import Target, target_of
+from edgeplan.nets import NetFacts, Nets
+from edgeplan.physics.edge_factor import null_free_edge_factor
+from edgeplan.physics.floor_reflection import near_field_factor, site_factor
+from edgeplan.physics.lines import LineConstants, propagation
+from edgeplan.physics.network import response
+from edgeplan.physics.sources import source_terms, source_weights, stub_chain
+from edgeplan.results import Missing
+
+Array = NDArray[Any]
+
+UNKNOWN, NONE, DECLARED = "unknown", "none", "declared"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Passive:
+    """What N nets radiate per volt of source, at F lines, before the edge. (N, F)
+
+    ``over_budget`` is level over budget per volt; ``filtered`` the same with a good
+    filter on all cables (where nothing is declared about them). ``to_level`` turns a
+    level over budget into a field; ``entry`` says which line and detector binds.
+    """
+
+    lines: EmissionLines
+    terms: Array
+    over_budget: Array
+    filtered: Array | None
+    trace: Array
+    cable_expected: Array
+    cable_up_to: Array
+    budget_dbuv_per_m: Array
+    entry: Array
+    entries: tuple[tuple[str, str, float], ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Radiation:
+    """Emission target of a board and its cables; judges candidates."""
+
+    board: Board
+    target: Target
+    cables: tuple[Cable, ...]
+    cable_state: str
+    notes: tuple[str, ...] = ()
+    _kept: dict[tuple[str, ...], Passive] = field(default_factory=dict, repr=False, compare=False)
+
+    def passive(self, nets: Nets) -> Passive:
+        """Passive quantities of a block; the last few blocks are kept."""
+        key = tuple(f.net.net for f in nets.facts)
+        if key not in self._kept:
+            while len(self._kept) >= 4:
+                del self._kept[next(iter(self._kept))]
+            self._kept[key] = _passive(self, nets)
+        return self._kept[key]
+
+    def judge(
+        self, nets: Nets, candidates: Candidates, tolerance: float, *, state: str = "run"
+    ) -> CheckTable:
+        """Check ``emission`` of every candidate, fast corner. Margin in dB."""
+        passive = self.passive(nets)
+        excess = source_levels(nets, candidates, passive, tolerance)
+        open_cables = None
+        worst = _worst_line(passive.over_budget, excess)
+        if passive.filtered is not None:
+            open_cables = _worst_line(passive.filtered, excess)
+        return _table(self, nets, passive, worst, open_cables, excess, state)
+
+
+def radiation_of(board: Board) -> Radiation:
+    """Emission target and cables of a board, with what was taken for granted."""
+    declared = board.file.cable
+    notes = []
+    if declared is None and board.file.board.no_cables:
+        declared = []
+    if declared == [] and not board.file.board.no_cables:
+        declared = None
+    state = DECLARED
+    if declared is None:
+        state = UNKNOWN
+        notes.append("nothing is declared about cables: judged without and with a good filter")
+    elif not declared:
+        state = NONE
+    elif all(_undeclared(c) for c in declared):
+        state = UNKNOWN
+        notes.append("no cable states a filter: judged without and with a good filter on all")
+    else:
+        notes += [
+            f"cable {c.name}: no filter is stated, 0 dB is taken" for c in declared if _undeclared(c)
+        ]
+    notes += [f"cable {c.name}: its shield is not credited" for c in declared or () if c.shielded]
+    return Radiation(
+        board=board,
+        target=target_of(board),
+        cables=tuple(declared or ()),
+        cable_state=state,
+        notes=tuple(notes),
+    )
+
+
+def _undeclared(cable: Cable) -> bool:
+    """Whether a cable says nothing about a filter; a short floating one needs none."""
+    return (
+        cable.attenuation_db is None
+        and cable.series_impedance_ohm is None
+        and not (cable.floating or False)
+    )
+
+
+def source_levels(
+    nets: Nets, candidates: Candidates, passive: Passive, tolerance: float
+) -> Array:
+    """Volts of source spectrum over D at every line, worse of both edges, fast corner. (N, C, F)"""
+    found: Array | None = None
+    for direction in _edges(nets):
+        levels = _one_direction(nets, candidates, passive, tolerance, direction)
+        found = levels if found is None else np.maximum(found, levels)
+    assert found is not None  # noqa: S101 - there is always an edge
+    return found
+
+
+def _edges(nets: Nets) -> Sequence[str]:
+    """Edges to judge: one where rising and falling are alike."""
+    if all(f.timing == "open-drain" for f in nets.facts):
+        return ("falling",)
+    alike = all(s.symmetric for f in nets.facts for s in f.settings)
+    return DIRECTIONS[:1] if alike else DIRECTIONS
+
+
+def _one_direction(
+    nets: Nets, candidates: Candidates, passive: Passive, tolerance: float, direction: str
+) -> Array:
+    """Source amplitude times edge factor over |D|. (N, C, F)"""
+    at = np.arange(len(nets))[:, None], candidates.setting
+    resistance = setting_table(nets, "resistance_ohm", "fast", direction)[at]
+    pad = setting_table(nets, "pad_f", "fast", None)[at]
+    ramp = setting_table(nets, "trapezoid_s", "fast", direction)[at] * candidates.ramp_factor
+    series = candidates.series_ohm * (1 - tolerance)
+    weights = source_weights(resistance, series, pad).astype(np.complex64)
+    ratio = np.abs(weights @ passive.terms)
+    edge = null_free_edge_factor(passive.lines.frequency_hz[:, None, :] * ramp[:, :, None])
+    swing = nets.swing_v["fast"][:, None, None]
+    source = swing * passive.lines.per_swing[:, None, :]
+    with np.errstate(invalid="ignore"):
+        return np.asarray(source * edge / ratio)
+
+
+def _worst_line(per_volt: Array, levels: Array) -> tuple[Array, Array]:
+    """Largest level over budget and its line. (N, C); NaN where a level is not known."""
+    over = per_volt[:, None, :] * levels
+    line = np.argmax(over, axis=2)
+    return np.take_along_axis(over, line[..., None], axis=2)[..., 0], line
+
+
+def _table(
+    radiation: Radiation,
+    nets: Nets,
+    passive: Passive,
+    worst: tuple[Array, Array],
+    filtered: tuple[Array, Array] | None,
+    levels: Array,
+    state: str,
+) -> CheckTable:
+    """The check table of the worst line of every candidate."""
+    over, line = worst
+    rows = np.arange(len(nets))[:, None]
+    open_cables = np.zeros(over.shape, dtype=bool)
+    if filtered is not None:
+        settled = filtered[0] > 1
+        open_cables = (over > 1) & ~settled
+        over = np.where(settled, filtered[0], over)
+        line = np.where(settled, filtered[1], line)
+    with np.errstate(divide="ignore"):
+        excess_db = 20 * np.log10(over)
+    margin = np.where(open_cables, np.nan, -excess_db)
+    budget = passive.budget_dbuv_per_m[rows, line]
+    at_line = np.take_along_axis(levels, line[..., None], axis=2)[..., 0]
+    parts = {
+        name: at_line * getattr(passive, name)[rows, line]
+        for name in ("trace", "cable_expected", "cable_up_to")
+    }
+    error = _error_db(parts["trace"], parts["cable_expected"])
+    because, missing = _reasons(nets, passive, open_cables, worst, levels)
+    return CheckTable(
+        check="emission",
+        wants="slower",
+        unit="dB",
+        applies=passive.lines.exists.any(axis=1) | ~np.isfinite(passive.lines.toggle_hz),
+        value=budget + excess_db,
+        limit=budget,
+        margin=margin,
+        share=1 - 10 ** (-margin / 20),
+        condition=np.full(over.shape, condition_code(0, "fast", "rising", state)),
+        because=because,
+        missing=missing,
+        error_low=-error,
+        error_high=error,
+        extra={
+            "frequency_hz": passive.lines.frequency_hz[rows, line],
+            "order": passive.lines.order[rows, line],
+            "entry": passive.entry[rows, line],
+            **parts,
+        },
+    )
+
+
+def _error_db(trace: Array, cable: Array) -> Array:
+    """Stated error of the sum: that of each part by its share of the power. [dB]"""
+    power = trace**2 + cable**2
+    with np.errstate(invalid="ignore", divide="ignore"):
+        mixed = (
+            trace**2 * trace_part.MODEL.error_db + cable**2 * cable_part.MODEL.error_db
+        ) / power
+    return np.nan_to_num(mixed, nan=cable_part.MODEL.error_db)
+
+
+def _reasons(
+    nets: Nets, passive: Passive, open_cables: Array, worst: tuple[Array, Array], levels: Array
+) -> tuple[tuple[str, ...], tuple[Missing | None, ...]]:
+    """Why emission is undecided, per net: no rate, an inner layer, or cables not declared."""
+    because, missing = [""] * len(nets), [None] * len(nets)
+    for i, f in enumerate(nets.facts):
+        if not np.isfinite(passive.lines.toggle_hz[i]):
+            because[i] = "neither clock_mhz nor data_mbps is given"
+            missing[i] = Missing(value="clock_mhz or data_mbps", of=f"net {f.net.net}")
+        elif np.isnan(passive.trace[i]).all():
+            because[i] = "the net runs on an inner layer: its emission is not judged"
+        elif open_cables[i, 0]:
+            k = int(worst[1][i, 0])
+            needed = _needed_db(passive, i, k, levels[i, 0, k])
+            megahertz = passive.lines.frequency_hz[i, k] / 1e6
+            because[i] = f"needs {needed:.1f} dB on the cables at {megahertz:.0f} MHz"
+            missing[i] = Missing(value="cable filter", of="board.toml")
+    return tuple(because), tuple(missing)
+
+
+def _needed_db(passive: Passive, net: int, line: int, volts: float) -> float:
+    """Attenuation on the cables that brings one line to its budget. [dB]"""
+    budget = 10 ** (passive.budget_dbuv_per_m[net, line] / 20) * 1e-6
+    trace = volts * passive.trace[net, line]
+    cable = volts * passive.cable_expected[net, line]
+    room = budget**2 - trace**2
+    return float(np.inf if room <= 0 else 20 * np.log10(cable / np.sqrt(room)))
+
+
+def _passive(radiation: Radiation, nets: Nets) -> Passive:
+    """Work out what a block of nets radiates per volt of source."""
+    lines = lines_of(nets.facts, radiation.target)
+    terms, forward = _network(nets, lines.frequency_hz)
+    inputs = _inputs(radiation, nets, lines.frequency_hz)
+    cables = _cables(radiation, lines.frequency_hz)
+    up_to = cable_part.field_per_forward_ampere(
+        _with_cables(inputs, cables), lines.frequency_hz
+    )
+    surface = np.array([f.path.main_line.surface for f in nets.facts])
+    known = np.where(surface, 1.0, np.nan)[:, None] * forward
+    trace = trace_part.field_per_forward_ampere(inputs, lines.frequency_hz)
+    trace = trace * _enclosure(radiation.board, lines.frequency_hz) * known
+    up_to = up_to * known
+    expected = up_to * 10 ** (cable_part.MODEL.offset_db / 20)
+    judged = up_to if radiation.target.statistic == "worst-case" else expected
+    fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to)
+    return _against_budget(radiation, lines, terms, fields)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Fields:
+    """Distance times field per volt at node 0's source, by part. (N, F) [V/V]"""
+
+    trace: Array
+    judged: Array
+    expected: Array
+    up_to: Array
+
+
+def _against_budget(
+    radiation: Radiation, lines: EmissionLines, terms: Array, fields: _Fields
+) -> Passive:
+    """Each line and detector that holds at a frequency, and the one that binds."""
+    target = radiation.target
+    shape = lines.frequency_hz.shape
+    best = np.zeros(shape)
+    found = {name: np.zeros(shape) for name in ("trace", "expected", "up_to", "budget", "filtered")}
+    entry = np.zeros(shape, dtype=int)
+    entries = target.at(lines.frequency_hz)
+    credit = 10 ** (-cable_part.undeclared_filter_db(lines.frequency_hz) / 20)
+    for k, limit in enumerate(entries):
+        stated = np.isfinite(limit.level_dbuv_per_m) & lines.exists
+        budget_db = limit.level_dbuv_per_m - target.margin_db
+        detector = 10 ** (lines.detector_db(limit.detector, limit.bandwidth_hz) / 20)
+        received = detector * site_factor(lines.frequency_hz, limit.distance_m)
+        received = received / (np.sqrt(2) * limit.distance_m)
+        trace = fields.trace * near_field_factor(lines.frequency_hz, limit.distance_m) * received
+        budget = 10 ** (budget_db / 20) * 1e-6
+        over = np.hypot(trace, fields.judged * received) / budget
+        take = stated & ~(over <= best)
+        best = np.where(take, over, best)
+        with_filter = np.hypot(trace, fields.judged * received * credit) / budget
+        for name, value in (
+            ("trace", trace),
+            ("expected", fields.expected * received),
+            ("up_to", fields.up_to * received),
+            ("budget", budget_db),
+            ("filtered", with_filter),
+        ):
+            found[name] = np.where(take, value, found[name])
+        entry = np.where(take, k, entry)
+    return Passive(
+        lines=lines,
+        terms=terms,
+        over_budget=best,
+        filtered=found["filtered"] if radiation.cable_state == UNKNOWN else None,
+        trace=found["trace"],
+        cable_expected=found["expected"],
+        cable_up_to=found["up_to"],
+        budget_dbuv_per_m=found["budget"],
+        entry=entry,
+        entries=tuple((e.limit_id, e.detector, e.distance_m) for e in entries),
+    )
+
+
+def _network(nets: Nets, frequency_hz: Array) -> tuple[Array, Array]:
+    """Terms of D (N, 6, F) and the forward wave per volt at node 0 (N, F), fast corner."""
+    trees = nets.trees["fast"]
+    s = 2j * np.pi * frequency_hz
+    terms = np.empty((len(nets), 6, frequency_hz.shape[1]), dtype=np.complex64)
+    forward = np.empty(frequency_hz.shape)
+    for index in trees.shapes():
+        group = trees.take(index)
+        rows = np.arange(len(index))
+        admittance = response(group, s[index]).admittance
+        chain = stub_chain(group, s[index], rows) if np.any(group.stub_length_m > 0) else None
+        terms[index] = source_terms(admittance, s[index], chain=chain)
+        line = LineConstants(*(c[group.segment_offset[:-1], None] for c in group.line))
+        _, characteristic = propagation(s[index], line)
+        forward[index] = np.abs(1 / characteristic + admittance) / 2
+    return terms, forward
+
+
+def _inputs(radiation: Radiation, nets: Nets, frequency_hz: Array) -> RadiationInputs:
+    """Geometry of the nets as straight traces, with the load at their last receiver."""
+    facts = nets.facts
+    size = radiation.board.file.board.size_m
+    main = [f.path.main_line for f in facts]
+    line = LineConstants(
+        *(
+            np.array([getattr(m, name) for m in main])[:, None]
+            for name in LineConstants._fields
+        )
+    )
+    s = 2j * np.pi * frequency_hz
+    gamma, characteristic = propagation(s, line)
+    trees = nets.trees["fast"]
+    last = trees.segment_offset[:-1] + np.array([f.path.receiver_piece[-1] for f in facts])
+    load = s * trees.node_farad[last][:, None] + trees.node_siemens[last][:, None]
+    own = 1 / characteristic
+    half_width = 0.5 * min(size)
+    return RadiationInputs(
+        length_m=_column([f.path.main_length_m for f in facts]),
+        height_m=_column([m.height_m for m in main]),
+        permittivity=_column([m.permittivity for m in main]),
+        permittivity_effective=_column([m.permittivity_effective for m in main]),
+        impedance_ohm=_column([m.impedance_ohm for m in main]),
+        side_offset_m=_column([_offset_m(f, half_width) for f in facts]),
+        board_length_m=np.array(max(size)),
+        board_width_m=np.array(min(size)),
+        load_reflection=(own - load) / (own + load),
+        propagation_per_m=gamma,
+    )
+
+
+def _column(values: Sequence[float]) -> Array:
+    """Values per net as (N, 1)."""
+    return np.array(values, dtype=float)[:, None]
+
+
+def _offset_m(facts: NetFacts, half_width_m: float) -> float:
+    """Distance of the trace from the board's centre line; centred where nothing is stated."""
+    side = facts.net.side_distance_m
+    return 0.0 if side is None else max(half_width_m - side, 0.0)
+
+
+def _with_cables(
+    inputs: RadiationInputs, cables: tuple[RadiatingCable, ...] | None
+) -> RadiationInputs:
+    """The same nets with their cables."""
+    from dataclasses import replace
+
+    return replace(inputs, cables=cables)
+
+
+def _cables(
+    radiation: Radiation, frequency_hz: Array
+) -> tuple[RadiatingCable, ...] | None:
+    """Cables with their attenuation at the judged lines; None where nothing is declared."""
+    if radiation.cable_state == UNKNOWN and not radiation.cables:
+        return None
+    return tuple(
+        RadiatingCable(
+            length_m=c.length_m,
+            attenuation_db=_attenuation_db(c, frequency_hz),
+            floating=bool(c.floating),
+        )
+        for c in radiation.cables
+    )
+
+
+def _attenuation_db(cable: Cable, frequency_hz: Array) -> Array:
+    """Stated attenuation, or the credit of the filter part; never extrapolated. [dB]"""
+    if cable.attenuation_db is not None:
+        return cable_part.table_at(frequency_hz, cable.attenuation_db)
+    if cable.series_impedance_ohm is not None:
+        table = cable.series_impedance_ohm
+        return cable_part.filter_credit_db(cable_part.table_at(frequency_hz, table))
+    return np.zeros(frequency_hz.shape)
+
+
+def _enclosure(board: Board, frequency_hz: Array) -> Array:
+    """Factor of the enclosure on the trace's own field; cables leave it and keep theirs."""
+    stated = board.file.board.enclosure_attenuation_db
+    return np.asarray(10 ** (-cable_part.table_at(frequency_hz, stated) / 20))

@@ -1,0 +1,462 @@
+"""The results record of a run, assembled from what the run found."""
+
+import hashlib
+from collections import Counter, defaultdict
+from dataclasses import dataclass
+from math import isnan
+from typing import TYPE_CHECKING, Any
+
+from numpy.typing import NDArray
+
+from edgeplan import __version__, levels, net_record, pictures_of, unused
+from edgeplan.board import Board
+from edgeplan.candidates import drawn_ohm
+from edgeplan.caution import CAUTION
+from edgeplan.choice import per_net, remedies, settles
+from edgeplan.drives import CORNERS
+from edgeplan.emission import MECHANISMS, mechanism_of
+from edgeplan.errors import InputError, Problem
+from edgeplan.evaluate import Bench, evaluate
+from edgeplan.names import natural_key
+from edgeplan.nets import Blocked, NetFacts
+from edgeplan.results import (
+    VERDICTS,
+    ArrayChoice,
+    Assumption,
+    BankChoice,
+    BoardEmission,
+    Choice,
+    Conditions,
+    Corners,
+    FillIn,
+    Finding,
+    Input,
+    ModelNote,
+    NetResult,
+    NotJudged,
+    Place,
+    Remedy,
+    Results,
+    Spread,
+    TargetSummary,
+    Tool,
+    ValueCount,
+    Window,
+    WindowEnd,
+)
+from edgeplan.scoring import Block, Scores
+from edgeplan.windows import launched_edge_s
+
+if TYPE_CHECKING:
+    from edgeplan.plan import State
+
+Array = NDArray[Any]
+
+RULES = {
+    "too fast": "edge-too-fast",
+    "too slow": "edge-too-slow",
+    "no window": "window-closed",
+    "undecided": "edge-undecided",
+}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Draft:
+    """Everything a run found, before it is written down."""
+
+    board: Board
+    command: str
+    facts: tuple[NetFacts, ...]
+    blocked: tuple[Blocked, ...]
+    blocks: tuple[Block, ...]
+    scores: Scores
+    now: "State"
+    after: "State"
+    bench_now: Bench
+    bench_after: Bench
+    can_pass: Array
+    undecided: str
+    only: str
+
+
+def find_net(board: Board, name: str) -> str:
+    """Name of a net of the board, or which ones come close.
+
+    Raises
+    ------
+    InputError
+        When no net has that name.
+    """
+    from difflib import get_close_matches
+
+    names = [n.net for n in board.nets]
+    aliases = {n.far_net: n.net for n in board.nets if n.far_net}
+    if name in names or name in aliases:
+        return aliases.get(name, name)
+    folded = {n.casefold(): n for n in names}
+    if name.casefold() in folded:
+        return folded[name.casefold()]
+    close = get_close_matches(name, names, n=3) or names[:3]
+    raise InputError(
+        [
+            Problem(
+                f"the board has no net {name}",
+                "nets.csv",
+                1,
+                1,
+                field="net",
+                hint=f"write {' or '.join(close)}",
+            )
+        ]
+    )
+
+
+def results(draft: Draft) -> Results:
+    """Write the whole record down."""
+    board = draft.board
+    judged = _judged(draft)
+    nets = sorted(
+        [*judged, *(_blocked(b) for b in draft.blocked)], key=lambda n: natural_key(n.net)
+    )
+    if draft.only:
+        nets = [n for n in nets if n.net == draft.only]
+    not_judged = [
+        NotJudged(net=n.net, reason=n.kind) for n in board.nets if n.kind != "digital"
+    ]
+    target = draft.bench_now.radiation.target
+    return Results(
+        command=draft.command,
+        tool=Tool(version=__version__),
+        caution=CAUTION,
+        board=_title(board),
+        inputs=[Input(path=i.path, sha256=i.sha256) for i in board.inputs],
+        emission_target=TargetSummary(
+            limits=[line.id for line in target.lines],
+            margin_db=target.margin_db,
+            statistic=target.statistic,
+            highest_hz=target.highest_hz,
+            highest_rule=target.highest_rule,
+            verified=not target.unverified,
+            unverified=[*target.unverified, *_unverified_levels(draft.facts)],
+        ),
+        conditions=Conditions(corners=list(CORNERS), states=_states(draft.facts)),
+        models=_models(),
+        assumptions=_assumptions(draft),
+        nets=nets,
+        not_judged=sorted(not_judged, key=lambda n: natural_key(n.net)),
+        board_emission=BoardEmission(),
+        choice=_choice(draft),
+        findings=_findings(draft.command, nets),
+        totals=_totals([n.verdict for n in nets], len(not_judged)),
+        totals_after=_totals([n.verdict_after for n in nets], len(not_judged)),
+        fill_in=_fill_in(nets),
+        undecided_policy=draft.undecided,
+    )
+
+
+def _title(board: Board) -> str:
+    """Name and revision."""
+    facts = board.file.board
+    return f"{facts.name} {facts.revision}".strip()
+
+
+def _states(facts: tuple[NetFacts, ...]) -> list[str]:
+    """States that were judged."""
+    boot = any(f.setting_boot != f.setting for f in facts)
+    return ["boot", "run"] if boot else ["run"]
+
+
+def _models() -> list[ModelNote]:
+    """Models that levels rest on."""
+    notes = []
+    for name in MECHANISMS:
+        model = mechanism_of(name).MODEL
+        notes.append(
+            ModelNote(
+                model=model.name,
+                version=model.version,
+                error_db=Spread(low=-model.error_db, high=model.error_db),
+                source=model.source,
+            )
+        )
+    return notes
+
+
+def _judged(draft: Draft) -> list[NetResult]:
+    """Every net that was simulated."""
+    sentences = settles.minimum_edges(draft.facts, draft.board, draft.bench_now)
+    advice = _remedies(draft)
+    found = []
+    for block in draft.blocks:
+        states = {
+            "now": _net_states(block, draft.now, draft.bench_now),
+            "after": _net_states(block, draft.after, draft.bench_after),
+        }
+        every = _every(block, draft)
+        for row, i in enumerate(map(int, block.index)):
+            facts = draft.facts[i]
+            shown = bool(draft.only) and facts.net.net == draft.only
+            found.append(
+                net_record.write(
+                    net_record.NetDraft(
+                        facts=facts,
+                        board=draft.board,
+                        now=states["now"][row],
+                        after=states["after"][row],
+                        can_pass_now=bool(draft.can_pass[i]),
+                        remedies=tuple(advice.get(i, ())),
+                        settles=sentences[i],
+                        candidates=draft.scores.candidates,
+                        passes=draft.scores.passes,
+                        share=draft.scores.share,
+                        every=every if shown else None,
+                        every_row=row,
+                        row=i,
+                        pictures=pictures_of.draw(block, row, draft) if shown else None,
+                    )
+                )
+            )
+    return found
+
+
+def _every(block: Block, draft: Draft) -> Any:
+    """All candidates of the block that holds the net to be explained."""
+    if not draft.only or draft.only not in {f.net.net for f in block.nets.facts}:
+        return None
+    return evaluate(block.nets, block.candidates, draft.bench_after)
+
+
+def _net_states(block: Block, state: "State", bench: Bench) -> list[net_record.NetState]:
+    """One state of every net of a block."""
+    column = block.candidates.state(state.chosen[block.index])
+    edges = {c: launched_edge_s(block.nets, column, c)[:, 0] for c in ("slow", "fast")}
+    entries = bench.radiation.passive(block.nets).entries
+    found = []
+    for row, i in enumerate(map(int, block.index)):
+        evaluation, own = state.evaluation[i]
+        window = state.window[i]
+        value = (
+            column.pull_up_ohm
+            if block.nets.facts[row].timing == "open-drain"
+            else column.series_ohm
+        )[row, 0]
+        found.append(
+            net_record.NetState(
+                candidate=int(state.chosen[i]),
+                setting=int(column.setting[row, 0]),
+                value_ohm=float(value),
+                evaluation=evaluation,
+                row=own,
+                window=window,
+                edges_s={
+                    "slow": float(edges["slow"][row]),
+                    "typical": window.edge_s,
+                    "fast": float(edges["fast"][row]),
+                },
+                entries=entries,
+            )
+        )
+    return found
+
+
+def _remedies(draft: Draft) -> dict[int, list[Remedy]]:
+    """Remedies of nets that no candidate brings inside, per net."""
+    found: dict[int, list[Remedy]] = defaultdict(list)
+    for block in draft.blocks:
+        rows = [row for row, i in enumerate(map(int, block.index)) if _needs_remedy(draft, i)]
+        if not rows or block.nets.facts[0].timing == "open-drain":
+            continue
+        nets = block.nets.take(rows)
+        index = block.index[rows]
+        bench = draft.bench_after
+        without = [k for k, f in enumerate(nets.facts) if f.net.site == "none"]
+        if without:
+            highest = draft.board.file.resistors.highest_ohm
+            for k, remedy in zip(
+                without, remedies.new_site(nets.take(without), bench, highest), strict=True
+            ):
+                if remedy is not None:
+                    found[int(index[k])].append(remedy)
+        state = block.candidates.take(rows).state(draft.after.chosen[index])
+        passive = bench.radiation.passive(nets)
+        for k, remedy in enumerate(remedies.cable_filter(nets, state, passive, bench)):
+            evaluation, own = draft.after.evaluation[int(index[k])]
+            emission = next(t for t in evaluation.tables if t.check == "emission")
+            if emission.fails[own, 0]:
+                found[int(index[k])].append(remedy)
+    return found
+
+
+def _needs_remedy(draft: Draft, net: int) -> bool:
+    """Whether a net's chosen candidate fails some check."""
+    evaluation, row = draft.after.evaluation[net]
+    failing = evaluation.failing("faster") | evaluation.failing("slower")
+    return bool(failing[row, 0])
+
+
+def _blocked(blocked: Blocked) -> NetResult:
+    """A net that could not be simulated."""
+    net = blocked.net
+    nothing = Window(
+        slowest_allowed=WindowEnd(edge_s=None), fastest_acceptable=WindowEnd(edge_s=None)
+    )
+    return NetResult(
+        net=net.net,
+        aliases=[net.far_net] if net.far_net else [],
+        interface=net.interface or "",
+        timing_class="",
+        at=Place(file=net.at.file, row=net.at.row),
+        verdict="undecided",
+        verdict_after="undecided",
+        borderline=False,
+        borderline_after=False,
+        undecided_because=[blocked.reason],
+        edge_levels="10-90",
+        edge_now_s=Corners(),
+        edge_after_s=Corners(),
+        window_now=nothing,
+        window_after=nothing,
+        candidate_now=0,
+        proposal=0,
+        change="none",
+        proposal_text="no change",
+        what_binds=blocked.reason,
+        missing=[blocked.missing] if blocked.missing else [],
+    )
+
+
+def _totals(found: list[str], not_judged: int) -> dict[str, int]:
+    """Count per verdict, zeros included."""
+    counted = Counter(found)
+    return {v: counted.get(v, 0) for v in VERDICTS} | {"not judged": not_judged}
+
+
+def _findings(command: str, nets: list[NetResult]) -> list[Finding]:
+    """One finding per net that is not (or cannot be) inside."""
+    found = []
+    for net in nets:
+        verdict = net.verdict if command == "check" else net.verdict_after
+        if verdict not in RULES:
+            continue
+        rule = RULES[verdict]
+        reason = "; ".join(net.undecided_because) if verdict == "undecided" else net.what_binds
+        found.append(
+            Finding(
+                rule=rule,
+                net=net.net,
+                message=f"{net.net}: {verdict}: {reason}",
+                fingerprint=hashlib.sha256(f"{rule}\n{net.net}".encode()).hexdigest()[:16],
+            )
+        )
+    return found
+
+
+def _fill_in(nets: list[NetResult]) -> list[FillIn]:
+    """Missing values, those that most nets wait for first."""
+    waiting: dict[tuple[str, str], list[str]] = defaultdict(list)
+    for net in nets:
+        if net.verdict == "undecided":
+            for lack in net.missing:
+                waiting[lack.value, lack.of].append(net.net)
+    ordered = sorted(waiting.items(), key=lambda item: (-len(item[1]), item[0]))
+    return [FillIn(value=value, of=of, nets=names) for (value, of), names in ordered]
+
+
+def _assumptions(draft: Draft) -> list[Assumption]:
+    """What was taken for granted, and what was accepted but not used."""
+    board = draft.board
+    found = [
+        Assumption(subject="emission", text=note, provenance="assumed")
+        for note in draft.bench_now.radiation.notes
+    ]
+    target = draft.bench_now.radiation.target
+    if target.not_covered:
+        found.append(Assumption(subject="emission", text=target.not_covered, provenance="assumed"))
+    centred = sum(f.net.side_distance_m is None for f in draft.facts)
+    if centred:
+        text = f"{centred} nets state no distance to the board's side and count as centred"
+        found.append(Assumption(subject="geometry", text=text, provenance="assumed"))
+    no_pad = sorted({s.setting for f in draft.facts for s in f.settings if s.pad_f.slow == 0})
+    if no_pad:
+        text = f"settings without a pad capacitance have 0 pF: {', '.join(no_pad)}"
+        found.append(Assumption(subject="drivers", text=text, provenance="assumed"))
+    found += [Assumption(subject="input", text=t, provenance="assumed") for t in board.notes]
+    found += [
+        Assumption(subject="not used", text=text, provenance="assumed")
+        for text in unused.unused_values(board)
+    ]
+    return found
+
+
+def _unverified_levels(facts: tuple[NetFacts, ...]) -> list[str]:
+    """Level families in use whose figures are from memory."""
+    names = {r.levels or f.interface.levels for f in facts for r in f.receivers}
+    shipped = set(levels.ids())
+    return [
+        f"level family {name}"
+        for name in sorted(names & shipped)
+        if not levels.family(name).verified
+    ]
+
+
+def _choice(draft: Draft) -> Choice:
+    """How the proposals hang together: values, banks and arrays."""
+    values: dict[float, list[int]] = defaultdict(lambda: [0, 0])
+    tables = draft.scores.candidates
+    for i, f in enumerate(draft.facts):
+        pull = f.timing == "open-drain"
+        chosen = (tables.pull_up_ohm if pull else tables.series_ohm)[i, draft.after.chosen[i]]
+        drawn = drawn_ohm(f)
+        has_part = pull or f.net.site in ("fitted", "link") or chosen > 0
+        if has_part and not isnan(float(chosen)):
+            values[float(chosen)][0] += 1
+        if (pull or f.net.site in ("fitted", "link")) and not isnan(drawn):
+            values[drawn][1] += 1
+    groups = per_net.tied_groups(draft.facts)
+    banks = {name: members for g in groups for name, members in g.banks.items()}
+    arrays = {name: members for g in groups for name, members in g.arrays.items()}
+    return Choice(
+        scope="net, bank and array",
+        status="proved",
+        gap=0.0,
+        values=[
+            ValueCount(value_ohm=v, count=c[0], count_now=c[1]) for v, c in sorted(values.items())
+        ],
+        banks=[_bank(draft, name, members) for name, members in sorted(banks.items())],
+        arrays=[_array(draft, name, members) for name, members in sorted(arrays.items())],
+    )
+
+
+def _bank(draft: Draft, name: str, members: tuple[int, ...]) -> BankChoice:
+    """Settings of one bank as drawn and as proposed."""
+    tables = draft.scores.candidates
+    drawn = {draft.facts[i].settings[draft.facts[i].setting].setting for i in members}
+    chosen = {
+        draft.facts[i].settings[int(tables.setting[i, draft.after.chosen[i]])].setting
+        for i in members
+    }
+    text = "" if len(chosen) == 1 else "no common setting exists"
+    if len(drawn) > 1:
+        text = text or "drawn with several settings; one field can hold one"
+    return BankChoice(
+        bank=name,
+        setting_now=" ".join(sorted(drawn)),
+        setting=" ".join(sorted(chosen)),
+        members=[draft.facts[i].net.net for i in members],
+        text=text,
+    )
+
+
+def _array(draft: Draft, name: str, members: tuple[int, ...]) -> ArrayChoice:
+    """Value of one array as drawn and as proposed."""
+    tables = draft.scores.candidates
+    drawn = {drawn_ohm(draft.facts[i]) for i in members}
+    chosen = {float(tables.series_ohm[i, draft.after.chosen[i]]) for i in members}
+    return ArrayChoice(
+        array=name,
+        value_now_ohm=next(iter(drawn)) if len(drawn) == 1 else None,
+        value_ohm=max(chosen),
+        members=[draft.facts[i].net.net for i in members],
+        text="" if len(chosen) == 1 else "no common value exists",
+    )
+

@@ -1,0 +1,147 @@
+"""All candidates of a board, block by block, reduced to what choosing needs."""
+
+from collections import defaultdict
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan.board import Board
+from edgeplan.candidates import Candidates, list_candidates, list_continuous, list_drawn
+from edgeplan.evaluate import Bench, Evaluation, evaluate
+from edgeplan.nets import NetFacts, Nets, build
+
+Array = NDArray[Any]
+
+Progress = Callable[[str, float], None]
+BLOCK_NETS = 128
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Block:
+    """Nets of one timing class that are evaluated together; ``index`` are their places on the board."""
+
+    index: Array
+    nets: Nets
+    candidates: Candidates
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Scores:
+    """Every candidate of N nets in a few tables (N, C)."""
+
+    candidates: Candidates
+    passes: Array
+    undecided: Array
+    share: Array
+
+
+def blocks_of(facts: Sequence[NetFacts], board: Board, *, drawn_only: bool) -> list[Block]:
+    """Nets in blocks of one timing class; sizes depend on the input only.
+
+    Nets with another setting before firmware runs stand in blocks of their own, since
+    they are judged twice.
+    """
+    groups: dict[tuple[str, bool], list[int]] = defaultdict(list)
+    for i, f in enumerate(facts):
+        groups[f.timing, f.setting_boot != f.setting].append(i)
+    found = []
+    for members in groups.values():
+        for start in range(0, len(members), BLOCK_NETS):
+            index = members[start : start + BLOCK_NETS]
+            nets = build([facts[i] for i in index], board)
+            candidates = (
+                list_drawn(nets) if drawn_only else list_candidates(nets, board.file.resistors)
+            )
+            found.append(Block(index=np.array(index), nets=nets, candidates=candidates))
+    return found
+
+
+def score_block(block: Block, bench: Bench) -> Scores:
+    """Evaluate one block and keep what choosing needs."""
+    return summarise(block.candidates, evaluate(block.nets, block.candidates, bench))
+
+
+def summarise(candidates: Candidates, evaluation: Evaluation) -> Scores:
+    """Pass, undecided and smallest share of every candidate."""
+    failing = evaluation.failing("faster") | evaluation.failing("slower")
+    return Scores(
+        candidates=candidates,
+        passes=evaluation.passes,
+        undecided=evaluation.open() & ~failing,
+        share=evaluation.smallest_share,
+    )
+
+
+def score_blocks(
+    blocks: Sequence[Block], bench: Bench, jobs: int, progress: Progress | None
+) -> list[Scores]:
+    """Evaluate all blocks, over several processes if asked."""
+    if jobs > 1 and len(blocks) > 1:
+        from joblib import Parallel, delayed
+
+        found: list[Scores] = Parallel(n_jobs=jobs)(
+            delayed(score_block)(block, bench) for block in blocks
+        )
+        return found
+    return list(_one_by_one(blocks, bench, progress))
+
+
+def _one_by_one(
+    blocks: Sequence[Block], bench: Bench, progress: Progress | None
+) -> Iterator[Scores]:
+    """Evaluate blocks in this process, telling how far it is."""
+    for done, block in enumerate(blocks):
+        if progress is not None:
+            progress("judging candidates", done / len(blocks))
+        yield score_block(block, bench)
+
+
+def gather(blocks: Sequence[Block], scores: Sequence[Scores], count: int) -> Scores:
+    """Scores of all blocks in the order of the board, padded to one width."""
+    width = max((s.candidates.count for s in scores), default=1)
+    whole = Candidates(
+        setting=np.zeros((count, width), dtype=int),
+        series_ohm=np.zeros((count, width)),
+        pull_up_ohm=np.full((count, width), np.nan),
+        exists=np.zeros((count, width), dtype=bool),
+        cost=np.zeros((count, width, 4), dtype=int),
+        ramp_factor=np.ones((count, width)),
+    )
+    passes, undecided = np.zeros((2, count, width), dtype=bool)
+    share = np.full((count, width), -np.inf)
+    for block, found in zip(blocks, scores, strict=True):
+        own = found.candidates.count
+        at = np.ix_(block.index, np.arange(own))
+        for name in ("setting", "series_ohm", "pull_up_ohm", "exists", "cost", "ramp_factor"):
+            getattr(whole, name)[at] = getattr(found.candidates, name)
+        passes[at], undecided[at], share[at] = found.passes, found.undecided, found.share
+    return Scores(candidates=whole, passes=passes, undecided=undecided, share=share)
+
+
+def can_pass(facts: Sequence[NetFacts], board: Board, bench: Bench, scores: Scores) -> Array:
+    """Whether any setting with any resistor passes (or is undecided), site or not. (N,)
+
+    Only nets without a passing candidate are looked at again, over a dense ladder of values.
+    """
+    found = (scores.passes | scores.undecided).any(axis=1)
+    found |= np.array([f.timing == "open-drain" for f in facts], dtype=bool)
+    again = [i for i in range(len(facts)) if not found[i]]
+    for block in blocks_of([facts[i] for i in again], board, drawn_only=True):
+        ladder = list_continuous(block.nets, board.file.resistors.highest_ohm)
+        dense = summarise(ladder, evaluate(block.nets, ladder, bench))
+        for i, able in zip(block.index, (dense.passes | dense.undecided).any(axis=1), strict=True):
+            found[again[i]] = able
+    return found
+
+
+def states(block: Block, chosen: Array) -> tuple[Nets, Candidates]:
+    """One chosen candidate per net of a block, (N, 1)."""
+    return block.nets, block.candidates.state(chosen[block.index])
+
+
+def with_strobe(bench: Bench, flights: dict[str, Any]) -> Bench:
+    """A bench that knows the flights of strobes."""
+    return replace(bench, strobe=flights)

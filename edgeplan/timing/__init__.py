@@ -1,0 +1,20 @@
+"""Timing checks, one file per timing class; each gives the slowest edge its nets allow."""
+
+from collections.abc import Callable, Sequence
+from importlib import import_module
+from typing import Any
+
+CLASSES = {
+    "common-clock": "edgeplan.timing.common_clock",
+    "source-synchronous": "edgeplan.timing.source_synchronous",
+    "clock": "edgeplan.timing.clock",
+    "strobe": "edgeplan.timing.strobe",
+    "asynchronous": "edgeplan.timing.asynchronous",
+    "open-drain": "edgeplan.timing.open_drain",
+}
+
+
+def checks_of(timing: str) -> Callable[[Any], Sequence[Any]]:
+    """Function ``checks(seen)`` of one timing class, imported on first use."""
+    found: Callable[[Any], Sequence[Any]] = import_module(CLASSES[timing]).checks
+    return found

@@ -1,0 +1,79 @@
+"""Values an interface states for one driver, and which of them are missing."""
+
+from collections.abc import Callable, Sequence
+from math import nan
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from edgeplan.checks import Worst
+from edgeplan.nets import NetFacts
+from edgeplan.results import Missing
+
+Array = NDArray[Any]
+
+
+def number(value: float | None) -> float:
+    """The number, NaN where none is stated."""
+    return nan if value is None else float(value)
+
+
+def per_net(facts: Sequence[NetFacts], value: Callable[[NetFacts], float | None]) -> Array:
+    """One value per net; NaN where it is not stated. (N,)"""
+    return np.array([number(value(f)) for f in facts], dtype=float)
+
+
+def period_s(facts: NetFacts) -> float | None:
+    """Sampling period of the interface. [s]"""
+    return None if facts.interface.rate_hz is None else 1 / facts.interface.rate_hz
+
+
+STATED: dict[str, Callable[[NetFacts], Any]] = {
+    "rate": lambda f: f.interface.rate_hz,
+    "direction": lambda f: f.direction,
+    "setup": lambda f: f.direction and f.direction.setup_s,
+    "hold": lambda f: f.direction and f.direction.hold_s,
+    "maximum clock-to-output": lambda f: output(f) and output(f).max_s,
+    "minimum clock-to-output": lambda f: output(f) and output(f).min_s,
+    "test load": lambda f: f.direction and f.direction.test_load,
+    "valid before": lambda f: f.direction and f.direction.valid_before_s,
+    "valid after": lambda f: f.direction and f.direction.valid_after_s,
+}
+
+
+def output(facts: NetFacts) -> Any:
+    """Clock-to-output of the net's driver, None where not stated."""
+    return facts.direction.clock_to_output if facts.direction else None
+
+
+def earliest_output_s(facts: NetFacts) -> float | None:
+    """Smallest clock-to-output delay. [s]"""
+    return output(facts).min_s if output(facts) else None
+
+
+def latest_output_s(facts: NetFacts) -> float | None:
+    """Largest clock-to-output delay. [s]"""
+    return output(facts).max_s if output(facts) else None
+
+
+def allowance_s(facts: NetFacts) -> float:
+    """Skew, jitter and crosstalk of the interface together. [s]"""
+    return facts.interface.skew_s + facts.interface.jitter_s + facts.interface.crosstalk_s
+
+
+def require(worst: Worst, facts: Sequence[NetFacts], names: Sequence[str]) -> None:
+    """Leave the check undecided on every net that lacks one of the named values."""
+    for i, f in enumerate(facts):
+        for name in names:
+            require_one(worst, i, f, name)
+
+
+def require_one(worst: Worst, net: int, facts: NetFacts, name: str) -> None:
+    """Leave the check undecided on one net if it lacks the named value."""
+    if STATED[name](facts) is not None:
+        return
+    owner = f"interface {facts.interface.name}"
+    if name != "rate":
+        owner += f", driver {facts.driver.name}"
+    worst.cannot(net, f"{owner} states no {name}", Missing(value=name, of=owner))

@@ -1,0 +1,32 @@
+"""Values that are accepted but not used yet: named in every report, never dropped in silence."""
+
+from collections.abc import Callable
+
+from edgeplan.board import Board
+
+_ACCEPTED: dict[str, Callable[[Board], bool]] = {
+    "waivers": lambda b: bool(b.file.waiver),
+    "clock sources (nets are judged one by one, not summed)": lambda b: bool(b.file.clock_source),
+    "model files (ibis)": lambda b: any(d.ibis for d in b.file.driver),
+    "model names of settings": lambda b: any(s.model for d in b.file.driver for s in d.settings),
+    "the side a cable leaves from": lambda b: any(c.side for c in b.file.cable or ()),
+    "coordinates of routes (a route counts by its length)": lambda b: any(
+        r.start_m is not None for r in b.routes
+    ),
+}
+
+
+def unused_values(board: Board) -> list[str]:
+    """Names of inputs of this board that do not act yet.
+
+    Parameters
+    ----------
+    board : Board
+        As read.
+
+    Returns
+    -------
+    list of str
+        One entry per kind of input.
+    """
+    return [f"accepted but not used yet: {name}" for name, has in _ACCEPTED.items() if has(board)]

@@ -1,0 +1,81 @@
+"""Sentences about nets: what binds, what to change, what a missing value would settle."""
+
+from math import isnan
+
+from edgeplan.board import Net
+from edgeplan.candidates import drawn_ohm
+from edgeplan.nets import NetFacts
+from edgeplan.results import Check, Verdict
+from edgeplan.texts import text_frequency_hz, text_resistance_ohm
+
+ORDINALS = {1: "1st", 2: "2nd", 3: "3rd"}
+
+
+def resistor_place(net: Net) -> str:
+    """Where a series resistor sits or would sit."""
+    if net.resistor:
+        return f"at {net.resistor}"
+    pin = net.driver_pin[0] if net.driver_pin else "the driver"
+    return f"near {pin}"
+
+
+def change_words(facts: NetFacts, setting: int, value_ohm: float) -> tuple[str, str]:
+    """Kind of change and the proposal in words; ("none", "no change") where nothing changes.
+
+    Parameters
+    ----------
+    facts : NetFacts
+        The net as drawn.
+    setting : int
+        Index of the proposed setting.
+    value_ohm : float
+        Proposed series resistor, or pull-up of an open-drain net. [ohm]
+    """
+    kinds, words = [], []
+    if setting != facts.setting:
+        kinds.append("setting")
+        bank = f" (bank {facts.net.bank[0]})" if facts.net.bank and facts.net.bank[0] else ""
+        words.append(f"setting {facts.settings[setting].setting}{bank}")
+    drawn = drawn_ohm(facts)
+    if value_ohm != drawn and not isnan(value_ohm):
+        kind, word = _value_words(facts, drawn, value_ohm)
+        kinds.append(kind)
+        words.append(word)
+    if not words:
+        return "none", "no change"
+    return " and ".join(kinds), ", ".join(words)
+
+
+def _value_words(facts: NetFacts, drawn: float, value_ohm: float) -> tuple[str, str]:
+    """Kind and words of a changed resistor."""
+    net, value = facts.net, text_resistance_ohm(value_ohm)
+    if facts.timing == "open-drain":
+        return "value", f"{value} at {net.pull_up} (pull-up, was {text_resistance_ohm(drawn)})"
+    place = resistor_place(net)
+    if net.site in ("possible", "none"):
+        return "new site", f"add {value} {place}"
+    if net.site == "link":
+        return "value", f"fit {value} {place} (was a link)"
+    if value_ohm == 0:
+        return "value", f"link {place} (was {text_resistance_ohm(drawn)})"
+    return "value", f"fit {value} {place} (was {text_resistance_ohm(drawn)})"
+
+
+def check_words(check: Check) -> str:
+    """A check as a cause: its name, with frequency and harmonic number for emission."""
+    if check.check != "emission" or check.frequency_hz is None:
+        return check.check
+    number = check.order
+    harmonic = f" ({ORDINALS.get(number, f'{number}th')})" if number else ""
+    reach = ", out of reach" if check.out_of_reach else ""
+    return f"emission {text_frequency_hz(check.frequency_hz)}{harmonic}{reach}"
+
+
+def binds_words(verdict: Verdict, failing: list[Check], tightest: Check | None) -> str:
+    """What binds: every failing kind once, worst first; of an inside net the tightest check."""
+    if failing:
+        ordered = sorted(failing, key=lambda c: c.margin_share if c.margin_share is not None else 0)
+        return "; ".join(dict.fromkeys(check_words(c) for c in ordered[:3]))
+    if verdict == "too fast":
+        return "edge below its fastest acceptable one"
+    return check_words(tightest) if tightest else ""
