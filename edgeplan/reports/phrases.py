@@ -194,7 +194,7 @@ def _figures(number: float) -> str:
 
 
 def _short(number: float, figures: int) -> str:
-    """Some figures at most, without zeros at the end: 33, 66.67, 4.7."""
+    """Write some figures at most, without zeros at the end: 33, 66.67, 4.7."""
     return f"{float(f'{number:.{figures}g}'):.10g}"
 
 

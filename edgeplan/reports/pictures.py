@@ -11,6 +11,7 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
 SUFFIXES = (".svg", ".png")
+_DEPTH_DB = 40.0  # how far below the budget the level axis goes at most
 
 # One style of our own. Corners differ in lightness and in dashes, mechanisms in their markers,
 # so the picture reads the same in print and without colour vision.
@@ -154,8 +155,10 @@ def _levels(pictures: Pictures, margin_db: float) -> tuple[float, float]:
     limits = [level for spectrum in pictures.spectra for level in spectrum.limit_dbuv_per_m]
     expected = [level for spectrum in pictures.spectra for level in spectrum.expected_dbuv_per_m]
     highest = [level for spectrum in pictures.spectra for level in spectrum.up_to_dbuv_per_m]
-    lowest = min((*(level - margin_db for level in limits), *expected), default=0.0)
-    return lowest - 12, max((*limits, *highest), default=60.0) + 5
+    budget = min(limits, default=40.0) - margin_db
+    # An even harmonic of a square wave is next to nothing; it must not stretch the axis.
+    lowest = max(min(expected, default=budget), budget - _DEPTH_DB)
+    return min(lowest, budget) - 8, max((*limits, *highest), default=60.0) + 5
 
 
 def _decades(axes: "Axes", low_mhz: float, high_mhz: float) -> None:
