@@ -199,6 +199,23 @@ def _clocks(
 ) -> None:
     """Periodic steady state: crossings, transition and level of the first half of the period."""
     index, drive = _chosen(nets, source, rows)
+    period = np.array([1 / (nets.facts[i].net.clock_hz or np.nan) for i in index])
+    ramp = np.where(drive.exists, drive.candidate_ramp_s(), np.inf).min(axis=1)
+    size = np.ceil(np.log2(period / ramp))
+    for few in (np.flatnonzero(size == s) for s in np.unique(size)):
+        _steady_state(nets, trees, index[few], drive.take(few), levels, readings, effects)
+
+
+def _steady_state(
+    nets: Nets,
+    trees: Trees,
+    index: Array,
+    drive: Drive,
+    levels: waveforms.Levels,
+    readings: waveforms.Readings,
+    effects: BitEffects,
+) -> None:
+    """Periodic steady state of clocks whose ramps are alike in relation to their period."""
     facts = [nets.facts[i] for i in index]
     period = np.array([1 / (f.net.clock_hz or np.nan) for f in facts])
     duty = np.array([f.interface.duty for f in facts])

@@ -413,7 +413,7 @@ def _candidate(draft: NetDraft, k: int, rejected: list[int]) -> Candidate:
         settings=settings,
         resistors=[
             CandidateResistor(
-                site=site or words.resistor_place(facts.net),
+                site=site or f"new site {words.resistor_place(facts.net)}",
                 value_ohm=value,
                 array=facts.net.array or "",
             )
@@ -441,9 +441,11 @@ def _setting(facts: NetFacts, state: str, setting: str) -> CandidateSetting:
 
 
 def _why(draft: NetDraft, k: int) -> str:
-    """Why a candidate was refused; empty where it passes or was not looked at in full."""
-    if draft.every is None or draft.passes[draft.row, k]:
+    """Why a candidate was not taken; empty where it was, or was not looked at in full."""
+    if draft.every is None or k == draft.after.candidate:
         return ""
+    if draft.passes[draft.row, k]:
+        return _why_not(draft, k)
     reasons = []
     row = draft.every_row
     for table in draft.every.tables:
@@ -454,6 +456,20 @@ def _why(draft: NetDraft, k: int) -> str:
         elif table.margin[row, k] < 0:
             reasons.append(_short(table, row, k))
     return "; ".join(reasons) or "its edge lies outside its own window"
+
+
+def _why_not(draft: NetDraft, k: int) -> str:
+    """Why a passing candidate was not taken: the order of preference, in its order."""
+    row, taken = draft.row, draft.after.candidate
+    if not draft.passes[row, taken]:
+        return "not with its bank or array"
+    cost, own = draft.candidates.cost[row, taken].tolist(), draft.candidates.cost[row, k].tolist()
+    if own != cost:
+        dearer = own > cost
+        return "dearer change" if dearer else "not with its bank or array"
+    if draft.share[row, k] <= draft.share[row, taken]:
+        return "smaller share"
+    return "share about as good, a less common value"
 
 
 def _short(table: CheckTable, row: int, k: int) -> str:

@@ -2,7 +2,7 @@
 
 from collections import defaultdict
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from math import isnan, nan
 from typing import Any
 
@@ -70,7 +70,8 @@ class Nets:
     """Struct of arrays over N nets and R receivers; ``facts`` keeps the records.
 
     ``trees`` and the level arrays exist per corner.  ``receiver_net`` maps receivers
-    to nets; ``first_receiver`` are the offsets of each net's receivers.
+    to nets; ``first_receiver`` are the offsets of each net's receivers. ``kept`` holds what
+    was worked out once for exactly these nets and does not depend on any candidate.
     """
 
     facts: tuple[NetFacts, ...]
@@ -85,6 +86,7 @@ class Nets:
     longest_transition_s: Array
     overshoot_limit: Mapping[str, Array]
     bit_s: Array
+    kept: dict[Any, Any] = field(default_factory=dict, repr=False, compare=False)
 
     def __len__(self) -> int:
         """Count of nets."""

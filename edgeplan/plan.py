@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from edgeplan import record, scoring
 from edgeplan.board import Board
-from edgeplan.candidates import drawn_ohm
+from edgeplan.candidates import AS_DRAWN, drawn_ohm
 from edgeplan.choice import per_net
 from edgeplan.evaluate import Bench, Evaluation, evaluate, strobe_flights
 from edgeplan.nets import NetFacts, resolve
@@ -120,7 +120,7 @@ def _run(
         scores = _gathered(blocks, facts, drawn_bench, jobs, progress)
         after, after_bench = now, drawn_bench
     else:
-        scores, after, after_bench = _choose(blocks, facts, drawn_bench, jobs, progress)
+        scores, after, after_bench = _choose(blocks, facts, drawn_bench, now, jobs, progress)
     able = scoring.can_pass(facts, board, after_bench, scores)
     draft = record.Draft(
         board=board,
@@ -177,6 +177,7 @@ def _choose(
     blocks: list[Block],
     facts: list[NetFacts],
     bench: Bench,
+    drawn: State,
     jobs: int,
     progress: Progress | None,
 ) -> tuple[Scores, State, Bench]:
@@ -184,7 +185,7 @@ def _choose(
     scores = _gathered(blocks, facts, bench, jobs, progress)
     allowed = scores.candidates.exists.copy()
     common = Counter(v for v in (drawn_ohm(f) for f in facts) if v > 0)
-    state: State | None = None
+    state: State | None = drawn
     for _ in range(ROUNDS):
         chosen = _chosen(facts, scores, allowed, common)
         flights = _flights(blocks, facts, chosen, bench)
@@ -215,20 +216,19 @@ def _chosen(
 
     An undecided net keeps what is drawn, unless its bank or array moves it.
     """
-    usable = scores.passes | ~scores.undecided
-    open_net = scores.undecided[:, 0]
-    usable = np.where(open_net[:, None], True, usable)
-    cost = per_net.scores(scores.candidates, scores.passes, scores.share, allowed & usable, common)
-    keep = np.where(np.arange(cost.shape[1])[None, :] == 0, -1.0, 0.0) * per_net.FAIL
-    cost = np.where(open_net[:, None] & ~scores.passes, cost + keep, cost)
-    first = per_net.choose(facts, scores.candidates, cost)
-    used = scores.candidates.series_ohm[np.arange(len(facts)), first]
-    counted = common + Counter(float(v) for v in used if v > 0)
-    cost = per_net.scores(
-        scores.candidates, scores.passes, scores.share, allowed & usable, counted
-    )
-    cost = np.where(open_net[:, None] & ~scores.passes, cost + keep, cost)
-    return per_net.choose(facts, scores.candidates, cost)
+    open_net = scores.undecided[:, :1]
+    usable = allowed & (scores.passes | ~scores.undecided | open_net)
+    drawn = np.arange(scores.passes.shape[1])[None, :] == AS_DRAWN
+    stay = np.where(open_net & ~scores.passes & drawn, -per_net.FAIL, 0.0)
+
+    def best(counted: Counter[float]) -> Array:
+        cost = per_net.scores(
+            scores.candidates, scores.passes, scores.works, scores.share, usable, counted
+        )
+        return per_net.choose(facts, scores.candidates, cost + stay)
+
+    used = scores.candidates.series_ohm[np.arange(len(facts)), best(common)]
+    return best(common + Counter(float(v) for v in used if v > 0))
 
 
 def _state(

@@ -5,7 +5,7 @@ a candidate costs one division and one multiplication per line.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -64,16 +64,13 @@ class Radiation:
     cables: tuple[Cable, ...]
     cable_state: str
     notes: tuple[str, ...] = ()
-    _kept: dict[tuple[str, ...], Passive] = field(default_factory=dict, repr=False, compare=False)
 
     def passive(self, nets: Nets) -> Passive:
-        """Passive quantities of a block; the last few blocks are kept."""
-        key = tuple(f.net.net for f in nets.facts)
-        if key not in self._kept:
-            while len(self._kept) >= 4:
-                del self._kept[next(iter(self._kept))]
-            self._kept[key] = _passive(self, nets)
-        return self._kept[key]
+        """Passive quantities of a block, worked out once."""
+        if "passive" not in nets.kept:
+            nets.kept["passive"] = _passive(self, nets)
+        found: Passive = nets.kept["passive"]
+        return found
 
     def judge(
         self, nets: Nets, candidates: Candidates, tolerance: float, *, state: str = "run"

@@ -189,8 +189,16 @@ def reference_crossing_s(nets: Nets, corner: str, direction: str) -> Array:
     """When each driver crosses the level of its own test load at the stated setting. [s]
 
     The same engine drives a capacitor (and a resistor to a voltage, where stated)
-    instead of the line.  NaN where no test load is stated.
+    instead of the line.  NaN where no test load is stated.  Worked out once per block.
     """
+    key = ("reference", corner, direction)
+    if key not in nets.kept:
+        nets.kept[key] = _reference_crossing_s(nets, corner, direction)
+    return np.asarray(nets.kept[key])
+
+
+def _reference_crossing_s(nets: Nets, corner: str, direction: str) -> Array:
+    """Crossing of each driver's own test load. (N,) [s]"""
     count = len(nets)
     load_f, level, leak = np.full(count, np.nan), np.full(count, np.nan), np.zeros(count)
     setting = np.array([f.setting for f in nets.facts], dtype=int)

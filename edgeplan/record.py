@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from math import isnan
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
 from numpy.typing import NDArray
 
 from edgeplan import __version__, levels, net_record, pictures_of, unused
@@ -277,12 +278,10 @@ def _remedies(draft: Draft) -> dict[int, list[Remedy]]:
             ):
                 if remedy is not None:
                     found[int(index[k])].append(remedy)
-        state = block.candidates.take(rows).state(draft.after.chosen[index])
-        passive = bench.radiation.passive(nets)
-        for k, remedy in enumerate(remedies.cable_filter(nets, state, passive, bench)):
-            evaluation, own = draft.after.evaluation[int(index[k])]
-            emission = next(t for t in evaluation.tables if t.check == "emission")
-            if emission.fails[own, 0]:
+        over = [k for k, i in enumerate(map(int, index)) if _fails_emission(draft, i)]
+        if over:
+            few, own = nets.take(over), block.candidates.take(np.array(rows)[over])
+            for k, remedy in zip(over, remedies.cable_filter(few, own, bench), strict=True):
                 found[int(index[k])].append(remedy)
     return found
 
@@ -292,6 +291,15 @@ def _needs_remedy(draft: Draft, net: int) -> bool:
     evaluation, row = draft.after.evaluation[net]
     failing = evaluation.failing("faster") | evaluation.failing("slower")
     return bool(failing[row, 0])
+
+
+def _fails_emission(draft: Draft, net: int) -> bool:
+    """Whether a net's chosen candidate or the net as drawn is over the emission budget."""
+    for state in (draft.now, draft.after):
+        evaluation, row = state.evaluation[net]
+        if any(t.fails[row, 0] for t in evaluation.tables if t.check == "emission"):
+            return True
+    return False
 
 
 def _blocked(blocked: Blocked) -> NetResult:

@@ -34,6 +34,7 @@ class Scores:
 
     candidates: Candidates
     passes: Array
+    works: Array
     undecided: Array
     share: Array
 
@@ -70,6 +71,7 @@ def summarise(candidates: Candidates, evaluation: Evaluation) -> Scores:
     return Scores(
         candidates=candidates,
         passes=evaluation.passes,
+        works=~evaluation.failing("faster"),
         undecided=evaluation.open() & ~failing,
         share=evaluation.smallest_share,
     )
@@ -110,15 +112,16 @@ def gather(blocks: Sequence[Block], scores: Sequence[Scores], count: int) -> Sco
         cost=np.zeros((count, width, 4), dtype=int),
         ramp_factor=np.ones((count, width)),
     )
-    passes, undecided = np.zeros((2, count, width), dtype=bool)
+    passes, works, undecided = np.zeros((3, count, width), dtype=bool)
     share = np.full((count, width), -np.inf)
     for block, found in zip(blocks, scores, strict=True):
         own = found.candidates.count
         at = np.ix_(block.index, np.arange(own))
         for name in ("setting", "series_ohm", "pull_up_ohm", "exists", "cost", "ramp_factor"):
             getattr(whole, name)[at] = getattr(found.candidates, name)
-        passes[at], undecided[at], share[at] = found.passes, found.undecided, found.share
-    return Scores(candidates=whole, passes=passes, undecided=undecided, share=share)
+        passes[at], works[at], undecided[at] = found.passes, found.works, found.undecided
+        share[at] = found.share
+    return Scores(candidates=whole, passes=passes, works=works, undecided=undecided, share=share)
 
 
 def can_pass(facts: Sequence[NetFacts], board: Board, bench: Bench, scores: Scores) -> Array:

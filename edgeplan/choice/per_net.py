@@ -18,7 +18,10 @@ from edgeplan.nets import NetFacts
 
 Array = NDArray[Any]
 
-SHARE_STEP = 0.1  # shares this close count as equal, so that the common value can decide
+# Shares in one of these steps count as equal, so that the common value can decide: next to
+# nothing, little, and then fifths. Failing candidates are told apart in tenths.
+SHARE_STEPS = np.array([0.0, 0.03, 0.2, 0.4, 0.6, 0.8])
+EXCESS_STEP = 0.1
 # Weights keep the order of preference: a failing net outweighs every cost, a dearer kind of
 # change outweighs any number of cheaper ones on one net, and a share outweighs the value's rank.
 FAIL = 1e12
@@ -65,7 +68,12 @@ def tied_groups(facts: Sequence[NetFacts]) -> list[Tied]:
 
 
 def scores(
-    candidates: Candidates, passes: Array, share: Array, allowed: Array, common: Counter[float]
+    candidates: Candidates,
+    passes: Array,
+    works: Array,
+    share: Array,
+    allowed: Array,
+    common: Counter[float],
 ) -> Array:
     """What each candidate costs a net; lower is better, infinite where it may not be chosen.
 
@@ -73,8 +81,9 @@ def scores(
     ----------
     candidates : Candidates
         Tables (N, C).
-    passes, allowed : numpy.ndarray
-        Whether a candidate passes every check, and whether it may be chosen. (N, C)
+    passes, works, allowed : numpy.ndarray
+        Whether a candidate passes every check, whether it holds every check that wants a
+        faster edge, and whether it may be chosen. (N, C)
     share : numpy.ndarray
         Smallest share of its checks; -inf counts as the worst. (N, C)
     common : Counter
@@ -83,18 +92,21 @@ def scores(
     Returns
     -------
     numpy.ndarray
-        (N, C). A passing candidate is ranked by cost, then share; a failing one by share,
-        then cost: the least excess.
+        (N, C). A passing candidate is ranked by cost, then share. Of failing ones those that
+        still meet their timing come first, then share, then cost: the least excess of a
+        board that works, since a level can still be mended elsewhere and a missed setup not.
     """
     change = candidates.cost @ COST
-    steps = np.round(np.clip(np.nan_to_num(share, nan=-9.0), -9.0, 1.0) / SHARE_STEP)
+    share = np.clip(np.nan_to_num(share, nan=-9.0), -9.0, 1.0)
+    steps = np.searchsorted(SHARE_STEPS, share, side="right")
+    excess = np.round(share / EXCESS_STEP)
     rank = np.array(
         [common.get(v, 0) for v in np.nan_to_num(candidates.series_ohm).ravel().tolist()]
     ).reshape(candidates.series_ohm.shape)
     tie = 0.5 * candidates.series_ohm / (1 + np.nanmax(candidates.series_ohm, initial=1.0))
     tie = np.nan_to_num(tie) - np.minimum(rank, 400)
     passing = change - SHARE * steps + tie
-    failing = FAIL - 1e7 * 1e3 * steps + 1e-3 * change + 1e-3 * tie
+    failing = FAIL * np.where(works, 1, 2) - 1e10 * excess + 1e-3 * change + 1e-3 * tie
     return np.where(candidates.exists & allowed, np.where(passes, passing, failing), np.inf)
 
 

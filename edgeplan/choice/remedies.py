@@ -11,6 +11,7 @@ from edgeplan.nets import Nets
 from edgeplan.radiated import Passive, source_levels
 from edgeplan.results import Remedy
 from edgeplan.texts import text_resistance_ohm
+from edgeplan.words import change_words
 
 Array = NDArray[Any]
 
@@ -60,18 +61,17 @@ def _site(nets: Nets, ladder: Candidates, net: int, k: int) -> Remedy:
     )
 
 
-def cable_filter(nets: Nets, state: Candidates, passive: Passive, bench: Bench) -> list[Remedy]:
-    """More attenuation on every cable that brings one state's emission to its budget.
+def cable_filter(nets: Nets, candidates: Candidates, bench: Bench) -> list[Remedy]:
+    """More attenuation on every cable, so that some candidate passes every check.
 
-    The trace's own part stays; where it alone is over budget no filter will do and the
-    amount is None.
+    The trace's own part stays. Of all candidates that fail emission only, the one that needs
+    least attenuation is named; where none fails emission only, or the trace alone is
+    over budget, no filter will do and the amount is None.
 
     Parameters
     ----------
-    nets, state : Nets, Candidates
-        N nets and one candidate each.
-    passive : Passive
-        Their passive quantities.
+    nets, candidates : Nets, Candidates
+        N nets without a passing candidate, C candidates.
     bench : Bench
         Tolerance and target.
 
@@ -80,37 +80,68 @@ def cable_filter(nets: Nets, state: Candidates, passive: Passive, bench: Bench) 
     list of Remedy
         One per net, amount in dB at the line that needs most.
     """
-    levels = source_levels(nets, state, passive, bench.tolerance)[:, 0]
-    budget = 10 ** (passive.budget_dbuv_per_m / 20) * 1e-6
-    judged = passive.cable_up_to if bench.radiation.target.statistic == "worst-case" else None
-    cable = levels * (passive.cable_expected if judged is None else judged)
-    trace = levels * passive.trace
-    over = np.where(passive.lines.exists, passive.over_budget * levels, 0.0)
+    passive = bench.radiation.passive(nets)
+    needed, line, excess_db = _needed_db(nets, candidates, passive, bench)
+    found = evaluate(nets, candidates, bench)
+    only_emission = found.exists.copy()
+    for table in found.tables:
+        if table.check != "emission":
+            only_emission &= ~(table.fails | table.open)
+    needed = np.where(only_emission, needed, np.inf)
+    best = np.argmin(needed, axis=1)
+    return [
+        _filter(nets, candidates, passive, i, int(k), needed[i, k], line[i, k], excess_db[i, k])
+        for i, k in enumerate(best)
+    ]
+
+
+def _needed_db(
+    nets: Nets, candidates: Candidates, passive: Passive, bench: Bench
+) -> tuple[Array, Array, Array]:
+    """Attenuation on the cables each candidate needs, at which line, and its excess now. (N, C)"""
+    levels = source_levels(nets, candidates, passive, bench.tolerance)
+    worst_case = bench.radiation.target.statistic == "worst-case"
+    cable = levels * (passive.cable_up_to if worst_case else passive.cable_expected)[:, None, :]
+    trace = levels * passive.trace[:, None, :]
+    budget = (10 ** (passive.budget_dbuv_per_m / 20) * 1e-6)[:, None, :]
+    over = np.where(passive.lines.exists[:, None, :], passive.over_budget[:, None, :] * levels, 0.0)
     with np.errstate(divide="ignore", invalid="ignore"):
         room = np.sqrt(np.maximum(budget**2 - trace**2, 0.0))
         needed = np.where(over > 1, 20 * np.log10(cable / room), 0.0)
-    return [_filter(passive, over, needed, i) for i in range(len(nets))]
+        excess_db = 20 * np.log10(over.max(axis=2))
+    line = np.argmax(needed, axis=2)
+    return needed.max(axis=2), line, excess_db
 
 
-def _filter(passive: Passive, over: Array, needed: Array, net: int) -> Remedy:
-    """The line that needs most attenuation on the cables."""
-    line = int(np.argmax(needed[net]))
-    amount = float(needed[net, line])
-    megahertz = passive.lines.frequency_hz[net, line] / 1e6
-    excess = float(20 * np.log10(np.max(over[net]))) if np.max(over[net]) > 0 else 0.0
-    if not np.isfinite(amount):
+def _filter(
+    nets: Nets,
+    candidates: Candidates,
+    passive: Passive,
+    net: int,
+    k: int,
+    needed: float,
+    line: int,
+    excess_db: float,
+) -> Remedy:
+    """The remedy in words, rounded up to a tenth of a decibel."""
+    if not np.isfinite(needed):
         return Remedy(
             remedy="cable filter",
             amount=None,
             unit="dB",
-            closes_db=None,
-            text=f"no cable filter is enough: the trace alone is over budget at {megahertz:.0f} MHz",
+            text="no cable filter is enough: the trace alone or another check is over its limit",
         )
-    rounded = float(np.ceil(amount * 10) / 10)
+    facts = nets.facts[net]
+    change, words_of_change = change_words(
+        facts, int(candidates.setting[net, k]), float(candidates.series_ohm[net, k])
+    )
+    beside = f" together with: {words_of_change}" if change != "none" else ""
+    amount = float(np.ceil(needed * 10 + 1e-6) / 10)
+    megahertz = passive.lines.frequency_hz[net, line] / 1e6
     return Remedy(
         remedy="cable filter",
-        amount=rounded,
+        amount=amount,
         unit="dB",
-        closes_db=round(excess, 2),
-        text=f"{rounded:.1f} dB more on every cable (set by {megahertz:.0f} MHz)",
+        closes_db=round(float(excess_db), 2),
+        text=f"{amount:.1f} dB more on every cable (set by {megahertz:.0f} MHz){beside}",
     )

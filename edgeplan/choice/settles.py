@@ -7,7 +7,7 @@ from dataclasses import replace
 from edgeplan.board import Board
 from edgeplan.candidates import list_drawn
 from edgeplan.drives import RAISED_COSINE_SHARE, Quantity, SettingCorners
-from edgeplan.evaluate import Bench
+from edgeplan.evaluate import Bench, strobe_flights
 from edgeplan.nets import NetFacts, build
 from edgeplan.texts import text_time_s
 from edgeplan.windows import StateWindow, solve
@@ -38,13 +38,26 @@ def minimum_edges(facts: Sequence[NetFacts], board: Board, bench: Bench) -> list
     for i, f in enumerate(facts):
         if f.settings[f.setting].missing == ("minimum edge",):
             groups[f.timing].append(i)
+    assumed = {i: _assumed(facts[i]) for members in groups.values() for i in members}
+    bench = _with_assumed_strobes(list(assumed.values()), board, bench)
     for members in groups.values():
-        nets = build([_assumed(facts[i]) for i in members], board)
+        nets = build([assumed[i] for i in members], board)
         windows = solve(nets, list_drawn(nets), bench)
         for i, window in zip(members, windows, strict=True):
             longest = facts[i].settings[facts[i].setting].ramp_s["rising"].slow
             found[i] = _sentence(window, longest * RAISED_COSINE_SHARE["10-90"])
     return found
+
+
+def _with_assumed_strobes(assumed: Sequence[NetFacts], board: Board, bench: Bench) -> Bench:
+    """Flights of strobes that wait for the same value, with the assumed one."""
+    names = {f.interface.clock_net for f in assumed if f.timing == "source-synchronous"}
+    strobes = [f for f in assumed if f.net.net in names]
+    if not strobes:
+        return bench
+    nets = build(strobes, board)
+    flights = strobe_flights(nets, list_drawn(nets), bench.tolerance)
+    return bench.with_strobe({**bench.strobe, **flights})
 
 
 def _assumed(facts: NetFacts) -> NetFacts:

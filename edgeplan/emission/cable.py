@@ -114,15 +114,19 @@ def _board(
 def _strongest_antenna(
     paths: RadiationInputs, cables: Sequence[Cable], frequency_hz: Array
 ) -> Array:
-    """Largest antenna factor after each cable's own attenuation."""
+    """Largest antenna factor after each cable's own attenuation.
+
+    A cable that ends free counts by its own length, beside long ones too; where all end
+    free, two together make the longest wire.
+    """
     lengths_m = sorted((cable.length_m for cable in cables), reverse=True)
-    wire_m = sum(lengths_m[:2])  # of several free cables two make the longest wire
     all_float = all(cable.floating for cable in cables)
     ratio = imbalance.impedance_ratio(paths.board_length_m, paths.board_width_m)
     strongest = np.zeros(())
     for cable in cables:
         factor = imbalance.antenna_factor(frequency_hz, cable.length_m)
-        if all_float:
+        if cable.floating:
+            wire_m = sum(lengths_m[:2]) if all_float else cable.length_m
             factor = imbalance.floating_antenna_factor(
                 frequency_hz, wire_m, paths.board_length_m, ratio
             )
