@@ -8,12 +8,12 @@ from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.constants import epsilon_0
 
 from edgeplan.physics.air_lines import ETA_0_OHM, SPEED_OF_LIGHT_M_PER_S
 
 Array = NDArray[Any]
 
+EPSILON_0_FARAD_PER_M = 1 / (ETA_0_OHM * SPEED_OF_LIGHT_M_PER_S)
 HALF_WAVE_FACTOR = 0.82  # 60 / 73.1: a half-wave dipole in resonance radiates 0.82 V per volt
 LONG_WIRE_FACTOR = 1.84  # 60 x 0.755 / 30 of resonant long wires, x 1.22 by full-wave runs
 WIRE_OHM = 60 * (np.log(2 * 1.0 / 1e-3) - 1)  # mean impedance of 1 m of 1 mm radius wire, 396
@@ -115,7 +115,9 @@ def board_capacitance_farad(length_m: ArrayLike, width_m: ArrayLike) -> Array:
     .. [1] H. Shim, T. H. Hubing, "Model for estimating radiated emissions from a printed circuit
        board with attached cables due to voltage-driven sources", IEEE Trans. EMC 47 (2005) 899.
     """
-    return np.asarray(8 * epsilon_0 * np.sqrt(np.asarray(length_m) * np.asarray(width_m) / np.pi))
+    return np.asarray(
+        8 * EPSILON_0_FARAD_PER_M * np.sqrt(np.asarray(length_m) * np.asarray(width_m) / np.pi)
+    )
 
 
 def impedance_ratio(length_m: ArrayLike, width_m: ArrayLike) -> Array:
