@@ -311,7 +311,7 @@ def _ringback(level: Array, step: Array, start: Array) -> Array:
 def _after(level: Array, time: Array) -> tuple[Array, Array]:
     """Level at a time, straight between samples, and largest distance from 1 from then on."""
     rows, samples = level.shape
-    known = np.isfinite(time)
+    known = ~np.isnan(time)
     place = np.minimum(np.where(known, time, 0), samples - 1.0)
     at = np.minimum(place.astype(np.intp), samples - 2)
     part = (place - at).astype(level.dtype)
