@@ -1,0 +1,277 @@
+"""Speed of the step responses against a scikit-rf script and against the bare arithmetic.
+
+Run ``OPENBLAS_NUM_THREADS=1 python tests/benchmarks/benchmark_waveforms.py [--mix] [--large]``.
+It prints and never asserts. All ratios come from one process.
+
+* engine: ``read`` at two corners, all readings;
+* script: what a competent user of scikit-rf writes: the line network of a net once, then per
+  candidate a source cascade, an inverse transform and the same readings;
+* kernel: the same matrix products and inverse transforms alone, on the same sizes and types.
+"""
+
+import argparse
+import resource
+import time
+from collections.abc import Callable
+
+import numpy as np
+import skrf
+from scipy import fft
+from skrf.media import DistributedCircuit
+
+from edgeplan.physics.grids import choose_grids, needs
+from edgeplan.physics.lines import LineConstants, dielectric_factor
+from edgeplan.physics.network import Trees
+from edgeplan.physics.sources import Drive
+from edgeplan.physics.waveform_readings import Levels, levels_of
+from edgeplan.physics.waveforms import read
+
+CANDIDATES = 40
+E12 = np.array([0, 10, 15, 22, 27, 33, 47, 68.0])
+CORNERS = ((0.8, 0.85), (1.25, 1.2))  # driver resistance and ramp over typical
+
+
+def board(nets: int, *, mix: bool, seed: int = 1) -> Trees:
+    """Synthetic nets: point to point, or 60 % of them, 25 % daisy chains and 15 % stars."""
+    rng = np.random.default_rng(seed)
+    classes = np.array(
+        [(z, t, 6.0, 1.1e-3, 0.018) for z in (45, 50, 55, 60) for t in (6e-9, 6.8e-9)]
+    )
+    parents, receivers = [], []
+    for kind in rng.choice(3, nets, p=(0.6, 0.25, 0.15) if mix else (1.0, 0, 0)):
+        count = int(rng.integers(2, 5)) if kind else int(rng.integers(1, 4))
+        star = kind == 2
+        parents.append(np.full(count, -1) if star else np.arange(count) - 1)
+        receivers.append(np.arange(count) if kind else np.array([count - 1]))
+    segment = np.concatenate([[0], np.cumsum([len(p) for p in parents])])
+    line = classes[rng.integers(0, len(classes), segment[-1])].T
+    stub = classes[rng.integers(0, len(classes), nets)].T
+    total = rng.uniform(0.02, 0.16, nets) / np.diff(segment)
+    return Trees(
+        segment_offset=segment,
+        parent=np.concatenate(parents),
+        length_m=np.repeat(total, np.diff(segment)) * rng.uniform(0.6, 1.4, segment[-1]),
+        line=LineConstants(*line),
+        node_farad=rng.uniform(0.3e-12, 6e-12, segment[-1]),
+        node_siemens=np.zeros(segment[-1]),
+        receiver_offset=np.concatenate([[0], np.cumsum([len(r) for r in receivers])]),
+        receiver_segment=np.concatenate(receivers),
+        stub_length_m=rng.uniform(0.5e-3, 8e-3, nets),
+        stub_line=LineConstants(*stub),
+    )
+
+
+def drives(nets: int, seed: int = 2) -> list[Drive]:
+    """Five settings times eight resistors for every net, at two corners."""
+    rng = np.random.default_rng(seed)
+    strength = rng.uniform(0.8, 1.25, (nets, 1)) * np.array([14.0, 20.0, 28.0, 40.0, 55.0])
+    ramp = rng.uniform(0.6, 1.6, (nets, 1)) * 1e-9 * np.array([0.7, 0.9, 1.2, 1.6, 2.2])
+    setting, resistor = np.divmod(np.arange(CANDIDATES), len(E12))
+    return [
+        Drive(
+            resistance_ohm=resistance * strength[:, setting],
+            series_ohm=np.broadcast_to(E12[resistor], (nets, CANDIDATES)),
+            pad_farad=np.full((nets, CANDIDATES), 3e-12),
+            ramp_s=speed * ramp,
+            ramp_index=np.broadcast_to(setting, (nets, CANDIDATES)),
+            exists=np.ones((nets, CANDIDATES), dtype=bool),
+        )
+        for resistance, speed in CORNERS
+    ]
+
+
+def seconds(work: Callable[[], object], repeats: int) -> float:
+    """Shortest time of some repeats."""
+    times = []
+    for _ in range(repeats):
+        start = time.perf_counter()
+        work()
+        times.append(time.perf_counter() - start)
+    return min(times)
+
+
+def engine(trees: Trees, corners: list[Drive], levels: Levels, bit_s: np.ndarray) -> None:
+    """Everything that is read, at both corners."""
+    for drive in corners:
+        read(trees, drive, levels, bit_s)
+
+
+def kernel(trees: Trees, corners: list[Drive], bit_s: np.ndarray) -> Callable[[], None]:
+    """Matrix products and inverse transforms of the same sizes and types, nothing else."""
+    jobs = []
+    for drive in corners:
+        grids = choose_grids(drive, needs(trees, drive, bit_s))
+        receivers = np.diff(trees.receiver_offset)[grids.net]
+        for length in np.unique(grids.length):
+            own = grids.length == length
+            counts = np.diff(grids.offset)[own]
+            rows = int((counts * receivers[own]).sum())
+            jobs.append((int(length), counts.tolist(), rows))
+    rng = np.random.default_rng(0)
+
+    def run() -> None:
+        for length, counts, rows in jobs:
+            bins = length // 2 + 1
+            terms = rng.random((4, 2 * bins), dtype=np.float32)
+            weights = rng.random((max(counts), 4), dtype=np.float32)
+            for count in counts:
+                weights[:count] @ terms
+            spectrum = rng.random((1536, 2 * bins), dtype=np.float32).view(np.complex64)
+            for start in range(0, rows, 1536):
+                fft.irfft(spectrum[: min(1536, rows - start)], length, axis=1)
+
+    return run
+
+
+def script(trees: Trees, drive: Drive, levels: Levels, bit_s: np.ndarray, nets: range) -> int:
+    """Do the same with scikit-rf, one candidate after the other; return the count of them."""
+    points, done = 512, 0
+    for net in nets:
+        ramp = drive.ramp_s[net].min()
+        step = ramp / 10
+        frequency = skrf.Frequency.from_f(
+            np.arange(1, points // 2 + 1) / (points * step), unit="hz"
+        )
+        stub, line, load = _script_networks(trees, net, frequency)
+        for candidate in range(CANDIDATES):
+            media = stub.media
+            network = (
+                media.resistor(drive.resistance_ohm[net, candidate])
+                ** media.shunt_capacitor(drive.pad_farad[net, candidate])
+                ** stub.network
+                ** media.resistor(drive.series_ohm[net, candidate])
+                ** line
+            )
+            transfer = 1 / (network.a[:, 0, 0] + network.a[:, 0, 1] * load)
+            _script_readings(
+                transfer,
+                frequency.f,
+                drive.ramp_s[net, drive.ramp_index[net, candidate]],
+                step,
+                points,
+                bit_s[net],
+                levels,
+            )
+            done += 1
+    return done
+
+
+class _Stub:
+    """Stub of a net in scikit-rf and the medium its lumped parts are made of."""
+
+    def __init__(self, media: DistributedCircuit, length_m: float) -> None:
+        self.media = media
+        self.network = media.line(length_m, unit="m")
+
+
+def _script_media(line: list[float], frequency: skrf.Frequency) -> DistributedCircuit:
+    """One line as a distributed circuit."""
+    impedance, delay, resistance, skin, loss = line
+    s = 2j * np.pi * frequency.f
+    series = s * impedance * delay + np.sqrt(resistance**2 + s * skin**2 / np.pi)
+    shunt = s * delay / impedance * dielectric_factor(s, loss)
+    w = s.imag
+    return DistributedCircuit(
+        frequency, z0_port=50, L=series.imag / w, R=series.real, C=shunt.imag / w, G=shunt.real
+    )
+
+
+def _script_networks(
+    trees: Trees, net: int, frequency: skrf.Frequency
+) -> tuple[_Stub, skrf.Network, np.ndarray]:
+    """Stub, cascade of the segments up to the receiver, and load at its end; once a net."""
+    own = trees.take([net])
+    stub = _Stub(
+        _script_media([float(f[0]) for f in own.stub_line], frequency), float(own.stub_length_m[0])
+    )
+    s = 2j * np.pi * frequency.f
+    cascade = None
+    for segment in range(len(own.length_m)):
+        media = _script_media([float(f[segment]) for f in own.line], frequency)
+        part = media.line(float(own.length_m[segment]), unit="m")
+        if segment < len(own.length_m) - 1:
+            part = part ** media.shunt_capacitor(float(own.node_farad[segment]))
+        cascade = part if cascade is None else cascade**part
+    return stub, cascade, s * own.node_farad[-1]
+
+
+def _script_readings(
+    transfer: np.ndarray,
+    frequency_hz: np.ndarray,
+    ramp_s: float,
+    step_s: float,
+    points: int,
+    bit_s: float,
+    levels: Levels,
+) -> dict[str, float]:
+    """Square wave, inverse transform, and the readings of one waveform."""
+    x = 2j * np.pi * frequency_hz * ramp_s
+    edge = (1 + np.exp(-x)) / 2 * np.pi**2 / (x**2 + np.pi**2)
+    odd = np.arange(1, points // 2 + 1) % 2 == 1
+    spectrum = np.where(odd, transfer * edge * 2 / (2j * np.pi * frequency_hz * step_s), 0)
+    wave = 0.5 + np.fft.irfft(np.concatenate([[0], spectrum]), points)
+    wave = wave[: points // 2]
+    times = {}
+    thresholds = {"low": 0.1, "half": 0.5, "high": 0.9}
+    thresholds |= {"vil": levels.threshold_low[0], "vih": levels.threshold_high[0]}
+    thresholds |= {"nvil": 1 - levels.threshold_low[0], "nvih": 1 - levels.threshold_high[0]}
+    for name, threshold in thresholds.items():
+        for shift in (-0.01, 0, 0.01):
+            above = np.flatnonzero(wave >= threshold + shift)
+            below = np.flatnonzero(wave < threshold + shift)
+            first = max(int(above[0]) if len(above) else len(wave) - 1, 1)
+            last = min(int(below[-1]) if len(below) else 1, len(wave) - 2)
+            rise = wave[first] - wave[first - 1] or 1.0
+            times[name, shift] = first - (wave[first] - threshold) / rise
+            times[name, shift, "last"] = float(last)
+    start = int(times["vih", 0])
+    falling = np.flatnonzero(np.diff(wave[start:]) < -5e-4)
+    after = start + int(falling[0]) if len(falling) else len(wave) - 1
+    low, high = int(times["low", 0]), int(times["high", 0]) + 1
+    return {
+        "transition": (times["high", 0] - times["low", 0]) * step_s,
+        "overshoot": float(wave.max() - 1),
+        "ringback": float(wave[after:].min()),
+        "slope": float(np.diff(wave[low : high + 1]).min()),
+        "level": float(np.interp(times["half", 0] + bit_s / step_s, np.arange(len(wave)), wave)),
+    }
+
+
+def main() -> None:
+    """Print times and ratios."""
+    options = argparse.ArgumentParser(description=__doc__)
+    options.add_argument("--mix", action="store_true", help="daisy chains and stars as well")
+    options.add_argument("--large", action="store_true", help="10,000 nets as well")
+    options.add_argument("--nets", type=int, default=1000)
+    options.add_argument("--repeats", type=int, default=3)
+    options.add_argument("--sample", type=int, default=4, help="nets given to the script")
+    chosen = options.parse_args()
+    sizes = [chosen.nets, 10 * chosen.nets] if chosen.large else [chosen.nets]
+    taken = []
+    for size in sizes:
+        trees, corners = board(size, mix=chosen.mix), drives(size)
+        levels = levels_of(0.3, 0.7, int(trees.receiver_offset[-1]))
+        bit_s = np.random.default_rng(3).uniform(4e-9, 20e-9, size)
+        repeats = chosen.repeats if size == chosen.nets else 1
+        own = seconds(lambda t=trees, c=corners, v=levels, b=bit_s: engine(t, c, v, b), repeats)
+        bare = seconds(kernel(trees, corners, bit_s), repeats)
+        taken.append(own)
+        evaluations = 2 * size * CANDIDATES
+        print(f"{size} nets, {evaluations} evaluations, {len(levels.threshold_low)} receivers")
+        print(f"  engine {own:.2f} s, {evaluations / own:,.0f} evaluations/s")
+        print(f"  kernel {bare:.2f} s: engine takes {own / bare:.2f} times as long")
+        if size == chosen.nets:
+            simple = board(size, mix=False)
+            start = time.perf_counter()
+            count = script(simple, corners[0], levels, bit_s, range(chosen.sample))
+            each = (time.perf_counter() - start) / count
+            print(
+                f"  script {each * 1e3:.2f} ms an evaluation: {each * evaluations / own:,.0f} times"
+            )
+    if chosen.large:
+        print(f"growth for ten times the nets: {taken[1] / taken[0]:.1f}")
+    print(f"peak memory {resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024:.0f} MiB")
+
+
+if __name__ == "__main__":
+    main()
