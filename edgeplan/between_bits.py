@@ -9,13 +9,15 @@ from numpy.typing import NDArray
 
 from edgeplan.nets import Nets
 from edgeplan.physics import waveforms
-from edgeplan.physics.interference import peak_distortion
+from edgeplan.physics.crossings import cubic_time, last_reach
+from edgeplan.physics.interference import peak_distortion, worst_edge
 from edgeplan.physics.network import Trees
 from edgeplan.physics.sources import Drive
 
 Array = NDArray[Any]
 
 SETTLED = 1e-3  # of the swing: what is left after one bit counts from here on
+OVERLAP = 0.5  # of a bit: an edge as long as this may meet the next one before it is done
 SAMPLES_PER_BIT = 32
 STEPS_PER_SAMPLE = 5  # of the engine, so that a ramp of a sixteenth of a bit has ten steps
 BITS = 8  # length of the pulse that is folded
@@ -66,8 +68,11 @@ def bit_effects(
         worst_level=np.array(readings.level_after, dtype=float),
         transition_s=np.full(shape, np.nan),
     )
+    span = np.asarray(levels.transition_high) - np.asarray(levels.transition_low)
+    bit_s = nets.bit_s[nets.receiver_net][:, None]
     with np.errstate(invalid="ignore"):
         unsettled = readings.residual > SETTLED
+        unsettled |= readings.transition_s > OVERLAP * bit_s * span[:, None]
     unsettled &= np.isfinite(nets.bit_s)[nets.receiver_net][:, None]
     clock = np.array([f.timing == "clock" for f in nets.facts])[nets.receiver_net][:, None]
     if np.any(unsettled & ~clock):
@@ -142,35 +147,27 @@ def _fold(
 ) -> None:
     """Worst bits of the waveforms found, written into the tables."""
     receiver, candidate = _place(nets, index, found)
-    step = found.level[:, ::STEPS_PER_SAMPLE][:, : BITS * SAMPLES_PER_BIT]
-    one, zero, start_bit = _worst_bits(step)
+    per_bit = SAMPLES_PER_BIT * STEPS_PER_SAMPLE
+    step = found.level[:, : BITS * per_bit]
+    worst = worst_edge(step, per_bit)
+    step_s = found.time_s[:, 1]
     low = np.asarray(levels.threshold_low)[receiver]
     high = np.asarray(levels.threshold_high)[receiver]
-    bit = nets.bit_s[index][found.net]
-    phase = (start_bit[:, None] + np.arange(SAMPLES_PER_BIT) / SAMPLES_PER_BIT) * bit[:, None]
-    for name, level, threshold, isolated in (
-        ("delay_rising_s", one, high, readings.rise_last_s),
-        ("delay_falling_s", 1 - zero, 1 - low, readings.fall_last_s),
-    ):
-        crossing = _last_crossing(phase, level, threshold)
-        delay = np.maximum(crossing - isolated[receiver, candidate], 0.0)
-        getattr(effects, name)[receiver, candidate] = delay
-    worst = np.minimum(one.max(axis=1), (1 - zero).max(axis=1))
-    effects.worst_level[receiver, candidate] = worst
+    effects.delay_rising_s[receiver, candidate] = step_s * _later(step, worst, high)
+    effects.delay_falling_s[receiver, candidate] = step_s * _later(step, worst, 1 - low)
+    one, zero, _ = peak_distortion(step[:, ::STEPS_PER_SAMPLE], SAMPLES_PER_BIT)
+    level = np.minimum(one.max(axis=1), (1 - zero).max(axis=1))
+    effects.worst_level[receiver, candidate] = level
 
 
-def _worst_bits(step: Array) -> tuple[Array, Array, Array]:
-    """Worst one and worst zero over one bit, starting where the pulse is largest. (M, n)"""
-    one, zero, _ = peak_distortion(step, SAMPLES_PER_BIT)
-    pulse = step[:, SAMPLES_PER_BIT:] - step[:, :-SAMPLES_PER_BIT]
-    whole = step.shape[1] // SAMPLES_PER_BIT
-    first = np.argmax(
-        np.concatenate([step[:, :SAMPLES_PER_BIT], pulse], axis=1).reshape(
-            len(step), whole, SAMPLES_PER_BIT
-        )[:, :, -1],
-        axis=1,
+def _later(step: Array, worst: Array, threshold: Array) -> Array:
+    """Steps by which the worst edge crosses for the last time after the isolated one. (M,)"""
+    row = np.arange(len(step))
+    alone, crowded = (
+        cubic_time(level, row, last_reach(level, threshold), threshold) for level in (step, worst)
     )
-    return one, zero, first
+    later = np.maximum(crowded - alone, 0.0)
+    return np.where(np.isnan(crowded) & np.isfinite(alone), np.inf, later)
 
 
 def _last_crossing(time_s: Array, level: Array, threshold: Array) -> Array:

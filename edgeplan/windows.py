@@ -20,7 +20,7 @@ from edgeplan.physics import waveforms
 
 Array = NDArray[Any]
 
-SCAN_POINTS = 56
+SCAN_POINTS = 40
 REFINE_POINTS = 8
 REFINE_PASSES = 2
 SHORTEST_RAMP_S = 0.1e-9

@@ -5,7 +5,7 @@ import numpy as np
 from edgeplan.checks import CheckTable, Worst
 from edgeplan.received import Seen
 
-ENGINE_ERROR = 0.01  # of the mean slope
+ENGINE_ERROR = 0.01  # of the mean slope: a dip no larger may be the engine's own ripple
 
 
 def checks(seen: Seen) -> list[CheckTable]:
@@ -18,7 +18,7 @@ def checks(seen: Seen) -> list[CheckTable]:
         worst.add(
             seen.nets.first_receiver,
             relative,
-            np.zeros_like(relative),
+            np.full_like(relative, -ENGINE_ERROR),
             np.ones_like(relative),
             r.condition,
             larger_is_better=True,
