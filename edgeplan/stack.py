@@ -275,6 +275,8 @@ def _cached(
     """One line per stack, layer and width."""
     index = next(i for i, entry in enumerate(stack) if entry.layer == layer)
     line = _computed(stack, index, width_m)
+    if isnan(line.delay_s_per_m):  # no plane: an impedance alone is not a line
+        return line
     if table:
         return _from_table(line, table)
     return _with_stated_impedance(line, stack, index)
