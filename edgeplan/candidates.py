@@ -242,7 +242,7 @@ def drive(
     else:
         ramp_s = ramp[at] * candidates.ramp_factor
         index = np.broadcast_to(np.arange(candidates.count), candidates.setting.shape)
-    stated = np.isfinite(resistance) & np.isfinite(ramp[at])
+    stated = np.isfinite(resistance) & np.isfinite(ramp[at]) & np.isfinite(pad)
     return Drive(
         resistance_ohm=resistance,
         series_ohm=candidates.series_ohm * scale,

@@ -48,10 +48,15 @@ class SettingCorners:
     @property
     def symmetric(self) -> bool:
         """Whether rising and falling are mirror images."""
-        return (
-            self.resistance_ohm["rising"] == self.resistance_ohm["falling"]
-            and self.ramp_s["rising"] == self.ramp_s["falling"]
+        return all(
+            _alike(both["rising"], both["falling"]) for both in (self.resistance_ohm, self.ramp_s)
         )
+
+
+def _alike(first: Quantity, second: Quantity) -> bool:
+    """Whether two quantities agree at every corner; values that nobody states agree."""
+    pairs = [(first.at(corner), second.at(corner)) for corner in CORNERS]
+    return all(a == b or (isnan(a) and isnan(b)) for a, b in pairs)
 
 
 def _corners(
@@ -138,10 +143,7 @@ def setting_corners(setting: Setting) -> SettingCorners:
     raised = 1 / RAISED_COSINE_SHARE[setting.edge_levels]
     straight = 1 / STRAIGHT_SHARE[setting.edge_levels]
     pad = 0.0 if setting.capacitance_f is None else setting.capacitance_f
-    stated_pad = pad.typ if isinstance(pad, Range) else pad
-    pads = _corners(pad, None, origin)
-    if isinstance(pad, Range) and (isnan(pads.slow) or isnan(pads.fast)):
-        pads = _corners(stated_pad, None, origin)
+    pads = _pad_corners(pad, origin)
     return SettingCorners(
         setting=setting.setting,
         resistance_ohm=resistance,
@@ -149,8 +151,21 @@ def setting_corners(setting: Setting) -> SettingCorners:
         trapezoid_s={d: _scaled(q, straight) for d, q in edge.items()},
         pad_f=pads,
         source=setting.source,
-        missing=tuple(_missing("resistance", resistance) + _missing("edge", edge)),
+        missing=(
+            *_missing("resistance", resistance),
+            *_missing("edge", edge),
+            *_missing("capacitance", {"pad": pads}),
+        ),
     )
+
+
+def _pad_corners(stated: Range[float] | float, provenance: str) -> Quantity:
+    """Pad capacitance: its typical value stands in for an end that is not stated."""
+    if isinstance(stated, Range) and stated.typ is not None:
+        low = stated.typ if stated.min is None else stated.min
+        high = stated.typ if stated.max is None else stated.max
+        stated = Range[float](min=low, typ=stated.typ, max=high)
+    return _corners(stated, None, provenance)
 
 
 def driver_corners(driver: Driver) -> dict[str, SettingCorners]:
