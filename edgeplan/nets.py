@@ -145,7 +145,8 @@ def resolve(board: Board) -> tuple[list[NetFacts], list[Blocked]]:
         try:
             resolved.append(_facts(net, routes, look_up))
         except CannotRoute as lack:
-            missing = Missing(value=lack.value, of=f"net {net.net}") if lack.value else None
+            of = lack.of or f"net {net.net}"
+            missing = Missing(value=lack.value, of=of) if lack.value else None
             blocked.append(Blocked(net=net, reason=str(lack), missing=missing))
     return resolved, blocked
 
@@ -191,11 +192,13 @@ def _facts(net: Net, routes: Mapping[str, list[Any]], look_up: _LookUp) -> NetFa
             f"{len(drivers)} drivers: nets driven from several sides are not judged yet"
         )
     driver = look_up.driver[drivers[0]]
-    receivers = tuple(look_up.receiver[name] for name in _required(net.receiver, "receiver"))
+    receivers = tuple(
+        _with_both_capacitances(look_up.receiver[name])
+        for name in _required(net.receiver, "receiver")
+    )
     if interface.supply_v.min is None or interface.supply_v.max is None:
-        raise CannotRoute(
-            f"interface {interface.name} states no minimum and maximum supply", value="supply"
-        )
+        owner = f"interface {interface.name}"
+        raise CannotRoute(f"{owner} states no minimum and maximum supply", value="supply", of=owner)
     timing = _timing_class(net, interface)
     activity = net.activity or ("clock" if net.net == interface.clock_net else None)
     settings = look_up.corners[driver.name]
@@ -241,16 +244,27 @@ def _constants(lines: Sequence[Line]) -> LineConstants:
 
 
 def _capacitance(receiver: Receiver, corner: str) -> float:
-    """Input capacitance at a corner: largest when slow, smallest when fast."""
+    """Input capacitance at a corner: largest when slow, smallest when fast; else the typical."""
     stated = receiver.capacitance_f
     if not isinstance(stated, Range):
         return float(stated)
-    order = {
-        "slow": (stated.max, stated.typ, stated.min),
-        "typical": (stated.typ, stated.max, stated.min),
-        "fast": (stated.min, stated.typ, stated.max),
-    }
-    return float(next(value for value in order[corner] if value is not None))
+    at = {"slow": stated.max, "typical": None, "fast": stated.min}[corner]
+    if at is not None:
+        return float(at)
+    if stated.typ is not None:
+        return float(stated.typ)
+    return 0.5 * (float(stated.min or nan) + float(stated.max or nan))
+
+
+def _with_both_capacitances(receiver: Receiver) -> Receiver:
+    """The receiver, or which end of its capacitance is missing: a maximum is no minimum."""
+    stated = receiver.capacitance_f
+    if isinstance(stated, Range) and stated.typ is None:
+        for word, value in (("minimum", stated.min), ("maximum", stated.max)):
+            if value is None:
+                name, owner = f"{word} capacitance", f"receiver {receiver.name}"
+                raise CannotRoute(f"{owner} states no {name}", value=name, of=owner)
+    return receiver
 
 
 def _trees(facts: Sequence[NetFacts], corner: str) -> Trees:
@@ -303,9 +317,7 @@ def _thresholds(
     return low / supply, high / supply
 
 
-def _transition_levels(
-    receiver: Receiver, thresholds: tuple[float, float]
-) -> tuple[float, float]:
+def _transition_levels(receiver: Receiver, thresholds: tuple[float, float]) -> tuple[float, float]:
     """Levels the receiver's transition is judged between, as fractions of the swing."""
     if receiver.longest_transition is None:
         return TRANSITION_LEVELS["10-90"]
@@ -353,7 +365,10 @@ def build(facts: Sequence[NetFacts], board: Board) -> Nets:
         transition_low={c: rows[:, 0] for c, rows in transition.items()},
         transition_high={c: rows[:, 1] for c, rows in transition.items()},
         longest_transition_s=np.array(
-            [nan if r.longest_transition is None else r.longest_transition.time_s for _, r in receivers]
+            [
+                nan if r.longest_transition is None else r.longest_transition.time_s
+                for _, r in receivers
+            ]
         ),
         overshoot_limit={c: _overshoot_limits(receivers, c) for c in CORNERS},
         bit_s=np.array([f.bit_s for f in facts]),

@@ -3,6 +3,7 @@
 from collections import defaultdict
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from math import isnan
 
 from edgeplan.board import Net, RouteSegment
 from edgeplan.stack import Line
@@ -12,11 +13,15 @@ LineOf = Callable[[str, float], Line]
 
 
 class CannotRoute(Exception):  # noqa: N818 - a finding about one net, not a fault of the run
-    """A net whose path cannot be built; the text says what is missing or wrong."""
+    """A net whose path cannot be built; the text says what is missing or wrong.
 
-    def __init__(self, text: str, value: str = "") -> None:
+    ``value`` is the value that would help and ``of`` whose it is; the net's own if empty.
+    """
+
+    def __init__(self, text: str, value: str = "", of: str = "") -> None:
         super().__init__(text)
         self.value = value
+        self.of = of
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -60,9 +65,7 @@ class Path:
         return total
 
 
-def path_of(
-    net: Net, routes: Sequence[RouteSegment], line_of: LineOf, *, clock_like: bool
-) -> Path:
+def path_of(net: Net, routes: Sequence[RouteSegment], line_of: LineOf, *, clock_like: bool) -> Path:
     """Build the path of a net from its routes, or from its length alone.
 
     Parameters
@@ -94,7 +97,8 @@ def path_of(
 def _known_line(line: Line) -> Line:
     """The line, or why it is not known."""
     if line.problem:
-        raise CannotRoute(line.problem, value="z0")
+        value = "plane" if isnan(line.delay_s_per_m) else "z0"
+        raise CannotRoute(line.problem, value=value, of=f"layer {line.layer}")
     return line
 
 
@@ -134,9 +138,7 @@ def _unrouted(net: Net, line_of: LineOf, *, clock_like: bool) -> Path:
     pieces = tuple(
         Piece(parent=i - 1, length_m=length, line=line) for i, (length, line) in enumerate(lengths)
     )
-    return Path(
-        stub_m=stub, stub_line=stub_line, pieces=pieces, receiver_piece=(len(pieces) - 1,)
-    )
+    return Path(stub_m=stub, stub_line=stub_line, pieces=pieces, receiver_piece=(len(pieces) - 1,))
 
 
 def _assumed_chain(
@@ -144,7 +146,7 @@ def _assumed_chain(
 ) -> Path:
     """Receivers of a data net at equal distances along its length."""
     total = sum(length for length, _ in lengths)
-    line = max(lengths)[1]
+    line = max(lengths, key=lambda piece: piece[0])[1]
     count = len(net.receiver)
     pieces = tuple(Piece(parent=i - 1, length_m=total / count, line=line) for i in range(count))
     note = f"{count} receivers without a route: a chain with equal distances is assumed"
