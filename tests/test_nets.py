@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 from build import (
+    STACK,
     board,
     clock,
     driver,
