@@ -1,6 +1,5 @@
 """Checks as tables: value, limit and signed margin of every net and candidate."""
 
-from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
@@ -180,20 +179,3 @@ class Worst:
             error_high=self.error,
             extra=extra or {},
         )
-
-
-def smallest_share(tables: Sequence[CheckTable]) -> tuple[Array, Array]:
-    """Smallest share over all checks that apply, and the index of its table.
-
-    Undecided checks do not count: they are counted by ``CheckTable.open``.
-
-    Returns
-    -------
-    numpy.ndarray, numpy.ndarray
-        (N, C) shares (inf where nothing applies) and indices of tables.
-    """
-    shares = np.stack(
-        [np.where(t.applies[:, None] & t.decided, t.share, np.inf) for t in tables], axis=0
-    )
-    best = np.argmin(shares, axis=0)
-    return np.take_along_axis(shares, best[None], axis=0)[0], best

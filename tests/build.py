@@ -37,12 +37,14 @@ RAISED_COSINE_10_90 = 2 * np.arcsin(0.8) / np.pi  # of the 0-100 % time, 0.5903
 RAMP_S = EDGE_S / RAISED_COSINE_10_90
 
 
-def exactly(value: float) -> Fields:
-    """State a quantity without any spread."""
-    return {"min": value, "typ": value, "max": value}
+def exactly(value: float | Fields) -> Fields:
+    """State a quantity without any spread; a range stays as it is."""
+    return value if isinstance(value, dict) else {"min": value, "typ": value, "max": value}
 
 
-def setting(name: str = "A", ohm: float = 50.0, edge_s: float = EDGE_S, **changes: Any) -> Fields:
+def setting(
+    name: str = "A", ohm: float | Fields = 50.0, edge_s: float | Fields = EDGE_S, **changes: Any
+) -> Fields:
     """Make a setting that is the same at every corner."""
     plain = {"setting": name, "resistance_ohm": exactly(ohm), "edge_s": exactly(edge_s)}
     return plain | {"capacitance_f": 0.0} | changes
