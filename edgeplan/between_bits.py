@@ -21,6 +21,7 @@ OVERLAP = 0.5  # of a bit: an edge as long as this may meet the next one before 
 SAMPLES_PER_BIT = 32
 STEPS_PER_SAMPLE = 5  # of the engine, so that a ramp of a sixteenth of a bit has ten steps
 BITS = 8  # length of the pulse that is folded
+SHORTEST_OF_PERIOD = 1000  # a shorter ramp would have to ring hundreds of round trips to matter
 ROWS = 512  # waveforms held at once
 
 
@@ -197,6 +198,10 @@ def _clocks(
     """Periodic steady state: crossings, transition and level of the first half of the period."""
     index, drive = _chosen(nets, source, rows)
     period = np.array([1 / (nets.facts[i].net.clock_hz or np.nan) for i in index])
+    long_enough = drive.candidate_ramp_s() * SHORTEST_OF_PERIOD > period[:, None]
+    drive = replace(drive, exists=drive.exists & long_enough)
+    some = np.flatnonzero(drive.exists.any(axis=1))
+    index, drive, period = index[some], drive.take(some), period[some]
     ramp = np.where(drive.exists, drive.candidate_ramp_s(), np.inf).min(axis=1)
     size = np.ceil(np.log2(period / ramp))
     for few in (np.flatnonzero(size == s) for s in np.unique(size)):

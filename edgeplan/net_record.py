@@ -57,6 +57,7 @@ class NetState:
     window: StateWindow
     edges_s: dict[str, float]
     entries: tuple[tuple[str, str, float], ...]
+    out_of_reach_hz: tuple[float, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -219,8 +220,10 @@ def _check(
     place = pins[receiver] if receiver < len(pins) else ""
     is_emission = table.check == "emission"
     extra = _emission_extra(table, row, column, state) if is_emission else {}
-    if is_emission and extra.get("order") is not None:
-        extra["out_of_reach"] = _out_of_reach(state, decided=decided)
+    if is_emission and decided:
+        beyond = state.out_of_reach_hz
+        extra["out_of_reach_hz"] = list(beyond)
+        extra["out_of_reach"] = extra.get("frequency_hz") in beyond
     return Check(
         check=table.check,
         candidate=state.candidate,
@@ -249,15 +252,6 @@ def _check(
         limit_edge_s=_number(state.window.limit_edge_s.get(table.check, np.nan)),
         **extra,
     )
-
-
-def _out_of_reach(state: NetState, *, decided: bool) -> bool:
-    """Whether emission closes the window: no edge up to the slowest allowed brings it in."""
-    window = state.window
-    if not decided or window.fastest.check != "emission":
-        return False
-    closed = isnan(window.fastest.factor) or window.fastest.factor > window.slowest.factor
-    return bool(closed)
 
 
 def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -> dict[str, Any]:

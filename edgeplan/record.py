@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from edgeplan import __version__, levels, net_record, pictures_of, unused
 from edgeplan.board import Board
-from edgeplan.candidates import drawn_ohm
+from edgeplan.candidates import Candidates, drawn_ohm
 from edgeplan.caution import CAUTION
 from edgeplan.choice import per_net, remedies, settles
 from edgeplan.drives import CORNERS
@@ -20,6 +20,7 @@ from edgeplan.errors import InputError, Problem
 from edgeplan.evaluate import Bench, evaluate
 from edgeplan.names import natural_key
 from edgeplan.nets import Blocked, NetFacts
+from edgeplan.radiated import Passive, source_levels
 from edgeplan.results import (
     VERDICTS,
     ArrayChoice,
@@ -231,7 +232,9 @@ def _net_states(block: Block, state: "State", bench: Bench) -> list[net_record.N
     """One state of every net of a block."""
     column = block.candidates.state(state.chosen[block.index])
     edges = {c: launched_edge_s(block.nets, column, c)[:, 0] for c in ("slow", "fast")}
-    entries = bench.radiation.passive(block.nets).entries
+    passive = bench.radiation.passive(block.nets)
+    slowest = np.array([state.window[int(i)].slowest.factor for i in block.index])
+    beyond = _out_of_reach(block, column.with_ramps(slowest[:, None]), passive, bench)
     found = []
     for row, i in enumerate(map(int, block.index)):
         evaluation, own = state.evaluation[i]
@@ -254,15 +257,30 @@ def _net_states(block: Block, state: "State", bench: Bench) -> list[net_record.N
                     "typical": window.edge_s,
                     "fast": float(edges["fast"][row]),
                 },
-                entries=entries,
+                entries=passive.entries,
+                out_of_reach_hz=beyond[row],
             )
         )
     return found
 
 
+def _out_of_reach(
+    block: Block, slowest: Candidates, passive: Passive, bench: Bench
+) -> list[tuple[float, ...]]:
+    """Lines still over budget with the slowest allowed edge, per net. [Hz]"""
+    levels = source_levels(block.nets, slowest, passive, bench.tolerance)[:, 0]
+    with np.errstate(invalid="ignore"):
+        over = passive.lines.exists & (passive.over_budget * levels > 1)
+    return [
+        tuple(float(f) for f in passive.lines.frequency_hz[i][over[i]]) for i in range(len(over))
+    ]
+
+
 def _remedies(draft: Draft) -> dict[int, list[Remedy]]:
     """Remedies of nets that no candidate brings inside, per net."""
     found: dict[int, list[Remedy]] = defaultdict(list)
+    if draft.command == "check":
+        return found
     for block in draft.blocks:
         rows = [row for row, i in enumerate(map(int, block.index)) if _needs_remedy(draft, i)]
         if not rows or block.nets.facts[0].timing == "open-drain":

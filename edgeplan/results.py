@@ -197,6 +197,8 @@ class Check:
 
     ``limit_edge_s`` is the launched edge (typical corner, 10-90 %) at which this check alone
     would just hold; ``wants`` is the side the edge must move to when it fails.
+    ``out_of_reach_hz`` are the lines over budget that no edge up to the slowest allowed one
+    brings in; ``out_of_reach`` says that the worst line is one of them.
     """
 
     check: str
@@ -219,6 +221,7 @@ class Check:
     order: int | None = None
     detector: str = ""
     out_of_reach: bool = False
+    out_of_reach_hz: list[float] = field(default_factory=list)
     parts: list[EmissionPart] = field(default_factory=list)
 
 

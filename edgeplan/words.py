@@ -63,12 +63,17 @@ def _value_words(facts: NetFacts, drawn: float, value_ohm: float) -> tuple[str, 
 
 def check_words(check: Check) -> str:
     """A check as a cause: its name, with frequency and harmonic number for emission."""
+    early = " before firmware" if check.condition.state == "boot" else ""
     if check.check != "emission" or check.frequency_hz is None:
-        return check.check
+        return f"{check.check}{early}"
     number = check.order
     harmonic = f" ({ORDINALS.get(number, f'{number}th')})" if number else ""
-    reach = ", out of reach" if check.out_of_reach else ""
-    return f"emission {text_frequency_hz(check.frequency_hz)}{harmonic}{reach}"
+    worst = f"emission {text_frequency_hz(check.frequency_hz)}{harmonic}{early}"
+    if check.out_of_reach:
+        return f"{worst}, out of reach"
+    if check.out_of_reach_hz:
+        return f"{worst}, {text_frequency_hz(check.out_of_reach_hz[0])} out of reach"
+    return worst
 
 
 def binds_words(verdict: Verdict, failing: list[Check], tightest: Check | None) -> str:

@@ -19,9 +19,9 @@ from edgeplan.nets import NetFacts
 Array = NDArray[Any]
 
 # Shares in one of these steps count as equal, so that the common value can decide: next to
-# nothing, little, and then fifths. Failing candidates are told apart in tenths.
+# nothing, little, and then fifths. Failing candidates are told apart in fiftieths.
 SHARE_STEPS = np.array([0.0, 0.03, 0.2, 0.4, 0.6, 0.8])
-EXCESS_STEP = 0.1
+EXCESS_STEP = 0.02
 # Weights keep the order of preference: a failing net outweighs every cost, a dearer kind of
 # change outweighs any number of cheaper ones on one net, and a share outweighs the value's rank.
 FAIL = 1e12
@@ -103,11 +103,17 @@ def scores(
     rank = np.array(
         [common.get(v, 0) for v in np.nan_to_num(candidates.series_ohm).ravel().tolist()]
     ).reshape(candidates.series_ohm.shape)
-    tie = 0.5 * candidates.series_ohm / (1 + np.nanmax(candidates.series_ohm, initial=1.0))
-    tie = np.nan_to_num(tie) - np.minimum(rank, 400)
+    tie = _smaller_part(candidates) - np.minimum(rank, 400)
     passing = change - SHARE * steps + tie
-    failing = FAIL * np.where(works, 1, 2) - 1e10 * excess + 1e-3 * change + 1e-3 * tie
+    failing = FAIL * np.where(works, 1, 2) - 1e9 * excess + 1e-3 * change + 1e-3 * tie
     return np.where(candidates.exists & allowed, np.where(passes, passing, failing), np.inf)
+
+
+def _smaller_part(candidates: Candidates) -> Array:
+    """Last tie-break, 0 to 1/2: the smaller series resistor, the larger pull-up. (N, C)"""
+    series = candidates.series_ohm / (1 + candidates.series_ohm.max(initial=1.0))
+    pull_up = 100.0 / (100.0 + candidates.pull_up_ohm)
+    return np.asarray(0.5 * np.where(np.isnan(pull_up), series, pull_up))
 
 
 def choose(facts: Sequence[NetFacts], candidates: Candidates, score: Array) -> Array:
