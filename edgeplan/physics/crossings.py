@@ -1,14 +1,58 @@
 """Where sampled rows cross their thresholds: first, last, and between the samples."""
 
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
+from numpy.lib.stride_tricks import sliding_window_view
 from numpy.typing import NDArray
 
 Array = NDArray[Any]
 
 GUARD = 0.01  # a threshold is read at -1 %, 0 and +1 % of the swing
 NEAR = 4  # samples in which a clean edge passes the three readings
+WINDOW = 64  # samples in which a clean edge passes all thresholds
+
+
+class Edges(NamedTuple):
+    """Stretch of every row in which its edge is expected, and the rows where it is longer.
+
+    ``near`` (M, L) begins at sample ``begin`` (M,), before which the row is below all
+    thresholds. Rows ``long`` are not above all of them by the end of the stretch.
+    """
+
+    near: Array
+    begin: Array
+    long: Array
+
+
+def edges(level: Array, lowest: Array, highest: Array) -> Edges:
+    """Cut out the stretch from the lowest threshold on.
+
+    Parameters
+    ----------
+    level : numpy.ndarray
+        Samples (M, n). [-]
+    lowest, highest : numpy.ndarray
+        Extreme thresholds of every row (M,). [-]
+
+    Returns
+    -------
+    Edges
+        Stretches of up to ``WINDOW`` samples.
+
+    Examples
+    --------
+    >>> found = edges(np.arange(200.0)[None] / 100, np.array([0.2]), np.array([0.9]))
+    >>> found.begin.tolist(), found.near.shape, found.long.tolist()
+    ([18], (1, 64), [0])
+    """
+    rows, samples = level.shape
+    width = min(WINDOW, samples)
+    begin = np.clip(first_reach(level, lowest) - 2, 0, samples - width)
+    every = sliding_window_view(level.ravel(), width)
+    near = np.asarray(every[np.arange(rows) * samples + begin])
+    long = np.flatnonzero((first_reach(near, highest) == width) & (begin + width < samples))
+    return Edges(near, begin, long)
 
 
 def first_reach(level: Array, threshold: Array) -> Array:
@@ -63,7 +107,7 @@ def last_reach(level: Array, threshold: Array) -> Array:
     return np.where(never, 0, level.shape[1] - back)
 
 
-def first_readings(level: Array, threshold: Array) -> Array:
+def first_readings(level: Array, threshold: Array, found: Edges) -> Array:
     """First reach of k thresholds, each read at -1 %, 0 and +1 % of the swing.
 
     Parameters
@@ -72,6 +116,8 @@ def first_readings(level: Array, threshold: Array) -> Array:
         Samples (M, n). [-]
     threshold : numpy.ndarray
         Thresholds (k, M). [-]
+    found : Edges
+        From :func:`edges` with the thresholds less and plus 1 %.
 
     Returns
     -------
@@ -80,25 +126,30 @@ def first_readings(level: Array, threshold: Array) -> Array:
 
     Examples
     --------
-    >>> first_readings(np.array([[0.0, 0.495, 0.4, 1.0]]), np.array([[0.5]])).ravel().tolist()
+    >>> wave = np.array([[0.0, 0.495, 0.4, 1.0]])
+    >>> found = edges(wave, np.array([0.49]), np.array([0.51]))
+    >>> first_readings(wave, np.array([[0.5]]), found).ravel().tolist()
     [1, 3, 3]
     """
-    samples = level.shape[1]
+    rows, samples = level.shape
+    width = found.near.shape[1]
+    long = level[found.long]
+    guard = level.dtype.type(GUARD)
     index = np.empty((3, *threshold.shape), dtype=np.intp)
-    for kind, own in enumerate(threshold):
-        index[0, kind] = first_reach(level, own - level.dtype.type(GUARD))
-    near = _near(level, index[0])
-    for reading, wanted in ((1, threshold), (2, threshold + level.dtype.type(GUARD))):
-        above = near >= wanted
-        step = above.argmax(axis=0)
-        index[reading] = index[0] + step
-        found = above.any(axis=0)
-        for kind, row in _pairs(~found & (index[0] < samples)):
+    for kind, own in enumerate(threshold - guard):
+        local = first_reach(found.near, own)
+        index[0, kind] = np.where(local < width, found.begin + local, samples)
+        index[0, kind, found.long] = first_reach(long, own[found.long])
+    after = level.ravel()[_positions(rows, samples, index[0])]
+    for reading, wanted in ((1, threshold), (2, threshold + guard)):
+        steps = _leading(after < wanted)
+        index[reading] = index[0] + steps
+        for kind, row in _pairs((steps > NEAR) & (index[0] < samples)):
             index[reading, kind, row] = first_reach(level[row], wanted[kind, row])
     return np.minimum(index, samples)
 
 
-def last_readings(level: Array, threshold: Array, first: Array) -> Array:
+def last_readings(level: Array, threshold: Array, first: Array, lowest: Array) -> Array:
     """Last reach of q thresholds, each read at -1 %, 0 and +1 % of the swing.
 
     Parameters
@@ -109,6 +160,9 @@ def last_readings(level: Array, threshold: Array, first: Array) -> Array:
         Thresholds (q, M). [-]
     first : numpy.ndarray
         Indices (3, q, M) of :func:`first_readings`. [-]
+    lowest : numpy.ndarray
+        Lowest sample from the first reach of +1 % on (q, M): where it stays clear of the
+        threshold the last reach is the first one. [-]
 
     Returns
     -------
@@ -117,30 +171,53 @@ def last_readings(level: Array, threshold: Array, first: Array) -> Array:
 
     Examples
     --------
-    >>> wave = np.array([[0.0, 0.6, 0.495, 1.0]])
-    >>> threshold = np.array([[0.5]])
-    >>> last_readings(wave, threshold, first_readings(wave, threshold)).ravel().tolist()
+    >>> wave, threshold = np.array([[0.0, 0.6, 0.495, 1.0]]), np.array([[0.5]])
+    >>> first = np.array([[[1]], [[1]], [[1]]])
+    >>> last_readings(wave, threshold, first, np.array([[0.495]])).ravel().tolist()
     [1, 3, 3]
     """
     index = first.copy()
     guard = level.dtype.type(GUARD)
     for kind, own in enumerate(threshold):
-        # Lowest sample after the edge: where it stays clear the last reach is the first one.
-        lowest = lowest_after(level, first[2, kind])
-        row = np.flatnonzero(lowest < own + guard)
+        row = np.flatnonzero(lowest[kind] < own + guard)
         again = level[row]
         for reading, shift in enumerate((-guard, 0, guard)):
             index[reading, kind, row] = last_reach(again, own[row] + shift)
     return index
 
 
-def lowest_after(level: Array, start: Array) -> Array:
-    """Lowest sample of each row from an index on; that of the last sample beyond the row.
+def lowest_from(level: Array, start: Array) -> Array:
+    """Lowest sample of each row from each of q indices on, in one pass over the samples.
 
-    >>> lowest_after(np.array([[0.0, 1.0, 0.8], [0.0, 0.5, 1.0]]), np.array([1, 2])).tolist()
-    [0.8, 1.0]
+    Parameters
+    ----------
+    level : numpy.ndarray
+        Samples (M, n). [-]
+    start : numpy.ndarray
+        Indices (q, M); beyond the row the last sample counts. [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Lowest samples (q, M). [-]
+
+    Examples
+    --------
+    >>> lowest_from(np.array([[0.0, 1.0, 0.5, 0.8]]), np.array([[3], [1], [0]])).ravel().tolist()
+    [0.8, 0.5, 0.0]
     """
-    return _reduce_after(np.minimum, level, start)
+    rows, samples = level.shape
+    places = np.minimum(start, samples - 1).T
+    cuts = np.full((rows, len(start) + 1), samples)
+    cuts[:, :-1] = np.sort(places, axis=1)
+    begin = np.arange(rows)[:, None] * samples
+    pieces = np.append(np.minimum.reduceat(level.ravel(), (cuts + begin).ravel()[:-1]), 0)
+    lowest = pieces.reshape(cuts.shape)[:, -2]
+    result = np.repeat(lowest[None], len(start), axis=0)
+    for rank in range(len(start) - 2, -1, -1):
+        lowest = np.minimum(lowest, pieces.reshape(cuts.shape)[:, rank])
+        result = np.where(cuts[:, rank] >= places.T, lowest, result)
+    return result
 
 
 def highest_after(level: Array, start: Array) -> Array:
@@ -149,7 +226,10 @@ def highest_after(level: Array, start: Array) -> Array:
     >>> highest_after(np.array([[0.0, 1.0, 0.8], [0.0, 0.5, 1.0]]), np.array([2, 1])).tolist()
     [0.8, 1.0]
     """
-    return _reduce_after(np.maximum, level, start)
+    rows, samples = level.shape
+    begin = np.arange(rows) * samples
+    cuts = np.stack([begin + np.minimum(start, samples - 1), begin + samples], axis=1)
+    return np.asarray(np.maximum.reduceat(level.ravel(), cuts.ravel()[:-1])[::2])
 
 
 def lowest_between(level: Array, start: Array, stop: Array) -> Array:
@@ -226,20 +306,21 @@ def straight_time(level: Array, row: Array, index: Array, threshold: Array) -> A
     return np.where(index < samples, time, np.inf)
 
 
-def _reduce_after(extreme: np.ufunc, level: Array, start: Array) -> Array:
-    """Reduce each row from an index on."""
-    rows, samples = level.shape
+def _positions(rows: int, samples: int, index: Array) -> Array:
+    """Flat places of the samples from each index on (NEAR + 1, k, M), none beyond its row."""
     begin = np.arange(rows) * samples
-    cuts = np.stack([begin + np.minimum(start, samples - 1), begin + samples], axis=1)
-    return np.asarray(extreme.reduceat(level.ravel(), cuts.ravel()[:-1])[::2])
+    places = np.arange(NEAR + 1)[:, None, None] + (index + begin)
+    return np.minimum(places, begin + (samples - 1), out=places)
 
 
-def _near(level: Array, index: Array) -> Array:
-    """Give the samples from each index on (NEAR + 1, k, M), the last one where the row ends."""
-    rows, samples = level.shape
-    begin = np.arange(rows) * samples
-    offset = np.arange(NEAR + 1)[:, None, None]
-    return np.asarray(level.ravel()[begin + np.minimum(index + offset, samples - 1)])
+def _leading(mask: Array) -> Array:
+    """Count of true values along the first axis before the first false one."""
+    going = np.array(mask[0])
+    count = going.astype(np.intp)
+    for more in mask[1:]:
+        going &= more
+        count += going
+    return np.asarray(count)
 
 
 def _pairs(mask: Array) -> list[tuple[int, Array]]:

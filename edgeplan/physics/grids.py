@@ -229,7 +229,7 @@ def choose_grids(drive: Drive, window: Needs) -> Grids:
     ([256, 256], [0, 1])
     """
     ramp, need, possible = _feasible(drive, window)
-    caps = [SHORTEST * 2**q for q in range(int(np.log2(SPLIT_ABOVE / SHORTEST)) + 1)]
+    caps = [SHORTEST, 2 * SHORTEST, SPLIT_ABOVE]
     plans = [_rounds(ramp, need, possible, np.full(len(ramp), cap)) for cap in caps]
     costs = np.stack([_cost(plan, possible) for plan in plans])
     cap = np.array(caps)[costs.argmin(axis=0)]
@@ -283,20 +283,23 @@ def _rounds(ramp: Array, need: Array, possible: Array, cap: Array) -> tuple[Arra
             break
         opener = np.where(open_, ramp, np.inf).argmin(axis=1)
         step = rounded_step_s(ramp[everyone, opener] / SAMPLES_PER_RAMP)
-        most = np.maximum(cap, _power_of_two(wanted[everyone, opener]))
+        most = np.maximum(cap, _length(wanted[everyone, opener]))
         samples = need / (KEPT * step[:, None])
         members = open_ & (samples <= most[:, None])
         piece[members] = round_
         open_ &= ~members
         steps[round_:] = [step]
-        lengths[round_:] = [_power_of_two(np.where(members, samples, 0).max(axis=1))]
+        lengths[round_:] = [_length(np.where(members, samples, 0).max(axis=1))]
     return piece, np.stack(steps), np.stack(lengths)
 
 
-def _power_of_two(samples: Array) -> Array:
-    """Length, a power of two, that holds so many samples."""
-    octaves = np.ceil(np.log2(np.maximum(samples, SHORTEST) / SHORTEST) - 1e-9)
-    return np.asarray(SHORTEST * 2**octaves, dtype=np.intp)
+def _length(samples: Array) -> Array:
+    """Length that holds so many samples: 256 times 1, 1.5, 2, 3, 4 and so on."""
+    times = np.maximum(samples, SHORTEST) / SHORTEST
+    octave = np.floor(np.log2(times) + 1e-9)
+    within = times / 2**octave
+    step = np.where(within > 1.5 + 1e-9, 2, np.where(within > 1 + 1e-9, 1.5, 1))
+    return np.asarray(SHORTEST * step * 2**octave, dtype=np.intp)
 
 
 def _cost(plan: tuple[Array, Array, Array], possible: Array) -> Array:

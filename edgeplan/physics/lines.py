@@ -133,39 +133,56 @@ def decay(exponent: Array) -> Array:
     return result
 
 
-def distinct_propagation(
-    line: LineConstants, s: Array, s_row: Array, *, precision: Any = np.complex128
-) -> tuple[Array, Array, Array]:
-    """Propagation of each distinct pair of line and row of frequencies, computed once.
+def reciprocal(values: Array) -> Array:
+    """Return 1/z of complex numbers as ``conj(z)/|z|^2``, twice as fast as a complex division.
 
-    Parameters
-    ----------
-    line : LineConstants
-        Of M segments. [SI]
-    s : numpy.ndarray
-        Complex frequencies (U, K). [rad/s]
-    s_row : numpy.ndarray
-        Row of each segment (M,). [-]
-    precision : numpy.dtype
-        Complex type of the result; the computation is always double.
-
-    Returns
-    -------
-    index : numpy.ndarray
-        Row of the two results for each segment (M,). [-]
-    gamma_per_m, admittance_siemens : numpy.ndarray
-        Propagation constant and characteristic admittance (Q, K). [1/m], [S]
-
-    Examples
-    --------
-    >>> line = LineConstants(*np.array([[50.0, 50.0], [6e-9, 6e-9], *np.zeros((3, 2))]))
-    >>> distinct_propagation(line, np.array([[1e9j]]), np.array([0, 0]))[0].tolist()
-    [0, 0]
+    >>> print(reciprocal(np.array([3 + 4j])))
+    [0.12-0.16j]
     """
-    first, index = _distinct((np.asarray(s_row), *line))
-    kind = LineConstants(*(np.asarray(field)[first, None] for field in line))
-    gamma, impedance = propagation(np.asarray(s)[np.asarray(s_row)[first]], kind)
-    return index, gamma.astype(precision), (1 / impedance).astype(precision)
+    parts = values.view(values.real.dtype)
+    squares = parts * parts
+    size = squares[..., ::2] + squares[..., 1::2]
+    result = np.conj(values)
+    result *= np.divide(size.dtype.type(1), size, out=size)
+    return np.asarray(result)
+
+
+class KnownLines:
+    """Propagation of lines on rows of frequencies, computed once and kept for later calls.
+
+    Called with lines of M segments, frequencies (U, K) and the row of each segment, it
+    returns the index (M,) into its two results, propagation constant [1/m] and
+    characteristic admittance [S], each (Q, K). They are computed in double precision and
+    kept in that of the frequencies.
+
+    >>> line = LineConstants(*np.array([[50.0, 50.0], [6e-9, 6e-9], *np.zeros((3, 2))]))
+    >>> known = KnownLines()
+    >>> index, gamma, admittance = known(line, np.array([[1e9j, 2e9j]]), np.array([0, 0]))
+    >>> index.tolist(), gamma.shape, admittance[0].real.round(3).tolist()
+    ([0, 0], (1, 2), [0.02, 0.02])
+    """
+
+    most = 4096  # rows kept; a board with more hardly repeats its lines
+
+    def __init__(self) -> None:
+        self.rows: dict[tuple[bytes, bytes], tuple[Array, Array]] = {}
+
+    def __call__(self, line: LineConstants, s: Array, s_row: Array) -> tuple[Array, Array, Array]:
+        """Look up what is known and compute the rest."""
+        first, index = _distinct((np.asarray(s_row), *line))
+        kind = np.stack([np.asarray(field)[first] for field in line], axis=1).astype(float)
+        row = np.asarray(s_row)[first]
+        of_row = [frequencies.tobytes() for frequencies in s]
+        keys = [(of_row[r], own.tobytes()) for r, own in zip(row, kind, strict=True)]
+        new = [i for i, key in enumerate(keys) if key not in self.rows]
+        if len(self.rows) + len(new) > self.most:
+            self.rows.clear()
+            new = list(range(len(keys)))
+        gamma, impedance = propagation(s[row[new]], LineConstants(*kind[new].T[..., None]))
+        found = (gamma.astype(s.dtype), reciprocal(impedance).astype(s.dtype))
+        self.rows.update(zip([keys[i] for i in new], zip(*found, strict=True), strict=True))
+        known = [self.rows[key] for key in keys]
+        return index, np.stack([g for g, _ in known]), np.stack([y for _, y in known])
 
 
 def _distinct(columns: tuple[Array, ...]) -> tuple[Array, Array]:

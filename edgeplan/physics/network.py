@@ -6,7 +6,7 @@ from typing import Any, NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from edgeplan.physics.lines import LineConstants, decay, distinct_propagation
+from edgeplan.physics.lines import KnownLines, LineConstants, decay, reciprocal
 
 Array = NDArray[Any]
 
@@ -198,7 +198,12 @@ def root_impedance_ohm(trees: Trees) -> Array:
 
 
 def response(
-    trees: Trees, s: ArrayLike, *, s_row: ArrayLike | None = None, moments: bool = False
+    trees: Trees,
+    s: ArrayLike,
+    *,
+    s_row: ArrayLike | None = None,
+    moments: bool = False,
+    lines: KnownLines | None = None,
 ) -> Response:
     r"""Admittance at node 0 and transfer to the receivers of trees of one shape.
 
@@ -221,6 +226,8 @@ def response(
         Row of ``s`` that belongs to each tree (G,). [-]
     moments : bool
         Whether the current moments are wanted.
+    lines : KnownLines, optional
+        What is known of the lines from calls before.
 
     Returns
     -------
@@ -248,9 +255,7 @@ def response(
     count = len(trees)
     row = _frequency_row(s, s_row, count)
     segments = _segments_per_tree(trees)
-    index, gamma, admittance = distinct_propagation(
-        trees.line, s, np.repeat(row, segments), precision=s.dtype
-    )
+    index, gamma, admittance = (lines or KnownLines())(trees.line, s, np.repeat(row, segments))
     index = index.reshape(count, segments)
     load = _loads(trees, s[row], segments)
     parent = np.asarray(trees.parent).reshape(count, segments)[0]
@@ -389,7 +394,7 @@ def _up(
         twice = once * once
         far = load[i]
         forward, back = (own, own * twice) if far is None else (own + far, (own - far) * twice)
-        shared = own / (forward + back)
+        shared = own * reciprocal(forward + back)
         transfer[i] = 2 * once * shared
         seen = shared * (forward - back)
         if parent[i] < 0:

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from scipy import fft
 
 from edgeplan.physics.grids import DAMPING, KEPT, Grids
+from edgeplan.physics.lines import KnownLines, reciprocal
 from edgeplan.physics.network import Trees, dc_response, response
 from edgeplan.physics.sources import (
     EDGE_SHAPES,
@@ -21,6 +22,7 @@ from edgeplan.physics.sources import (
 Array = NDArray[Any]
 
 ROWS = 1536
+CACHED = 32_768  # spectral values of candidates at a time, so that they stay in the cache
 CHUNK_MEMBERS = 20_000  # candidates whose trees are solved in one pass
 
 
@@ -29,7 +31,7 @@ class Block:
     """M step responses of one length, each on its own step.
 
     ``level`` (M, n) is normalised to end at 1 and sampled at ``start_s + n step_s``;
-    ``receiver`` counts over all nets. A row may come twice.
+    ``receiver`` counts over all nets.
     """
 
     level: Array
@@ -42,14 +44,25 @@ class Block:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Chunk:
-    """Trees of one shape solved on one length: terms (G, B, 2K), transfer (G, R, K)."""
+    """Trees of G tasks of one shape solved on one length, and their M candidates in a row.
 
+    Candidates of task g are ``first[g]`` to ``first[g + 1]``. Weights (M, B), terms
+    (G, B, 2K) real and imaginary in turn, transfer (G, R, K), edges (Q, K) with the row
+    of each candidate, receivers (G, R).
+    """
+
+    first: Array
+    task: Array
+    net: Array
+    candidate: Array
     weights: Array
     terms: Array
     transfer: Array
     edges: Array
     edge_row: Array
-    member: Array
+    receivers: Array
+    step_s: Array
+    start_s: Array
 
 
 class _Rows:
@@ -118,7 +131,7 @@ def blocks(
     shape : str
         Shape of the source's edge, a key of ``EDGE_SHAPES``.
     rows : int
-        Rows of a block; a net with more candidates times receivers makes a longer one. [-]
+        Most rows of a block. [-]
     precision : numpy.dtype
         Complex type of the spectra.
 
@@ -151,13 +164,12 @@ def blocks(
     members = np.diff(grids.offset)
     for length in np.unique(grids.length):
         tasks = np.flatnonzero(grids.length == length)
-        tasks = tasks[np.lexsort((members[tasks], net_shape[grids.net[tasks]]))]
-        largest = int((members[tasks] * receivers[grids.net[tasks]]).max())
-        waiting = _Rows(int(length), max(rows, largest), precision)
+        tasks = tasks[np.argsort(net_shape[grids.net[tasks]], kind="stable")]
+        waiting = _Rows(int(length), max(rows, int(receivers.max())), precision)
+        axis = damped_axis(int(length)).astype(precision)
+        lines = KnownLines()
         for part in _chunks(tasks, net_shape[grids.net[tasks]], members[tasks]):
-            axis = damped_axis(int(length)).astype(precision)
-            chunk = solve(trees, drive, grids, part, axis, shape)
-            yield from _fill(chunk, grids, part, trees, waiting)
+            yield from _fill(solve(trees, drive, grids, part, axis, shape, lines), waiting)
         if waiting.filled:
             yield waiting.take()
 
@@ -175,46 +187,70 @@ def _chunks(tasks: Array, shape: Array, members: Array) -> Iterator[Array]:
     yield from np.split(tasks, cuts)
 
 
-def solve(trees: Trees, drive: Drive, grids: Grids, tasks: Array, axis: Array, shape: str) -> Chunk:
-    """Everything of some tasks of one shape that does not depend on a candidate, and the weights.
+def solve(
+    trees: Trees,
+    drive: Drive,
+    grids: Grids,
+    tasks: Array,
+    axis: Array,
+    shape: str,
+    lines: KnownLines,
+) -> Chunk:
+    """Everything of some tasks of one shape that candidates share, and their weights.
 
     ``axis`` (K,) is the complex frequency times the step; its precision is kept.
     """
-    real = axis.real.dtype
     net = grids.net[tasks]
     own = trees.take(net)
     steps, s_row = np.unique(grids.step_s[tasks], return_inverse=True)
     s = (axis / steps[:, None]).astype(axis.dtype)
-    tree = response(own, s, s_row=s_row)
-    rest_siemens, rest_transfer = dc_response(own)
-    member = _padded_members(grids, tasks)
-    chosen = (net[:, None], member)
+    task, candidate = _members(grids, tasks)
+    chosen = (net[task], candidate)
+    weights, pad_farad = _weights(drive, chosen, task, dc_response(own)[0])
+    tree = response(own, s, s_row=s_row, lines=lines)
+    has_stub = own.stub_length_m[0] > 0
+    chain = stub_chain(own, s, s_row, lines=lines) if has_stub else None
+    terms = source_terms(tree.admittance, s[s_row], chain=chain, pad_farad=pad_farad)
+    ratio = grids.ramp_s[chosen] / grids.step_s[tasks][task]
+    ratios, edge_row = np.unique(ratio, return_inverse=True)
+    receivers = np.arange(tree.transfer.shape[1])
+    return Chunk(
+        first=np.searchsorted(task, np.arange(len(tasks) + 1)),
+        task=task,
+        net=chosen[0],
+        candidate=candidate,
+        weights=weights.astype(axis.real.dtype),
+        terms=terms.view(axis.real.dtype),
+        transfer=tree.transfer / dc_response(own)[1][..., None].astype(axis.real.dtype),
+        edges=_edges(ratios, axis, shape),
+        edge_row=edge_row,
+        receivers=np.asarray(trees.receiver_offset)[net][:, None] + receivers,
+        step_s=grids.step_s[tasks],
+        start_s=grids.start_s[chosen],
+    )
+
+
+def _members(grids: Grids, tasks: Array) -> tuple[Array, Array]:
+    """Place of the task and candidate (M,) of everything the tasks hold."""
+    start = grids.offset[tasks]
+    count = grids.offset[tasks + 1] - start
+    task = np.repeat(np.arange(len(tasks)), count)
+    within = np.arange(len(task)) - np.repeat(np.cumsum(count) - count, count)
+    return task, grids.candidate[start[task] + within]
+
+
+def _weights(
+    drive: Drive, chosen: tuple[Array, Array], task: Array, rest_siemens: Array
+) -> tuple[Array, Array | None]:
+    """Weights of the terms, scaled to end at 1, and the pads where a task has only one."""
     resistance, series = drive.resistance_ohm[chosen], drive.series_ohm[chosen]
     pad = np.asarray(drive.pad_farad)[chosen]
-    common = bool((pad == pad[:, :1]).all())
-    chain = stub_chain(own, s, s_row) if own.stub_length_m[0] > 0 else None
-    terms = source_terms(
-        tree.admittance, s[s_row], chain=chain, pad_farad=pad[:, 0] if common else None
-    )
+    shared = np.zeros(len(rest_siemens))
+    shared[task] = pad
+    common = bool((shared[task] == pad).all())
     weights = source_weights(resistance, series, None if common else pad)
-    weights /= (1 + (resistance + series) * rest_siemens[:, None])[..., None]
-    ratio = grids.ramp_s[chosen] / grids.step_s[tasks, None]
-    ratios, edge_row = np.unique(ratio, return_inverse=True)
-    return Chunk(
-        weights=weights.astype(real),
-        terms=terms.view(real),
-        transfer=tree.transfer / rest_transfer[..., None].astype(real),
-        edges=_edges(ratios, axis, shape),
-        edge_row=edge_row.reshape(ratio.shape),
-        member=member,
-    )
-
-
-def _padded_members(grids: Grids, tasks: Array) -> Array:
-    """Candidates of each task (G, C), the last one repeated where a task has fewer."""
-    first = grids.offset[tasks][:, None]
-    count = grids.offset[tasks + 1][:, None] - first
-    return np.asarray(grids.candidate[first + np.minimum(np.arange(count.max()), count - 1)])
+    weights /= (1 + (resistance + series) * rest_siemens[task])[:, None]
+    return weights, shared if common else None
 
 
 def _edges(ratios: Array, axis: Array, shape: str) -> Array:
@@ -223,52 +259,49 @@ def _edges(ratios: Array, axis: Array, shape: str) -> Array:
     return np.asarray(EDGE_SHAPES[shape](scaled) / axis)
 
 
-def _fill(
-    chunk: Chunk, grids: Grids, tasks: Array, trees: Trees, waiting: _Rows
-) -> Iterator[Block]:
+def _fill(chunk: Chunk, waiting: _Rows) -> Iterator[Block]:
     """Spectra of the candidates of a chunk, passed on whenever the waiting rows are full."""
-    receivers = chunk.transfer.shape[1]
-    at = 0
-    while at < len(tasks):
-        each = chunk.member.shape[1] * receivers
-        fit = waiting.room() // each
+    at, receivers = 0, chunk.receivers.shape[1]
+    while at < len(chunk.candidate):
+        fit = waiting.room() // receivers
         if not fit:
             yield waiting.take()
             continue
-        part = slice(at, min(at + fit, len(tasks)))
-        rows = slice(waiting.filled, waiting.filled + (part.stop - at) * each)
+        part = slice(at, min(at + fit, len(chunk.candidate)))
+        rows = slice(waiting.filled, waiting.filled + (part.stop - at) * receivers)
         spectra(chunk, part, waiting.spectrum[rows])
-        _label(chunk, part, grids, tasks, trees, waiting, rows)
+        _label(chunk, part, waiting, rows)
         waiting.filled, at = rows.stop, part.stop
 
 
 def spectra(chunk: Chunk, part: slice, out: Array) -> None:
-    """Write the spectrum of every row, E H / D, in the order task, candidate, receiver."""
-    ratio = np.matmul(chunk.weights[part], chunk.terms[part]).view(out.dtype)
-    source = chunk.edges[chunk.edge_row[part]] / ratio
-    receivers = chunk.transfer.shape[1]
-    shaped = out.reshape(*source.shape[:2], receivers, out.shape[-1])
-    np.multiply(source[:, :, None], chunk.transfer[part, None], out=shaped)
+    """Write the spectrum of every row, E H / D, in the order candidate, receiver."""
+    shaped = out.reshape(part.stop - part.start, -1, out.shape[-1])
+    few = max(1, CACHED // out.shape[-1])
+    for start in range(part.start, part.stop, few):
+        own = slice(start, min(start + few, part.stop))
+        source = reciprocal(_ratios(chunk, own).view(out.dtype))
+        source *= chunk.edges[chunk.edge_row[own]]
+        to = shaped[own.start - part.start : own.stop - part.start]
+        np.multiply(source[:, None], chunk.transfer[chunk.task[own]], out=to)
 
 
-def _label(
-    chunk: Chunk,
-    part: slice,
-    grids: Grids,
-    tasks: Array,
-    trees: Trees,
-    waiting: _Rows,
-    rows: slice,
-) -> None:
+def _ratios(chunk: Chunk, own: slice) -> Array:
+    """Source voltage over voltage at node 0, one matrix product for each task."""
+    result = np.empty((own.stop - own.start, chunk.terms.shape[-1]), chunk.terms.dtype)
+    for task in range(int(chunk.task[own.start]), int(chunk.task[own.stop - 1]) + 1):
+        begin = max(int(chunk.first[task]), own.start)
+        end = min(int(chunk.first[task + 1]), own.stop)
+        to = result[begin - own.start : end - own.start]
+        np.matmul(chunk.weights[begin:end], chunk.terms[task], out=to)
+    return result
+
+
+def _label(chunk: Chunk, part: slice, waiting: _Rows, rows: slice) -> None:
     """Write net, candidate and receiver, step and start of the rows."""
-    own = tasks[part][:, None, None]
-    member = chunk.member[part][:, :, None]
-    receivers = np.arange(chunk.transfer.shape[1])
-    shape = (len(own), member.shape[1], len(receivers))
-    net = grids.net[own]
-    receiver = np.asarray(trees.receiver_offset)[net] + receivers
-    for of_row, index in zip(waiting.label, (net, member, receiver), strict=True):
-        of_row[rows] = np.broadcast_to(index, shape).ravel()
-    times = (grids.step_s[own], grids.start_s[net, member])
-    for at_row, time in zip(waiting.time, times, strict=True):
-        at_row[rows] = np.broadcast_to(time, shape).ravel()
+    task, receivers = chunk.task[part], chunk.receivers.shape[1]
+    waiting.label[0, rows] = np.repeat(chunk.net[part], receivers)
+    waiting.label[1, rows] = np.repeat(chunk.candidate[part], receivers)
+    waiting.label[2, rows] = chunk.receivers[task].ravel()
+    waiting.time[0, rows] = np.repeat(chunk.step_s[task], receivers)
+    waiting.time[1, rows] = np.repeat(chunk.start_s[part], receivers)

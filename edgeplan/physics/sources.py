@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from edgeplan.physics.lines import decay, distinct_propagation
+from edgeplan.physics.lines import KnownLines, decay, reciprocal
 from edgeplan.physics.network import Trees
 
 Array = NDArray[Any]
@@ -120,7 +120,7 @@ def raised_cosine_spectrum(x: ArrayLike) -> Array:
     Parameters
     ----------
     x : array_like
-        Complex frequency times the 0-100 % time. [-]
+        Complex frequency times the 0-100 % time (..., K). [-]
 
     Returns
     -------
@@ -133,26 +133,28 @@ def raised_cosine_spectrum(x: ArrayLike) -> Array:
 
     Examples
     --------
-    >>> print(f"{raised_cosine_spectrum(1j * np.pi):.4f}")
-    0.0000-0.7854j
+    >>> print(np.abs(raised_cosine_spectrum([0, 1j * np.pi, 3j * np.pi])).round(4))
+    [1.     0.7854 0.    ]
 
     References
     ----------
     .. [1] H. Dubner and J. Abate, "Numerical inversion of Laplace transforms by relating them
        to the finite Fourier cosine transform", J. ACM 15, 1968 (transform on a damped axis).
     """
-    x = np.asarray(x)
+    x = np.atleast_1d(x)
     x = x if x.dtype.kind == "c" else x.astype(complex)
     real = x.real.dtype
     bottom = x * x + real.type(np.pi**2)
-    near = np.abs(bottom) < 2 * np.pi * (1e-5 if real == np.float64 else 1e-3)
-    shape = (1 + decay(x)) * (real.type(np.pi**2 / 2) / np.where(near, 1, bottom))
+    narrow = 1e-5 if real == np.float64 else 1e-3
+    near = (np.abs(x.real) < narrow) & (np.abs(np.abs(x.imag) - np.pi) < narrow)
+    bottom[near] = 1
+    shape = (1 + decay(x)) * reciprocal(bottom)
+    shape *= real.type(np.pi**2 / 2)
     if near.any():
-        offset = np.where(near, x - 1j * np.pi * np.sign(x.imag), 0)
-        limit = -0.25j * np.pi * np.sign(x.imag)
-        slope = 1 / (2j * np.pi * np.where(x.imag == 0, 1, np.sign(x.imag)))
-        shape = np.where(near, limit * (1 - offset / 2 - offset * slope), shape)
-    return np.asarray(shape, dtype=x.dtype)
+        side = np.sign(x.imag[near])
+        offset = x[near] - 1j * np.pi * side
+        shape[near] = -0.25j * np.pi * side * (1 - offset / 2 - offset / (2j * np.pi * side))
+    return shape
 
 
 def linear_spectrum(x: ArrayLike) -> Array:
@@ -190,7 +192,9 @@ EDGE_SHAPES: dict[str, Callable[[ArrayLike], Array]] = {
 }
 
 
-def stub_chain(trees: Trees, s: Array, s_row: Array) -> tuple[Array, Array, Array]:
+def stub_chain(
+    trees: Trees, s: Array, s_row: Array, lines: KnownLines | None = None
+) -> tuple[Array, Array, Array]:
     """Chain parameters A (= D), B, C of the line between driver pad and series resistor.
 
     Parameters
@@ -201,6 +205,8 @@ def stub_chain(trees: Trees, s: Array, s_row: Array) -> tuple[Array, Array, Arra
         Complex frequencies (U, K). [rad/s]
     s_row : numpy.ndarray
         Row of each tree (G,). [-]
+    lines : KnownLines, optional
+        What is known of the lines from calls before.
 
     Returns
     -------
@@ -217,13 +223,13 @@ def stub_chain(trees: Trees, s: Array, s_row: Array) -> tuple[Array, Array, Arra
     >>> print(f"{abs(chain[0].item()):.4f} {abs(chain[1].item()):.1f} ohm")
     0.0000 50.0 ohm
     """
-    index, gamma, admittance = distinct_propagation(trees.stub_line, s, s_row, precision=s.dtype)
+    index, gamma, admittance = (lines or KnownLines())(trees.stub_line, s, s_row)
     length = trees.stub_length_m[:, None].astype(s.real.dtype)
     once = decay(gamma[index] * length)
-    back = 1 / once
+    back = reciprocal(once)
     sinh = (back - once) / 2
     characteristic = admittance[index]
-    return (back + once) / 2, sinh / characteristic, sinh * characteristic
+    return (back + once) / 2, sinh * reciprocal(admittance)[index], sinh * characteristic
 
 
 def source_terms(

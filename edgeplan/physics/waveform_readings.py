@@ -8,12 +8,14 @@ from numpy.typing import ArrayLike, NDArray
 
 from edgeplan.physics.crossings import (
     GUARD,
+    Edges,
     cubic_time,
+    edges,
     first_readings,
     highest_after,
     last_readings,
-    lowest_after,
     lowest_between,
+    lowest_from,
     straight_time,
 )
 
@@ -185,25 +187,33 @@ def block_readings(
     >>> print(f"{read['half_s'][0]:.2f} {read['transition_s'][0]:.2f}")
     10.00 16.00
     """
-    name, threshold = _thresholds(levels, directions, level.dtype)
-    first = first_readings(level, threshold)
-    later = [name.index(FIRST[way][1]) for way in directions]
-    last = last_readings(level, threshold[later], first[:, later])
-    names = name + [LAST[way] for way in directions]
+    kind, threshold = _thresholds(levels, directions, level.dtype)
+    guard = level.dtype.type(GUARD)
+    found = edges(level, threshold.min(axis=0) - guard, threshold.max(axis=0) + guard)
+    first = first_readings(level, threshold, found)
+    row = np.arange(len(level))
+    half = cubic_time(level, row, first[1, kind["half_s"]], threshold[kind["half_s"]])
+    later = sorted({kind[FIRST[way][1]] for way in directions})
+    steps = _Steps(level, found)
+    falling = _first_fall(level, first[1, later].min(axis=0))
+    tail = _tail(half + observe, level.shape[1])
+    lowest = lowest_from(level, np.concatenate([first[2, later], [falling, tail]]))
+    last = last_readings(level, threshold[later], first[:, later], lowest[:-2])
+    for way in directions:
+        kind[LAST[way]] = len(threshold) + later.index(kind[FIRST[way][1]])
     index = np.concatenate([first, last], axis=1)
     target = np.concatenate([threshold, threshold[later]])
-    time, guarded, nominal_half = _guarded_times(level, names, index, target)
-    _drop_endless(time, names, index, level.shape[1] - settle_trip)
-    result = {key: time[row] for row, key in enumerate(names) if key not in ("low", "high")}
-    low, high = names.index("low"), names.index("high")
-    result["transition_s"] = time[high] - time[low]
-    result["guarded"] = guarded
+    result, result["guarded"] = _guarded_times(level, kind, index, target)
+    _drop_endless(result, kind, index, level.shape[1] - settle_trip)
+    result["transition_s"] = result.pop("high") - result.pop("low")
     result["overshoot"] = overshoot(level)
-    start = first[1, later].min(axis=0)
-    step = level[:, 1:] - level[:, :-1]
-    result["ringback"] = _ringback(level, step, start)
-    result["slope_min_per_s"] = lowest_between(step, first[1, low], first[1, high] - 1)
-    result["level_after"], result["residual"] = _after(level, nominal_half + observe)
+    reached = first[1, later].min(axis=0) < level.shape[1]
+    none = np.where(reached, 1, np.nan)
+    result["ringback"] = np.where(falling < level.shape[1], lowest[-2], none)
+    result["slope_min_per_s"] = steps.lowest(first[1, kind["low"]], first[1, kind["high"]] - 1)
+    result["residual"] = np.maximum(1 - lowest[-1], highest_after(level, tail) - 1)
+    result["level_after"] = _level_at(level, half + observe, result["residual"])
+    result["residual"] = np.where(np.isnan(half), np.nan, result["residual"])
     return result
 
 
@@ -235,10 +245,40 @@ def overshoot(level: Array) -> Array:
     return np.asarray(np.maximum(np.maximum(at + rise, np.maximum(before, after)) - 1, 0))
 
 
+class _Steps:
+    """Differences between samples near the edges, and elsewhere where an edge is long."""
+
+    def __init__(self, level: Array, found: Edges) -> None:
+        self.level = level
+        self.found = found
+        self.near = found.near[:, 1:] - found.near[:, :-1]
+
+    def lowest(self, start: Array, stop: Array) -> Array:
+        """Lowest difference from start to before stop, at least the one at start."""
+        begin, long = self.found.begin, self.found.long
+        result = lowest_between(self.near, np.maximum(start - begin, 0), stop - begin)
+        level = self.level[long]
+        result[long] = lowest_between(level[:, 1:] - level[:, :-1], start[long], stop[long])
+        return result
+
+
+def _first_fall(level: Array, start: Array) -> Array:
+    """Index of the first sample from start on that the next one falls short of, or n."""
+    rows, samples = level.shape
+    falls = level[:, 1:] - level[:, :-1] < FALLING
+    row = np.arange(rows)
+    index = falls.argmax(axis=1)
+    early = np.flatnonzero(falls[row, index] & (index < start))
+    column = np.arange(samples - 1)
+    index[early] = (falls[early] & (column >= start[early, None])).argmax(axis=1)
+    there = falls[row, index] & (index >= start)
+    return np.asarray(np.where(there, index, samples))
+
+
 def _thresholds(
     levels: Levels, directions: tuple[str, ...], precision: Any
-) -> tuple[list[str], Array]:
-    """Names and thresholds (k, M) of the first crossings wanted."""
+) -> tuple[dict[str, int], Array]:
+    """Distinct thresholds (k, M) of the first crossings wanted, and which is whose."""
     low, high = np.asarray(levels.threshold_low), np.asarray(levels.threshold_high)
     wanted = {
         "low": np.asarray(levels.transition_low),
@@ -249,30 +289,37 @@ def _thresholds(
         wanted |= dict(zip(FIRST["rise"], (low, high), strict=True))
     if "fall" in directions:
         wanted |= dict(zip(FIRST["fall"], (1 - high, 1 - low), strict=True))
-    return list(wanted), np.stack(list(wanted.values())).astype(precision)
+    kind: dict[str, int] = {}
+    distinct: list[Array] = []
+    for name, value in wanted.items():
+        own = value.astype(precision)
+        same = [k for k, other in enumerate(distinct) if np.array_equal(own, other)]
+        kind[name] = same[0] if same else len(distinct)
+        if not same:
+            distinct.append(own)
+    return kind, np.stack(distinct)
 
 
 def _guarded_times(
-    level: Array, names: list[str], index: Array, target: Array
-) -> tuple[Array, Array, Array]:
-    """Times (k, M), the worse where the readings at +-1 % differ; which rows; plain 50 %."""
+    level: Array, kind: dict[str, int], index: Array, target: Array
+) -> tuple[dict[str, Array], Array]:
+    """Times of every crossing, the worse where the readings at +-1 % differ, and which rows do."""
     guard = level.dtype.type(GUARD)
     row = np.broadcast_to(np.arange(len(level)), target.shape)
     time = cubic_time(level, row, index[1], target)
-    low, high = names.index("low"), names.index("high")
-    transition = time[high] - time[low]
+    transition = time[kind["high"]] - time[kind["low"]]
     with np.errstate(invalid="ignore"):  # never reached: infinity less infinity, flagged
         spread = straight_time(level, row, index[2], target + guard)
         spread -= straight_time(level, row, index[0], target - guard)
         flagged = ~(spread <= allowed_spread(target) * transition)
-    half = time[names.index("half_s")].copy()
-    for kind, name in enumerate(names):
-        rows = np.flatnonzero(flagged[kind])
-        reading, shift = (0, -guard) if name in EARLIER_IS_WORSE else (2, guard)
-        time[kind, rows] = cubic_time(
-            level, rows, index[reading, kind, rows], target[kind, rows] + shift
+    which, where = np.nonzero(flagged)
+    early, late = time.copy(), time.copy()
+    for worse, reading, shift in ((early, 0, -guard), (late, 2, guard)):
+        worse[which, where] = cubic_time(
+            level, where, index[reading, which, where], target[which, where] + shift
         )
-    return time, flagged.any(axis=0), half
+    times = {name: (early if name in EARLIER_IS_WORSE else late)[own] for name, own in kind.items()}
+    return times, flagged.any(axis=0)
 
 
 def allowed_spread(threshold: Array) -> Array:
@@ -288,38 +335,28 @@ def allowed_spread(threshold: Array) -> Array:
     return np.asarray(np.maximum(SPREAD, 1.25 * pole))
 
 
-def _drop_endless(time: Array, names: list[str], index: Array, latest: Array) -> None:
+def _drop_endless(
+    times: dict[str, Array], kind: dict[str, int], index: Array, latest: Array
+) -> None:
     """Forget last crossings after a dip so near the end of the window that more may follow."""
     for way, last in LAST.items():
-        if last in names:
-            again = index[1, names.index(last)] != index[1, names.index(FIRST[way][1])]
-            row = names.index(last)
-            time[row] = np.where(again & (time[row] > latest), np.nan, time[row])
+        if last in kind:
+            again = index[1, kind[last]] != index[1, kind[FIRST[way][1]]]
+            times[last] = np.where(again & (times[last] > latest), np.nan, times[last])
 
 
-def _ringback(level: Array, step: Array, start: Array) -> Array:
-    """Lowest sample after the first fall that follows the first reach of VIH."""
-    falling = step < FALLING
-    first = falling.argmax(axis=1)
-    early = np.flatnonzero(first < start)
-    column = np.arange(step.shape[1])
-    first[early] = (falling[early] & (column >= start[early, None])).argmax(axis=1)
-    none = ~falling[np.arange(len(level)), first] | (start >= step.shape[1])
-    return np.where(none, np.where(start < level.shape[1], 1, np.nan), lowest_after(level, first))
+def _tail(time: Array, samples: int) -> Array:
+    """First sample at or before a time, but not later than the last twentieth of the window."""
+    return np.asarray(np.fmin(time, int(0.95 * samples)).astype(np.intp))
 
 
-def _after(level: Array, time: Array) -> tuple[Array, Array]:
-    """Level at a time, straight between samples, and largest distance from 1 from then on."""
+def _level_at(level: Array, time: Array, residual: Array) -> Array:
+    """Level at a time, straight between samples; 1 beyond the window if it has settled."""
     rows, samples = level.shape
-    known = ~np.isnan(time)
-    place = np.minimum(np.where(known, time, 0), samples - 1.0)
+    place = np.fmin(time, samples - 1.0)
     at = np.minimum(place.astype(np.intp), samples - 2)
     part = (place - at).astype(level.dtype)
     flat, begin = level.ravel(), np.arange(rows) * samples + at
     value = (1 - part) * flat[begin] + part * flat[begin + 1]
-    tail = np.minimum(at, int(0.95 * samples))
-    lowest = lowest_after(level, tail)
-    residual = np.maximum(1 - lowest, highest_after(level, tail) - 1)
-    beyond = time > samples - 1
-    value = np.where(beyond, np.where(residual < GUARD, 1, np.nan), value)
-    return np.where(known, value, np.nan), np.where(known, residual, np.nan)
+    value = np.where(time > samples - 1, np.where(residual < GUARD, 1, np.nan), value)
+    return np.where(np.isnan(time), np.nan, value)

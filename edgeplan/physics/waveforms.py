@@ -17,7 +17,7 @@ from edgeplan.physics.grids import (
     needs,
     rounded_step_s,
 )
-from edgeplan.physics.lines import LineConstants
+from edgeplan.physics.lines import KnownLines, LineConstants
 from edgeplan.physics.network import Trees, dc_response, root_impedance_ohm
 from edgeplan.physics.row_blocks import blocks, solve, spectra
 from edgeplan.physics.sources import Drive
@@ -368,17 +368,16 @@ def _period(
     trees: Trees, drive: Drive, grids: Grids, task: int, axis: Array, shape: str, duty: Array
 ) -> tuple[Array, Array, Array, Array]:
     """Periodic state of one net: levels, net, candidate, receiver."""
-    chunk = solve(trees, drive, grids, np.array([task]), axis, shape)
-    net, member = int(grids.net[task]), chunk.member[0]
-    receivers = chunk.transfer.shape[1]
-    spectrum = np.empty((len(member) * receivers, len(axis)), dtype=complex)
-    spectra(chunk, slice(0, 1), spectrum)
-    length = 2 * (len(axis) - 1)
+    chunk = solve(trees, drive, grids, np.array([task]), axis, shape, KnownLines())
+    count, receivers = len(chunk.candidate), chunk.receivers.shape[1]
+    spectrum = np.empty((count * receivers, len(axis)), dtype=complex)
+    spectra(chunk, slice(0, count), spectrum)
+    length, net = 2 * (len(axis) - 1), int(chunk.net[0])
     spectrum *= 1 - np.exp(-axis * duty[net] * length)
     spectrum[:, 0] = duty[net] * length
     level = fft.irfft(spectrum, length, axis=1)
-    receiver = int(trees.receiver_offset[net]) + np.tile(np.arange(receivers), len(member))
-    return level, np.full(len(level), net), np.repeat(member, receivers), receiver
+    receiver = np.tile(chunk.receivers[0], count)
+    return level, np.full(len(level), net), np.repeat(chunk.candidate, receivers), receiver
 
 
 def _into_resistance(trees: Trees) -> Trees:

@@ -62,10 +62,11 @@ def board(nets: int, *, mix: bool, seed: int = 1) -> Trees:
 
 
 def drives(nets: int, seed: int = 2) -> list[Drive]:
-    """Five settings times eight resistors for every net, at two corners."""
+    """Five settings of one of 16 drivers times eight resistors for every net, at two corners."""
     rng = np.random.default_rng(seed)
-    strength = rng.uniform(0.8, 1.25, (nets, 1)) * np.array([14.0, 20.0, 28.0, 40.0, 55.0])
-    ramp = rng.uniform(0.6, 1.6, (nets, 1)) * 1e-9 * np.array([0.7, 0.9, 1.2, 1.6, 2.2])
+    kind = rng.integers(0, 16, nets)
+    strength = rng.uniform(0.8, 1.25, (16, 1))[kind] * np.array([14.0, 20.0, 28.0, 40.0, 55.0])
+    ramp = rng.uniform(0.6, 1.6, (16, 1))[kind] * 1e-9 * np.array([0.7, 0.9, 1.2, 1.6, 2.2])
     setting, resistor = np.divmod(np.arange(CANDIDATES), len(E12))
     return [
         Drive(

@@ -6,10 +6,10 @@ import skrf
 from skrf.media import DistributedCircuit
 
 from edgeplan.physics.lines import (
+    KnownLines,
     LineConstants,
     decay,
     dielectric_factor,
-    distinct_propagation,
     propagation,
 )
 
@@ -91,12 +91,28 @@ def test_decay_is_the_exponential_of_the_negative():
     np.testing.assert_allclose(decay(exponent), np.exp(-exponent), rtol=1e-14)
 
 
-def test_distinct_propagation_gives_each_segment_its_own_line_and_row():
+def test_known_lines_give_each_segment_its_own_line_and_row():
     rng = np.random.default_rng(2)
     line = LineConstants(*(rng.choice(field * np.array([1.0, 1.1]), 40) for field in FR4))
     s = np.array([[1e9, 1e9j], [2e9, 3e9 + 1e9j]])
-    row = rng.integers(0, 2, 40)
-    index, gamma, admittance = distinct_propagation(line, s, row)
-    own_gamma, own_impedance = propagation(s[row], LineConstants(*(f[:, None] for f in line)))
-    np.testing.assert_allclose(gamma[index], own_gamma, rtol=1e-13)
-    np.testing.assert_allclose(admittance[index], 1 / own_impedance, rtol=1e-13)
+    known = KnownLines()
+    for row in (rng.integers(0, 2, 40), np.zeros(40, dtype=int), np.ones(40, dtype=int)):
+        index, gamma, admittance = known(line, s, row)
+        own = propagation(s[row], LineConstants(*(field[:, None] for field in line)))
+        np.testing.assert_allclose(gamma[index], own[0], rtol=1e-13)
+        np.testing.assert_allclose(admittance[index], 1 / own[1], rtol=1e-13)
+
+
+def test_known_lines_forget_when_there_are_too_many(monkeypatch):
+    monkeypatch.setattr(KnownLines, "most", 3)
+    known = KnownLines()
+    line = LineConstants(*(np.full(3, field) for field in FR4))
+    for _ in range(3):
+        known(
+            line._replace(impedance_ohm=np.array([40.0, 50.0, 60.0])),
+            np.array([[1e9j]]),
+            np.zeros(3, int),
+        )
+        index, _, admittance = known(line, np.array([[1e9j]]), np.zeros(3, int))
+        assert len(known.rows) <= 3
+    np.testing.assert_allclose(1 / admittance[index], propagation(1e9j, FR4)[1], rtol=1e-13)
