@@ -8,11 +8,13 @@ from math import isnan, nan
 import numpy as np
 
 from edgeplan.board import Layer
-from edgeplan.physics import cross_section, line_losses
+from edgeplan.physics import cross_section, line_losses, solved_stripline
 
 CENTRED_WITHIN = 1.02  # height ratio below which a strip counts as centred
+SLIGHTLY_OFF = 1.5  # height ratio to which the parallel rule is within 0.5 % of field solutions
 STATED = "stated"
 COMPUTED = "closed form"
+SOLVED = "field solution"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -93,7 +95,7 @@ def _surface_line(line: Line, thickness_m: float, around: _Surroundings, height_
     )
     problem = ""
     if isnan(float(impedance)):
-        problem = f"layer {line.layer}: width over height is outside 0.01 to 100; state z0"
+        problem = f"layer {line.layer}: width, thickness or permittivity is outside the closed form; state z0"
     return replace(
         line,
         surface=True,
@@ -109,7 +111,7 @@ def _surface_line(line: Line, thickness_m: float, around: _Surroundings, height_
 
 
 def _inner_line(line: Line, thickness_m: float, around: _Surroundings) -> Line:
-    """Stripline between two planes: Wheeler when centred, the parallel rule when nearly so."""
+    """Stripline between two planes: Wheeler when centred, the parallel rule nearly so, else solved."""
     low, high = sorted((around.above_m, around.below_m))
     permittivity = max(around.above_permittivity, around.below_permittivity)
     alike = abs(around.above_permittivity - around.below_permittivity) <= 0.1 * permittivity
@@ -126,11 +128,16 @@ def _inner_line(line: Line, thickness_m: float, around: _Surroundings) -> Line:
             )
         )
         problem = "the width is outside the range of the closed form"
-    else:
+    elif high <= SLIGHTLY_OFF * low:
         impedance = float(
             cross_section.stripline_offset(line.width_m, low, high, thickness_m, mean)
         )
-        problem = f"the strip is too far off centre ({high / low:.1f} to 1) for the closed form"
+        problem = "the width is outside the range of the closed form"
+    else:
+        size = (line.width_m, low, high, thickness_m)
+        impedance = float(solved_stripline.stripline_solved(*size, mean))
+        line = replace(line, provenance=SOLVED)
+        problem = f"no solution for a strip {high / low:.1f} to 1 off centre"
     return replace(
         line,
         surface=False,
@@ -182,6 +189,8 @@ def _computed(stack: Sequence[Layer], index: int, width_m: float) -> Line:
 
 def _skin_factor(line: Line, thickness_m: float, heights_m: Sequence[float]) -> float:
     """Resistance over the root of frequency, strip and return. [ohm/m/sqrt(Hz)]"""
+    if len(heights_m) == 2 and line.provenance == SOLVED:
+        return float(solved_stripline.skin_factor_solved(line.width_m, *heights_m, thickness_m))
     if len(heights_m) == 2:
         low, high = heights_m
         return float(line_losses.skin_factor_stripline(line.width_m, low, high, thickness_m))
