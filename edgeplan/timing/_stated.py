@@ -69,6 +69,14 @@ def require(worst: Worst, facts: Sequence[NetFacts], names: Sequence[str]) -> No
             require_one(worst, i, f, name)
 
 
+def require_rate(worst: Worst, facts: Sequence[NetFacts], stated: Array) -> None:
+    """Leave the check undecided where its limit is stated (N,) but no rate of the net is."""
+    for i, f in enumerate(facts):
+        if np.isfinite(stated[i]) and np.isnan(f.bit_s):
+            missing = Missing(value="clock_mhz or data_mbps", of=f"net {f.net.net}")
+            worst.cannot(i, "neither clock_mhz nor data_mbps is given", missing)
+
+
 def require_one(worst: Worst, net: int, facts: NetFacts, name: str) -> None:
     """Leave the check undecided on one net if it lacks the named value."""
     if STATED[name](facts) is not None:

@@ -46,7 +46,8 @@ def _pulse(seen: Seen) -> CheckTable:
     """Shortest pulse left at the receiver, both corners."""
     worst = Worst("pulse width", "faster", "s", seen.shape)
     facts = seen.nets.facts
-    limit = seen.per_receiver(_stated.per_net(facts, lambda f: f.interface.shortest_pulse_s))
+    shortest = _stated.per_net(facts, lambda f: f.interface.shortest_pulse_s)
+    limit = seen.per_receiver(shortest)
     bit = seen.per_receiver(seen.nets.bit_s)
     for r in seen.received:
         width = bit - (r.last_s - r.first_s)
@@ -59,4 +60,5 @@ def _pulse(seen: Seen) -> CheckTable:
             larger_is_better=True,
             error=2 * r.error_s,
         )
+    _stated.require_rate(worst, facts, shortest)
     return worst.table()

@@ -84,7 +84,8 @@ def _pulse(seen: Seen) -> CheckTable:
     worst = Worst("pulse width", "faster", "s", seen.shape)
     facts = seen.nets.facts
     half = seen.per_receiver(seen.nets.bit_s)
-    limit = seen.per_receiver(_stated.per_net(facts, lambda f: f.interface.shortest_pulse_s))
+    shortest = _stated.per_net(facts, lambda f: f.interface.shortest_pulse_s)
+    limit = seen.per_receiver(shortest)
     for rising, falling in _pairs(seen):
         for start, stop in ((rising, falling), (falling, rising)):
             width = half - start.last_s + stop.first_s
@@ -97,4 +98,5 @@ def _pulse(seen: Seen) -> CheckTable:
                 larger_is_better=True,
                 error=start.error_s + stop.error_s,
             )
+    _stated.require_rate(worst, facts, shortest)
     return worst.table()

@@ -11,6 +11,8 @@ Per corner, since data and strobe leave the same die:
 Each flight time counts from the crossing of the driver's own test load.
 """
 
+from collections.abc import Mapping
+
 import numpy as np
 
 from edgeplan.checks import CheckTable, Worst
@@ -38,9 +40,18 @@ def _needs(worst: Worst, seen: Seen, valid: str, own: str) -> None:
     facts = seen.nets.facts
     _stated.require(worst, facts, ("direction", valid, own, "test load"))
     for i, f in enumerate(facts):
-        if f.interface.clock_net not in seen.strobe:
+        strobe = f.interface.clock_net or ""
+        if strobe not in seen.strobe:
             missing = Missing(value="clock_net", of=f"interface {f.interface.name}")
             worst.cannot(i, f"the strobe of interface {f.interface.name} is not known", missing)
+        elif not _known(seen.strobe[strobe]) and not f.settings[f.setting].missing:
+            missing = Missing(value="flight time", of=f"net {strobe}")
+            worst.cannot(i, f"the flight time of strobe {strobe} is not known", missing)
+
+
+def _known(flights: Mapping[tuple[str, str], float]) -> bool:
+    """Whether a strobe has a flight time at both corners."""
+    return all(np.isfinite(value) for value in flights.values())
 
 
 def _bit(seen: Seen) -> np.ndarray:
