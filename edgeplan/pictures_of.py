@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from edgeplan.candidates import Candidates, drive, setting_table
 from edgeplan.emission_lines import is_data
+from edgeplan.emission_target import Target
 from edgeplan.nets import Nets
 from edgeplan.physics import waveforms
 from edgeplan.physics.radiation import level_dbuv_per_m
@@ -21,6 +22,7 @@ if TYPE_CHECKING:
 Array = NDArray[Any]
 
 SAMPLES = 240
+STEPS_PER_RAMP = 40  # so that a drawn curve shows no corners
 When = Literal["now", "after"]
 
 
@@ -57,8 +59,7 @@ def draw(block: Block, row: int, draft: "Draft") -> Pictures:
         passive = bench.radiation.passive(nets)
         levels = source_levels(nets, state, passive, bench.tolerance)[0, 0]
         if np.isfinite(levels).all() and passive.lines.exists[0].any():
-            margin = bench.radiation.target.margin_db
-            spectra.append(_spectrum(nets, state, passive, levels, margin, when))
+            spectra.append(_spectrum(nets, state, passive, levels, bench.radiation.target, when))
     supply = nets.swing_v["typical"][0]
     thresholds = {
         "VIL": float(nets.threshold_low["typical"][0] * supply),
@@ -77,7 +78,10 @@ def _traces(nets: Nets, state: Candidates, tolerance: float, when: When) -> list
         if not source.exists.any():
             continue
         window = _window_s(nets, source)
-        rows = waveforms.step_rows(nets.trees[corner], source, duration_s=np.array([window]))
+        fine_s = np.nanmin(source.candidate_ramp_s()) / STEPS_PER_RAMP
+        rows = waveforms.step_rows(
+            nets.trees[corner], source, duration_s=np.array([window]), step_s=np.array([fine_s])
+        )
         keep = rows.time_s[0] <= window
         step = max(1, int(keep.sum() // SAMPLES))
         swing = nets.swing_v[corner][0]
@@ -107,7 +111,7 @@ def _window_s(nets: Nets, source: Any) -> float:
 
 
 def _spectrum(
-    nets: Nets, state: Candidates, passive: Passive, levels: Array, margin_db: float, when: When
+    nets: Nets, state: Candidates, passive: Passive, levels: Array, target: Target, when: When
 ) -> Spectrum:
     """Levels of every judged line against its limit."""
     facts, lines = nets.facts[0], passive.lines
@@ -119,6 +123,8 @@ def _spectrum(
     expected = levels * passive.cable_expected[0]
     up_to = levels * passive.cable_up_to[0]
     detector = passive.entries[int(passive.entry[0, int(np.argmax(shown))])][1]
+
+    line_hz, line_db = _limit_line(target, detector)
 
     def decibels(field: Array) -> list[float]:
         with np.errstate(divide="ignore"):
@@ -133,7 +139,24 @@ def _spectrum(
         up_to_dbuv_per_m=decibels(np.hypot(trace, up_to)),
         trace_dbuv_per_m=decibels(trace),
         cable_dbuv_per_m=decibels(expected),
-        limit_dbuv_per_m=[float(v) for v in (passive.budget_dbuv_per_m[0] + margin_db)[shown]],
+        limit_dbuv_per_m=[
+            float(v) for v in (passive.budget_dbuv_per_m[0] + target.margin_db)[shown]
+        ],
+        limit_line_hz=line_hz,
+        limit_line_dbuv_per_m=line_db,
         corner_low_hz=float(low),
         corner_high_hz=float(high),
     )
+
+
+def _limit_line(target: Target, detector: str) -> tuple[list[float], list[float]]:
+    """Points of the limit line of one detector inside the judged range. [Hz], [dBuV/m]"""
+    bands = [b for line in target.lines for b in line.bands if b.detector == detector]
+    points = [
+        (float(f), float(level))
+        for b in bands
+        for f, level in zip(b.frequency_hz, b.level_dbuv_per_m, strict=True)
+        if f <= target.highest_hz
+    ]
+    points.sort(key=lambda point: point[0])
+    return [f for f, _ in points], [level for _, level in points]

@@ -239,7 +239,7 @@ class Remedy:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Missing:
-    """A value the verdict waits for; ``settles`` says from which value on the net would be inside."""
+    """A value the verdict waits for; ``settles`` says from which one on the net would be inside."""
 
     value: str
     of: str
@@ -293,6 +293,8 @@ class Spectrum:
     trace_dbuv_per_m: list[float]
     cable_dbuv_per_m: list[float]
     limit_dbuv_per_m: list[float]
+    limit_line_hz: list[float] = field(default_factory=list)
+    limit_line_dbuv_per_m: list[float] = field(default_factory=list)
     corner_low_hz: float | None = None
     corner_high_hz: float | None = None
 

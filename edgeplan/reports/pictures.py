@@ -147,7 +147,7 @@ def _spectrum(axes: "Axes", state: str, pictures: Pictures, margin_db: float) ->
     frequencies_mhz += [s.corner_low_hz / 1e6 for s in found if s.corner_low_hz]
     if frequencies_mhz:
         _decades(axes, min(frequencies_mhz), max(frequencies_mhz))
-        axes.legend(loc="lower left", ncols=2)
+        axes.legend(loc="upper center", bbox_to_anchor=(0.5, -0.16), ncols=6, columnspacing=1.2)
 
 
 def _levels(pictures: Pictures, margin_db: float) -> tuple[float, float]:
@@ -158,7 +158,7 @@ def _levels(pictures: Pictures, margin_db: float) -> tuple[float, float]:
     budget = min(limits, default=40.0) - margin_db
     # An even harmonic of a square wave is next to nothing; it must not stretch the axis.
     lowest = max(min(expected, default=budget), budget - _DEPTH_DB)
-    return min(lowest, budget) - 8, max((*limits, *highest), default=60.0) + 5
+    return min(lowest, budget) - 8, max((*limits, *highest), default=60.0) + 9
 
 
 def _decades(axes: "Axes", low_mhz: float, high_mhz: float) -> None:
@@ -176,8 +176,6 @@ def _stems(axes: "Axes", spectrum: Spectrum, margin_db: float, *, first: bool) -
     """Draw one detector's lines; names go into the legend once."""
     mhz = [frequency / 1e6 for frequency in spectrum.frequency_hz]
     expected, up_to = spectrum.expected_dbuv_per_m, spectrum.up_to_dbuv_per_m
-    limit = spectrum.limit_dbuv_per_m
-    budget = [level - margin_db for level in limit]
     floor = axes.get_ylim()[0]
     axes.vlines(mhz, floor, expected, color=_EXPECTED, linewidth=1.4)
     names = iter(("expected", "up to", "trace", "cable", "limit", "budget") if first else ())
@@ -192,23 +190,35 @@ def _stems(axes: "Axes", spectrum: Spectrum, margin_db: float, *, first: bool) -
             mhz, levels, marker, color=colour, markerfacecolor=fill, markersize=4,
             label=next(names, None),
         )  # fmt: skip
-    axes.step(mhz, limit, where="mid", color=_LIMIT, linewidth=1.8, label=next(names, None))
-    axes.step(
-        mhz, budget, where="mid", color=_LIMIT, linewidth=1.0, linestyle="--",
-        label=next(names, None),
-    )  # fmt: skip
+    _limit_and_budget(axes, spectrum, margin_db, names)
     _corner_marks(axes, spectrum)
 
 
+def _limit_and_budget(
+    axes: "Axes", spectrum: Spectrum, margin_db: float, names: Iterator[str]
+) -> None:
+    """Draw the limit line through its own points, and the budget below it."""
+    mhz = [frequency / 1e6 for frequency in spectrum.limit_line_hz]
+    limit = spectrum.limit_line_dbuv_per_m
+    axes.plot(mhz, limit, color=_LIMIT, linewidth=1.8, label=next(names, None))
+    axes.plot(
+        mhz, [level - margin_db for level in limit], color=_LIMIT, linewidth=1.0, linestyle="--",
+        label=next(names, None),
+    )  # fmt: skip
+
+
 def _corner_marks(axes: "Axes", spectrum: Spectrum) -> None:
-    """Mark the corner frequencies of the envelope."""
-    for corner_hz in (spectrum.corner_low_hz, spectrum.corner_high_hz):
+    """Mark the corner frequencies of the envelope: 1/(pi tau) and 1/(pi t_r)."""
+    for corner_hz, name, side, shift in (
+        (spectrum.corner_low_hz, "1/(π τ)", "left", 3),
+        (spectrum.corner_high_hz, "1/(π tᵣ)", "right", -3),
+    ):
         if corner_hz is not None:
             axes.axvline(corner_hz / 1e6, color=_UP_TO, linewidth=0.9, linestyle=":")
             axes.annotate(
-                phrases.engineering(corner_hz, "Hz"), (corner_hz / 1e6, 0.0),
-                xycoords=("data", "axes fraction"), va="bottom", ha="left", fontsize=7,
-                color="#5b6670", rotation=90, annotation_clip=True,
+                f"{name} {phrases.engineering(corner_hz, 'Hz')}", (corner_hz / 1e6, 0.99),
+                xycoords=("data", "axes fraction"), xytext=(shift, 0), textcoords="offset points",
+                va="top", ha=side, fontsize=7, color="#5b6670", annotation_clip=True,
             )  # fmt: skip
 
 
