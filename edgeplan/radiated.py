@@ -40,7 +40,8 @@ class Passive:
 
     ``over_budget`` is level over budget per volt; ``filtered`` the same with a good
     filter on all cables (where nothing is declared about them). ``to_level`` turns a
-    level over budget into a field; ``entry`` says which line and detector binds.
+    level over budget into a field; ``entry`` says which line and detector binds; ``unreached``
+    whose stated table, per net, does not reach every judged line.
     """
 
     lines: EmissionLines
@@ -50,9 +51,11 @@ class Passive:
     trace: Array
     cable_expected: Array
     cable_up_to: Array
+    cable_judged: Array
     budget_dbuv_per_m: Array
     entry: Array
     entries: tuple[tuple[str, str, float], ...]
+    unreached: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -198,7 +201,7 @@ def _table(
         for name in ("trace", "cable_expected", "cable_up_to")
     }
     error = _error_db(parts["trace"], parts["cable_expected"])
-    because, missing = _reasons(nets, passive, open_cables, worst, levels)
+    because, missing = _reasons(nets, passive, open_cables, levels)
     return CheckTable(
         check="emission",
         wants="slower",
@@ -233,7 +236,7 @@ def _error_db(trace: Array, cable: Array) -> Array:
 
 
 def _reasons(
-    nets: Nets, passive: Passive, open_cables: Array, worst: tuple[Array, Array], levels: Array
+    nets: Nets, passive: Passive, open_cables: Array, levels: Array
 ) -> tuple[tuple[str, ...], tuple[Missing | None, ...]]:
     """Why emission is undecided, per net: no rate, an inner layer, or cables not declared."""
     because, missing = [""] * len(nets), [None] * len(nets)
@@ -243,22 +246,36 @@ def _reasons(
             missing[i] = Missing(value="clock_mhz or data_mbps", of=f"net {f.net.net}")
         elif np.isnan(passive.trace[i]).all():
             because[i] = "the net runs on an inner layer: its emission is not judged"
+        elif passive.unreached[i]:
+            because[i] = f"the table of {passive.unreached[i]} does not reach every judged line"
+            missing[i] = Missing(value="attenuation", of=passive.unreached[i])
         elif open_cables[i, 0]:
-            k = int(worst[1][i, 0])
-            needed = _needed_db(passive, i, k, levels[i, 0, k])
-            megahertz = passive.lines.frequency_hz[i, k] / 1e6
-            because[i] = f"needs {needed:.1f} dB on the cables at {megahertz:.0f} MHz"
+            needed, frequency_hz = _needed_db(passive, i, levels[i, 0])
+            because[i] = f"needs {needed:.1f} dB on the cables at {frequency_hz / 1e6:.0f} MHz"
             missing[i] = Missing(value="cable filter", of="board.toml")
     return tuple(because), tuple(missing)
 
 
-def _needed_db(passive: Passive, net: int, line: int, volts: float) -> float:
-    """Attenuation on the cables that brings one line to its budget. [dB]"""
-    budget = 10 ** (passive.budget_dbuv_per_m[net, line] / 20) * 1e-6
-    trace = volts * passive.trace[net, line]
-    cable = volts * passive.cable_expected[net, line]
-    room = budget**2 - trace**2
-    return float(np.inf if room <= 0 else 20 * np.log10(cable / np.sqrt(room)))
+def _needed_db(passive: Passive, net: int, volts: Array) -> tuple[float, float]:
+    """Attenuation on the cables that brings every line to its budget, and which asks most."""
+    budget = 10 ** (passive.budget_dbuv_per_m[net] / 20) * 1e-6
+    trace, cable = volts * passive.trace[net], volts * passive.cable_judged[net]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        room = np.sqrt(np.maximum(budget**2 - trace**2, 0.0))
+        needed = np.where(volts * passive.over_budget[net] > 1, 20 * np.log10(cable / room), 0.0)
+    line = int(np.argmax(needed))
+    return float(needed[line]), float(passive.lines.frequency_hz[net, line])
+
+
+def _unreached(radiation: Radiation, lines: EmissionLines) -> tuple[str, ...]:
+    """Whose table, per net, does not reach every judged line; empty where all do."""
+    enclosure = 20 * np.log10(_enclosure(radiation.board, lines.frequency_hz))
+    stated = [(f"cable {c.name}", _attenuation_db(c, lines.frequency_hz)) for c in radiation.cables]
+    names = [""] * len(lines.exists)
+    for name, attenuation_db in [*stated, ("the enclosure", enclosure)]:
+        for i in np.flatnonzero((np.isnan(attenuation_db) & lines.exists).any(axis=1)):
+            names[i] = names[i] or name
+    return tuple(names)
 
 
 def _passive(radiation: Radiation, nets: Nets) -> Passive:
@@ -298,7 +315,8 @@ def _against_budget(
     target = radiation.target
     shape = lines.frequency_hz.shape
     best = np.zeros(shape)
-    found = {name: np.zeros(shape) for name in ("trace", "expected", "up_to", "budget", "filtered")}
+    names = ("trace", "expected", "up_to", "judged", "budget", "filtered")
+    found = {name: np.zeros(shape) for name in names}
     entry = np.zeros(shape, dtype=int)
     entries = target.at(lines.frequency_hz)
     credit = 10 ** (-cable_part.undeclared_filter_db(lines.frequency_hz) / 20)
@@ -318,6 +336,7 @@ def _against_budget(
             ("trace", trace),
             ("expected", fields.expected * received),
             ("up_to", fields.up_to * received),
+            ("judged", fields.judged * received),
             ("budget", budget_db),
             ("filtered", with_filter),
         ):
@@ -331,9 +350,11 @@ def _against_budget(
         trace=found["trace"],
         cable_expected=found["expected"],
         cable_up_to=found["up_to"],
+        cable_judged=found["judged"],
         budget_dbuv_per_m=found["budget"],
         entry=entry,
         entries=tuple((e.limit_id, e.detector, e.distance_m) for e in entries),
+        unreached=_unreached(radiation, lines),
     )
 
 
