@@ -82,7 +82,7 @@ def _borderline(evaluation: Evaluation, net: int, candidate: int, verdict: Verdi
     failing, narrow = [], []
     for table in evaluation.tables:
         margin = table.margin[net, candidate]
-        if not table.applies[net] or not np.isfinite(margin):
+        if not table.applies[net] or not margin < np.inf:  # NaN is open, -inf fails by far
             continue
         if margin < 0:
             failing.append(-margin < -table.error_low[net, candidate])
