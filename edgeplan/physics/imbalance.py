@@ -195,9 +195,33 @@ def electrical_position_m(position_m: ArrayLike, board_length_m: ArrayLike) -> A
     return np.asarray(board_length_m / np.pi * np.arccos(1 - 2 * share))
 
 
-def _board_denominator(k: Array, board_length_m: Array, ratio: Array) -> Array:
-    """Load that the board is to the cable, up to the board's own resonance; then 1."""
-    angle = k * board_length_m
+def board_denominator(wave_per_m: Array, board_length_m: Array, ratio: Array) -> Array:
+    r"""Load that the board is to its cable, up to the board's own resonance; then 1.
+
+    .. math:: \sqrt{\sin^2 kD + z^2\cos^2 kD}, \quad kD < \pi/2
+
+    Parameters
+    ----------
+    wave_per_m : numpy.ndarray
+        Free-space wave number k. [1/m]
+    board_length_m : numpy.ndarray
+        Size of the board along the axis, D. [m]
+    ratio : numpy.ndarray
+        z of `impedance_ratio`. [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Denominator of the antenna current on the board. [-]
+
+    Examples
+    --------
+    Far below resonance only the impedance ratio is left.
+
+    >>> print(f"{board_denominator(np.array(1e-3), np.array(0.1), np.array(0.27)):.3f}")
+    0.270
+    """
+    angle = wave_per_m * board_length_m
     loaded = np.sqrt(np.sin(angle) ** 2 + ratio**2 * np.cos(angle) ** 2)
     return np.where(angle < np.pi / 2, loaded, 1.0)
 
@@ -252,7 +276,7 @@ def effective_voltage_one(
     >>> print(f"{volts:.4f}")
     0.0050
     """
-    board = _board_denominator(wave_per_m, np.asarray(board_length_m), np.asarray(ratio))
+    board = board_denominator(wave_per_m, np.asarray(board_length_m), np.asarray(ratio))
     psi_1 = np.sin(wave_per_m * ends.source_m) / board
     psi_2 = np.sin(wave_per_m * ends.load_m) / board
     v1, v2 = end_volts
@@ -297,7 +321,7 @@ def effective_voltage_any(
     >>> print(f"{volts:.4f}")
     0.0050
     """
-    board = _board_denominator(wave_per_m, np.asarray(board_length_m), np.asarray(ratio))
+    board = board_denominator(wave_per_m, np.asarray(board_length_m), np.asarray(ratio))
     half_angle = wave_per_m * (ends.load_m - ends.source_m) / 2
     v1, v2 = end_volts
     a = height.magnetic * (v1 - v2) * np.cos(half_angle)

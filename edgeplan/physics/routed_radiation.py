@@ -29,7 +29,8 @@ class Layout(NamedTuple):
 
     Node 0 of each tree ``(N, 2)``, far end of each segment ``(S, 2)`` (it starts where
     its parent ends) [m]; height over the plane [m], 0 where planes on both sides
-    leave nothing to radiate, and permittivity of the layer under it, ``(S,)``.
+    leave nothing to radiate, and permittivity of the layer under it, ``(S,)``; distance of
+    both planes from each other [m], 0 for a line over one plane, None if all are.
     """
 
     origin_m: Array
@@ -37,6 +38,7 @@ class Layout(NamedTuple):
     height_m: Array
     permittivity: Array
     segment_offset: Array
+    plane_gap_m: Array | None = None
 
     def take(self, index: ArrayLike) -> "Layout":
         """Layouts of the trees of the given indices.
@@ -55,6 +57,7 @@ class Layout(NamedTuple):
             self.height_m[rows],
             self.permittivity[rows],
             np.concatenate([[0], np.cumsum(last - first)]),
+            None if self.plane_gap_m is None else self.plane_gap_m[rows],
         )
 
     def nodes_m(self, parent: Array) -> tuple[Array, Array]:
