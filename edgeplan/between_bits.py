@@ -226,12 +226,12 @@ def _steady_state(
     low = np.asarray(levels.threshold_low)[receiver]
     high = np.asarray(levels.threshold_high)[receiver]
     duty_row = duty[found.net]
+    arrival = _delays_s(nets)[receiver]
     for name, level, threshold, isolated, share in (
         ("delay_rising_s", found.level, high, readings.rise_last_s, duty_row),
         ("delay_falling_s", _falling(found.level, duty_row), 1 - low, readings.fall_last_s, 1 - duty_row),
     ):
-        arrival = readings.half_s[receiver, candidate]
-        time, half = _after_arrival(found.time_s, level, arrival, share)
+        time, half = _while_driven(found.time_s, level, arrival, share)
         crossing = _last_crossing(time, half, threshold)
         getattr(effects, name)[receiver, candidate] = np.maximum(
             crossing - isolated[receiver, candidate], 0.0
@@ -240,9 +240,17 @@ def _steady_state(
         effects.worst_level[receiver, candidate] = worst
     start = np.asarray(levels.transition_low)[receiver]
     stop = np.asarray(levels.transition_high)[receiver]
-    time, half = _after_arrival(found.time_s, found.level, readings.half_s[receiver, candidate], duty_row)
+    time, half = _while_driven(found.time_s, found.level, arrival, duty_row)
+    reached = half.max(axis=1) >= stop
     spread = _last_crossing(time, half, stop) - _last_crossing(time, half, start)
-    effects.transition_s[receiver, candidate] = spread
+    # An edge that does not reach the level takes at least until it is driven again.
+    effects.transition_s[receiver, candidate] = np.where(reached, spread, period[found.net])
+
+
+def _delays_s(nets: Nets) -> Array:
+    """Delay from the driver to every receiver. (R,) [s]"""
+    paths = [f.path for f in nets.facts]
+    return np.array([path.delay_s(piece) for path in paths for piece in path.receiver_piece])
 
 
 def _falling(level: Array, duty: Array) -> Array:
@@ -252,13 +260,16 @@ def _falling(level: Array, duty: Array) -> Array:
     return 1 - np.take_along_axis(level, columns, axis=1)
 
 
-def _after_arrival(
-    time_s: Array, level: Array, half_s: Array, share: Array
+def _while_driven(
+    time_s: Array, level: Array, arrival_s: Array, share: Array
 ) -> tuple[Array, Array]:
-    """The stretch from a quarter before to a share of the period after the edge arrives. (M, n)"""
-    count = level.shape[1]
-    period = time_s[:, 1] * count
-    width = int(np.ceil(np.max(share) * count))
-    begin = np.round((half_s / period - 0.25 * share) * count).astype(int)
-    columns = begin[:, None] + np.arange(width)[None, :]
-    return columns * time_s[:, 1:2], np.take_along_axis(level, columns % count, axis=1)
+    """From the arrival of an edge to that of the next, a share of the period later. (M, n)
+
+    The last sample is held where another row has the longer share.
+    """
+    width = np.floor(share * level.shape[1]).astype(int)
+    begin = np.floor(arrival_s / time_s[:, 1]).astype(int)
+    along = np.minimum(np.arange(width.max())[None, :], width[:, None] - 1)
+    columns = begin[:, None] + along
+    level = np.take_along_axis(level, columns % level.shape[1], axis=1)
+    return columns * time_s[:, 1:2], level

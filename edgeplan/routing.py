@@ -64,6 +64,14 @@ class Path:
             piece = self.pieces[piece].parent
         return total
 
+    def delay_s(self, piece: int) -> float:
+        """Delay from the driver to the far end of a piece. [s]"""
+        total = self.stub_m * self.stub_line.delay_s_per_m
+        while piece >= 0:
+            total += self.pieces[piece].length_m * self.pieces[piece].line.delay_s_per_m
+            piece = self.pieces[piece].parent
+        return total
+
 
 def path_of(net: Net, routes: Sequence[RouteSegment], line_of: LineOf, *, clock_like: bool) -> Path:
     """Build the path of a net from its routes, or from its length alone.

@@ -119,6 +119,7 @@ def test_a_route_gives_stub_trunk_and_branches():
     assert (far.length_m, near.length_m, near.line.layer) == (0.0245, 0.009, "L4")
     assert found.pieces[far.parent] is trunk
     assert found.main_length_m == pytest.approx(0.0025 + 0.021 + 0.0245)
+    assert found.delay_s(found.receiver_piece[0]) == pytest.approx(6e-9 * found.main_length_m)
     assert found.notes == ()
 
 
