@@ -129,17 +129,18 @@ def _explained(table: CheckTable, nets: Nets) -> CheckTable:
 
 
 def driver_lack(nets: Nets, net: int, table: CheckTable) -> tuple[str, Any]:
-    """Which value of the setting as drawn keeps a check open."""
+    """Which value of the settings as drawn, after or before firmware, keeps a check open."""
     from edgeplan.results import Missing
 
     facts = nets.facts[net]
-    setting = facts.settings[facts.setting]
     side = "maximum" if table.wants == "faster" else "minimum"
-    lacking = [m for m in setting.missing if m.startswith(side)] or list(setting.missing)
-    if not lacking:
-        return "the engine gave no number", None
-    of = f"driver {facts.driver.name}, setting {setting.setting}"
-    return f"{of} states no {lacking[0]}", Missing(value=lacking[0], of=of)
+    for index in (facts.setting, facts.setting_boot):
+        setting = facts.settings[index]
+        lacking = [m for m in setting.missing if m.startswith(side)] or list(setting.missing)
+        if lacking:
+            of = f"driver {facts.driver.name}, setting {setting.setting}"
+            return f"{of} states no {lacking[0]}", Missing(value=lacking[0], of=of)
+    return "the engine gave no number", None
 
 
 def strobe_flights(nets: Nets, candidates: Candidates, tolerance: float) -> StrobeFlights:

@@ -1,10 +1,12 @@
 """Overshoot of an open lossless line, whose first peak is a closed form."""
 
 import pytest
-from build import board, driver, net, receiver, seen_of, setting
+from build import bench_of, board, driver, net, nets_of, receiver, seen_of, setting
 
 from edgeplan import fidelity
+from edgeplan.candidates import list_candidates, list_drawn
 from edgeplan.checks import condition_words
+from edgeplan.evaluate import evaluate
 
 
 def overshoot_of(b, **changes):
@@ -66,3 +68,41 @@ def test_the_stronger_of_both_output_transistors_decides():
     found = overshoot_of(mismatched(0.0, driver=[driver(uneven)]))
     assert found.value[0, 0] / 3.3 == pytest.approx(2 * 50 / 65 - 1, abs=4e-3)
     assert condition_words(int(found.condition[0, 0]))[2] == "falling"
+
+
+def test_before_and_after_firmware_are_both_judged_and_the_worse_is_named():
+    settings = setting("LATER", 50.0, 0.3e-9), setting("BOOT", 15.0, 0.3e-9)
+    one = net(setting=("LATER",), setting_boot=("BOOT",))
+    b = mismatched(0.0, driver=[driver(*settings)])
+    for nets, state, peak in (
+        ((one,), "boot", 2 * 50 / 65 - 1),
+        ((net(setting=("LATER",)),), "run", 0),
+    ):
+        nets = nets_of(b.model_copy(update={"nets": nets}))
+        tables = evaluate(nets, list_drawn(nets), bench_of(b)).tables
+        (found,) = (t for t in tables if t.check == "overshoot")
+        assert condition_words(int(found.condition[0, 0]))[3] == state
+        assert found.value[0, 0] / 3.3 == pytest.approx(peak, abs=0.02)
+
+
+def test_a_resistor_acts_before_firmware_too_and_a_new_setting_does_not():
+    settings = setting("LATER", 50.0, 0.3e-9), setting("BOOT", 15.0, 0.3e-9)
+    one = net(setting=("LATER",), setting_boot=("BOOT",), site="possible")
+    b = mismatched(0.0, driver=[driver(*settings)], resistors={"values_ohm": [35.0]})
+    nets = nets_of(b.model_copy(update={"nets": (one,)}))
+    listed = list_candidates(nets, b.file.resistors)
+    found = next(t for t in evaluate(nets, listed, bench_of(b)).tables if t.check == "overshoot")
+    assert found.fails[0].tolist() == [ohm == 0 for ohm in listed.series_ohm[0]]
+
+
+def test_a_setting_before_firmware_that_lacks_a_value_is_named_as_what_is_missing():
+    half = setting("BOOT", 15.0, {"max": 0.3e-9})
+    one = net(setting=("LATER",), setting_boot=("BOOT",))
+    b = mismatched(0.0, driver=[driver(setting("LATER"), half)])
+    nets = nets_of(b.model_copy(update={"nets": (one,)}))
+    found = next(
+        t for t in evaluate(nets, list_drawn(nets), bench_of(b)).tables if t.check == "overshoot"
+    )
+    assert found.open[0, 0]
+    assert found.missing[0].value == "minimum edge"
+    assert found.missing[0].of == "driver out, setting BOOT"
