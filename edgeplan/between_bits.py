@@ -77,7 +77,7 @@ def bit_effects(
     unsettled &= np.isfinite(nets.bit_s)[nets.receiver_net][:, None]
     clock = np.array([f.timing == "clock" for f in nets.facts])[nets.receiver_net][:, None]
     if np.any(unsettled & ~clock):
-        _data(nets, trees, source, levels, readings, unsettled & ~clock, effects)
+        _data(nets, trees, source, levels, unsettled & ~clock, effects)
     if np.any(unsettled & clock):
         _clocks(nets, trees, source, levels, readings, unsettled & clock, effects)
     return effects
@@ -105,7 +105,6 @@ def _data(
     trees: Trees,
     source: Drive,
     levels: waveforms.Levels,
-    readings: waveforms.Readings,
     rows: Array,
     effects: BitEffects,
 ) -> None:
@@ -120,7 +119,7 @@ def _data(
             duration_s=BITS * nets.bit_s[own],
             step_s=step_s,
         )
-        _fold(nets, own, found, levels, readings, effects)
+        _fold(nets, own, found, levels, effects)
 
 
 def _parts(drive: Drive, receivers: Array) -> Iterator[Array]:
@@ -143,7 +142,6 @@ def _fold(
     index: Array,
     found: waveforms.StepRows,
     levels: waveforms.Levels,
-    readings: waveforms.Readings,
     effects: BitEffects,
 ) -> None:
     """Worst bits of the waveforms found, written into the tables."""
@@ -227,9 +225,10 @@ def _steady_state(
     high = np.asarray(levels.threshold_high)[receiver]
     duty_row = duty[found.net]
     arrival = _delays_s(nets)[receiver]
+    falling = _falling(found.level, duty_row)
     for name, level, threshold, isolated, share in (
         ("delay_rising_s", found.level, high, readings.rise_last_s, duty_row),
-        ("delay_falling_s", _falling(found.level, duty_row), 1 - low, readings.fall_last_s, 1 - duty_row),
+        ("delay_falling_s", falling, 1 - low, readings.fall_last_s, 1 - duty_row),
     ):
         time, half = _while_driven(found.time_s, level, arrival, share)
         crossing = _last_crossing(time, half, threshold)

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from edgeplan.emission_target import Target, band_edges_hz
 from edgeplan.nets import NetFacts
 from edgeplan.physics import data_spectra, spectra
+from edgeplan.physics.detectors import Detector
 
 Array = NDArray[Any]
 
@@ -33,8 +34,8 @@ class EmissionLines:
     toggle_hz: Array
     is_data: Array
 
-    def detector_db(self, detector: str, bandwidth_hz: Array) -> Array:
-        """What a detector adds to the envelope: data and clocks slower than the bandwidth. (N, F)"""
+    def detector_db(self, detector: Detector, bandwidth_hz: Array) -> Array:
+        """What a detector adds to the envelope of data and of clocks below its bandwidth. (N, F)"""
         toggle = self.toggle_hz[:, None]
         with np.errstate(invalid="ignore", divide="ignore"):
             data = data_spectra.random_data_db(2 * toggle, bandwidth_hz, detector)
@@ -75,9 +76,7 @@ def lines_of(facts: Sequence[NetFacts], target: Target) -> EmissionLines:
     """
     toggles = np.array([toggle_hz(f) for f in facts])
     data = np.array([is_data(f) for f in facts])
-    ladders = [
-        _frequencies(t, target, data=bool(d)) for t, d in zip(toggles, data, strict=True)
-    ]
+    ladders = [_frequencies(t, target, data=bool(d)) for t, d in zip(toggles, data, strict=True)]
     width = max((len(ladder) for ladder in ladders), default=0)
     frequency = np.full((len(facts), max(width, 1)), 1e9)
     exists = np.zeros(frequency.shape, dtype=bool)

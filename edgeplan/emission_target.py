@@ -65,11 +65,7 @@ def target_of(board: Board) -> Target:
     own = {line.id: line for line in board.user_limits}
     lines = tuple(own.get(name) or limits.line(name) for name in emission.limits)
     internal = board.file.board.highest_internal_frequency_hz
-    rules = [
-        limits.highest_frequency_hz(line.id, internal)
-        for line in lines
-        if line.id not in own
-    ]
+    rules = [limits.highest_frequency_hz(line.id, internal) for line in lines if line.id not in own]
     by_rule = [r for r in rules if r.rule != "end-of-line"] or rules
     covered = max(line.highest_hz for line in lines)
     highest = by_rule[0].highest_hz if by_rule else covered

@@ -112,9 +112,7 @@ def boot_candidates(nets: Nets, candidates: Candidates) -> Candidates | None:
     drawn = np.array([f.setting for f in nets.facts])
     if np.array_equal(boot, drawn) or np.any(candidates.ramp_factor != 1):
         return None
-    return replace(
-        candidates, setting=np.broadcast_to(boot[:, None], candidates.setting.shape)
-    )
+    return replace(candidates, setting=np.broadcast_to(boot[:, None], candidates.setting.shape))
 
 
 def _explained(table: CheckTable, nets: Nets) -> CheckTable:
@@ -169,8 +167,6 @@ def strobe_flights(nets: Nets, candidates: Candidates, tolerance: float) -> Stro
     return flights
 
 
-def _flight(
-    r: Received, rows: slice, crossing_s: Array, reduce: Callable[[Array], Any]
-) -> Any:
+def _flight(r: Received, rows: slice, crossing_s: Array, reduce: Callable[[Array], Any]) -> Any:
     """Crossing of one net's receivers less that of its test load."""
     return reduce(crossing_s[rows, 0] - r.reference_s[rows, 0])

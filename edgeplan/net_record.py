@@ -205,9 +205,7 @@ def _checks(state: NetState, facts: NetFacts) -> list[Check]:
     tables = [t for t in state.evaluation.tables if t.applies[row]]
     shares = [float(t.share[row, 0]) if t.decided[row, 0] else np.inf for t in tables]
     binding = int(np.argmin(shares)) if shares else -1
-    return [
-        _check(t, row, 0, state, facts, binding=k == binding) for k, t in enumerate(tables)
-    ]
+    return [_check(t, row, 0, state, facts, binding=k == binding) for k, t in enumerate(tables)]
 
 
 def _check(
@@ -314,10 +312,7 @@ def _line(facts: NetFacts) -> LineNote:
     """The line most of the net is on."""
     main, path = facts.path.main_line, facts.path
     delay = sum(
-        (
-            _way_delay_s(facts, piece)
-            for piece in [max(path.receiver_piece, key=path.distance_m)]
-        ),
+        (_way_delay_s(facts, piece) for piece in [max(path.receiver_piece, key=path.distance_m)]),
         path.stub_m * path.stub_line.delay_s_per_m,
     )
     return LineNote(
@@ -378,9 +373,7 @@ def _candidates(
     found = []
     for k in listed:
         own = index.get(k)
-        rejected = (
-            [i for i in own.values() if _holds_not(checks[i])] if own is not None else []
-        )
+        rejected = [i for i in own.values() if _holds_not(checks[i])] if own is not None else []
         found.append(_candidate(draft, k, rejected))
     return found, checks
 

@@ -144,9 +144,7 @@ def _gathered(
     blocks: list[Block], facts: list[NetFacts], bench: Bench, jobs: int, progress: Progress | None
 ) -> Scores:
     """Scores of all candidates in board order."""
-    return scoring.gather(
-        blocks, scoring.score_blocks(blocks, bench, jobs, progress), len(facts)
-    )
+    return scoring.gather(blocks, scoring.score_blocks(blocks, bench, jobs, progress), len(facts))
 
 
 def _strobes(facts: list[NetFacts]) -> set[str]:
@@ -209,9 +207,7 @@ def _choose(
     return scores, state, bench
 
 
-def _chosen(
-    facts: list[NetFacts], scores: Scores, allowed: Array, common: Counter[float]
-) -> Array:
+def _chosen(facts: list[NetFacts], scores: Scores, allowed: Array, common: Counter[float]) -> Array:
     """One candidate per net; a second look prefers the values that the first one used most.
 
     An undecided net keeps what is drawn, unless its bank or array moves it.
@@ -263,4 +259,3 @@ def _state(
             evaluations[i] = (evaluation, row)
             windows[i] = window
     return State(chosen=chosen, evaluation=evaluations, window=windows)
-

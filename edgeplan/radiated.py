@@ -85,7 +85,7 @@ class Radiation:
         worst = _worst_line(passive.over_budget, excess)
         if passive.filtered is not None:
             open_cables = _worst_line(passive.filtered, excess)
-        return _table(self, nets, passive, worst, open_cables, excess, state)
+        return _table(nets, passive, worst, open_cables, excess, state)
 
 
 def radiation_of(board: Board) -> Radiation:
@@ -107,7 +107,9 @@ def radiation_of(board: Board) -> Radiation:
         notes.append("no cable states a filter: judged without and with a good filter on all")
     else:
         notes += [
-            f"cable {c.name}: no filter is stated, 0 dB is taken" for c in declared if _undeclared(c)
+            f"cable {c.name}: no filter is stated, 0 dB is taken"
+            for c in declared
+            if _undeclared(c)
         ]
     notes += [f"cable {c.name}: its shield is not credited" for c in declared or () if c.shielded]
     return Radiation(
@@ -128,9 +130,7 @@ def _undeclared(cable: Cable) -> bool:
     )
 
 
-def source_levels(
-    nets: Nets, candidates: Candidates, passive: Passive, tolerance: float
-) -> Array:
+def source_levels(nets: Nets, candidates: Candidates, passive: Passive, tolerance: float) -> Array:
     """Volts of source spectrum over D at every line, worse of both edges, fast corner. (N, C, F)"""
     found: Array | None = None
     for direction in _edges(nets):
@@ -174,7 +174,6 @@ def _worst_line(per_volt: Array, levels: Array) -> tuple[Array, Array]:
 
 
 def _table(
-    radiation: Radiation,
     nets: Nets,
     passive: Passive,
     worst: tuple[Array, Array],
@@ -232,14 +231,15 @@ def _error_db(trace: Array, cable: Array) -> Array:
         mixed = (
             trace**2 * trace_part.MODEL.error_db + cable**2 * cable_part.MODEL.error_db
         ) / power
-    return np.nan_to_num(mixed, nan=cable_part.MODEL.error_db)
+    return np.asarray(np.nan_to_num(mixed, nan=cable_part.MODEL.error_db))
 
 
 def _reasons(
     nets: Nets, passive: Passive, open_cables: Array, levels: Array
 ) -> tuple[tuple[str, ...], tuple[Missing | None, ...]]:
     """Why emission is undecided, per net: no rate, an inner layer, or cables not declared."""
-    because, missing = [""] * len(nets), [None] * len(nets)
+    because = [""] * len(nets)
+    missing: list[Missing | None] = [None] * len(nets)
     for i, f in enumerate(nets.facts):
         if not np.isfinite(passive.lines.toggle_hz[i]):
             because[i] = "neither clock_mhz nor data_mbps is given"
@@ -284,9 +284,7 @@ def _passive(radiation: Radiation, nets: Nets) -> Passive:
     terms, forward = _network(nets, lines.frequency_hz)
     inputs = _inputs(radiation, nets, lines.frequency_hz)
     cables = _cables(radiation, lines.frequency_hz)
-    up_to = cable_part.field_per_forward_ampere(
-        _with_cables(inputs, cables), lines.frequency_hz
-    )
+    up_to = cable_part.field_per_forward_ampere(_with_cables(inputs, cables), lines.frequency_hz)
     surface = np.array([f.path.main_line.surface for f in nets.facts])
     known = np.where(surface, 1.0, np.nan)[:, None] * forward
     trace = trace_part.field_per_forward_ampere(inputs, lines.frequency_hz)
@@ -382,10 +380,7 @@ def _inputs(radiation: Radiation, nets: Nets, frequency_hz: Array) -> RadiationI
     size = radiation.board.file.board.size_m
     main = [f.path.main_line for f in facts]
     line = LineConstants(
-        *(
-            np.array([getattr(m, name) for m in main])[:, None]
-            for name in LineConstants._fields
-        )
+        *(np.array([getattr(m, name) for m in main])[:, None] for name in LineConstants._fields)
     )
     s = 2j * np.pi * frequency_hz
     gamma, characteristic = propagation(s, line)
@@ -428,9 +423,7 @@ def _with_cables(
     return replace(inputs, cables=cables)
 
 
-def _cables(
-    radiation: Radiation, frequency_hz: Array
-) -> tuple[RadiatingCable, ...] | None:
+def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...] | None:
     """Cables with their attenuation at the judged lines; None where nothing is declared."""
     if radiation.cable_state == UNKNOWN and not radiation.cables:
         return None

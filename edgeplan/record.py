@@ -2,6 +2,7 @@
 
 import hashlib
 from collections import Counter, defaultdict
+from collections.abc import Iterator
 from dataclasses import dataclass
 from math import isnan
 from typing import TYPE_CHECKING, Any
@@ -122,9 +123,7 @@ def results(draft: Draft) -> Results:
     )
     if draft.only:
         nets = [n for n in nets if n.net == draft.only]
-    not_judged = [
-        NotJudged(net=n.net, reason=n.kind) for n in board.nets if n.kind != "digital"
-    ]
+    not_judged = [NotJudged(net=n.net, reason=n.kind) for n in board.nets if n.kind != "digital"]
     target = draft.bench_now.radiation.target
     return Results(
         command=draft.command,
@@ -285,23 +284,32 @@ def _remedies(draft: Draft) -> dict[int, list[Remedy]]:
         rows = [row for row, i in enumerate(map(int, block.index)) if _needs_remedy(draft, i)]
         if not rows or block.nets.facts[0].timing == "open-drain":
             continue
-        nets = block.nets.take(rows)
-        index = block.index[rows]
-        bench = draft.bench_after
-        without = [k for k, f in enumerate(nets.facts) if f.net.site == "none"]
-        if without:
-            highest = draft.board.file.resistors.highest_ohm
-            for k, remedy in zip(
-                without, remedies.new_site(nets.take(without), bench, highest), strict=True
-            ):
-                if remedy is not None:
-                    found[int(index[k])].append(remedy)
-        over = [k for k, i in enumerate(map(int, index)) if _fails_emission(draft, i)]
-        if over:
-            few, own = nets.take(over), block.candidates.take(np.array(rows)[over])
-            for k, remedy in zip(over, remedies.cable_filter(few, own, bench), strict=True):
-                found[int(index[k])].append(remedy)
+        for net, remedy in [*_sites(draft, block, rows), *_filters(draft, block, rows)]:
+            found[net].append(remedy)
     return found
+
+
+def _sites(draft: Draft, block: Block, rows: list[int]) -> Iterator[tuple[int, Remedy]]:
+    """A new site for those nets of a block that have none, where one would help."""
+    without = [row for row in rows if block.nets.facts[row].net.site == "none"]
+    if not without:
+        return
+    highest = draft.board.file.resistors.highest_ohm
+    sized = remedies.new_site(block.nets.take(without), draft.bench_after, highest)
+    for row, remedy in zip(without, sized, strict=True):
+        if remedy is not None:
+            yield int(block.index[row]), remedy
+
+
+def _filters(draft: Draft, block: Block, rows: list[int]) -> Iterator[tuple[int, Remedy]]:
+    """A filter on the cables for those nets of a block that are over the emission budget."""
+    over = [row for row in rows if _fails_emission(draft, int(block.index[row]))]
+    if not over:
+        return
+    nets, candidates = block.nets.take(over), block.candidates.take(over)
+    sized = remedies.cable_filter(nets, candidates, draft.bench_after)
+    for row, remedy in zip(over, sized, strict=True):
+        yield int(block.index[row]), remedy
 
 
 def _needs_remedy(draft: Draft, net: int) -> bool:
@@ -354,7 +362,8 @@ def _blocked(blocked: Blocked) -> NetResult:
 def _totals(found: list[str], not_judged: int) -> dict[str, int]:
     """Count per verdict, zeros included."""
     counted = Counter(found)
-    return {v: counted.get(v, 0) for v in VERDICTS} | {"not judged": not_judged}
+    totals: dict[str, int] = {verdict: counted[verdict] for verdict in VERDICTS}
+    return totals | {"not judged": not_judged}
 
 
 def _findings(command: str, nets: list[NetResult]) -> list[Finding]:
@@ -485,4 +494,3 @@ def _array(draft: Draft, name: str, members: tuple[int, ...]) -> ArrayChoice:
         members=[draft.facts[i].net.net for i in members],
         text="" if len(chosen) == 1 else "no common value exists",
     )
-

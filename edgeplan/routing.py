@@ -196,7 +196,7 @@ def _routed(net: Net, routes: Sequence[RouteSegment], line_of: LineOf) -> Path:
 def _stub(
     start: str, neighbours: dict[str, list[tuple[str, float, Line]]]
 ) -> tuple[float, Line | None, list[str]]:
-    """Length and line from the driver pin to the site, and the nodes passed (the tree starts at the last)."""
+    """Length and line from the driver pin to the site, and the nodes passed, the root last."""
     if SITE not in neighbours:
         return 0.0, None, [start]
     previous, node, length, line, passed = "", start, 0.0, None, [start]

@@ -21,7 +21,7 @@ BLOCK_NETS = 128
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Block:
-    """Nets of one timing class that are evaluated together; ``index`` are their places on the board."""
+    """Nets of one timing class, evaluated together; ``index`` are their places on the board."""
 
     index: Array
     nets: Nets
@@ -135,7 +135,8 @@ def can_pass(facts: Sequence[NetFacts], board: Board, bench: Bench, scores: Scor
     for block in blocks_of([facts[i] for i in again], board, drawn_only=True):
         ladder = list_continuous(block.nets, board.file.resistors.highest_ohm)
         dense = summarise(ladder, evaluate(block.nets, ladder, bench))
-        for i, able in zip(block.index, (dense.passes | dense.undecided).any(axis=1), strict=True):
+        can = np.any(dense.passes | dense.undecided, axis=1)
+        for i, able in zip(block.index, can, strict=True):
             found[again[i]] = able
     return found
 

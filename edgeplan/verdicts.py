@@ -55,9 +55,7 @@ def judge(
         is_open=is_open,
         can_pass=can_pass,
     )
-    return Judged(
-        verdict=verdict, borderline=_borderline(evaluation, net, candidate, verdict)
-    )
+    return Judged(verdict=verdict, borderline=_borderline(evaluation, net, candidate, verdict))
 
 
 def _verdict(*, wants_faster: bool, wants_slower: bool, is_open: bool, can_pass: bool) -> Verdict:
@@ -76,7 +74,7 @@ def _verdict(*, wants_faster: bool, wants_slower: bool, is_open: bool, can_pass:
 
 
 def _borderline(evaluation: Evaluation, net: int, candidate: int, verdict: Verdict) -> bool:
-    """Inside by less than an error on the bad side, or outside by less than one on the good side."""
+    """Whether it is inside, or outside, by less than the error that could change it."""
     if verdict in ("undecided", "not judged"):
         return False
     failing, narrow = [], []

@@ -234,9 +234,7 @@ def _fast_brackets(scan: _Scan, slow: _Brackets) -> _Brackets:
     reach = np.where(closed, width - 1, last)
     below = np.arange(width)[None, :] <= reach[:, None]
     blocked = bad & below
-    highest_bad = np.where(
-        blocked.any(axis=1), width - 1 - np.argmax(blocked[:, ::-1], axis=1), -1
-    )
+    highest_bad = np.where(blocked.any(axis=1), width - 1 - np.argmax(blocked[:, ::-1], axis=1), -1)
     first = highest_bad + 1
     passing = np.where(first <= reach, scan.factor[rows, np.minimum(first, width - 1)], nan)
     failing = np.where(highest_bad >= 0, scan.factor[rows, np.maximum(highest_bad, 0)], nan)
@@ -246,14 +244,12 @@ def _fast_brackets(scan: _Scan, slow: _Brackets) -> _Brackets:
 
 
 def _fast_cause(evaluation: Evaluation, column: Array, closed: Array) -> tuple[Array, Array]:
-    """What sets the fast end: any check in an open window, one that wants a slower edge in a closed one."""
+    """What sets the fast end: any check; in a closed window one that wants a slower edge."""
     either, slower = _binding(evaluation, column, None), _binding(evaluation, column, "slower")
     return np.where(closed, slower[0], either[0]), np.where(closed, slower[1], either[1])
 
 
-def _binding(
-    evaluation: Evaluation, column: Array, wants: str | None
-) -> tuple[Array, Array]:
+def _binding(evaluation: Evaluation, column: Array, wants: str | None) -> tuple[Array, Array]:
     """Check with the smallest share at one column per net, and its frequency. (N,)"""
     rows = np.arange(len(column))
     best = np.full(len(column), inf)
@@ -274,7 +270,7 @@ def _binding(
 
 
 def _between(brackets: _Brackets) -> Array:
-    """Factors inside every bracket, in equal ratios from passing to failing; NaN where none is needed."""
+    """Factors inside every bracket, in equal ratios from passing to failing; else NaN."""
     steps = np.arange(1, REFINE_POINTS + 1) / (REFINE_POINTS + 1)
     return brackets.passing[:, None] * (brackets.failing / brackets.passing)[:, None] ** steps
 
@@ -400,7 +396,7 @@ def _limit_factors(scan: _Scan) -> dict[str, Array]:
 
 
 def _limit_factor(table: CheckTable, scan: _Scan) -> Array:
-    """Outermost passing ramp of one check, interpolated to zero margin; NaN where it never turns."""
+    """Outermost passing ramp of one check, interpolated to no margin; NaN if it never turns."""
     found = np.full(len(scan.factor), nan)
     good = ~(table.fails | table.open) & scan.evaluation.exists
     for i in np.flatnonzero(table.applies):

@@ -1,4 +1,4 @@
-"""One candidate per net: least change first, then the largest smallest share, then the common value.
+"""One candidate per net: least change, then the largest smallest share, then the common value.
 
 Nets that share a setting field (a bank) or a resistor array are chosen together, exactly, by
 going through the settings of their banks and the values of their arrays.
@@ -157,7 +157,7 @@ def _choose_together(
         sorted({str(n) for n in np.unique(np.concatenate([names[i] for i in members]))})
         for members in group.banks.values()
     ]
-    best: tuple[float, dict[int, int]] = (np.inf, {i: 0 for i in group.nets})
+    best: tuple[float, dict[int, int]] = (np.inf, dict.fromkeys(group.nets, 0))
     for settings in product(*options):
         masked = {i: score[i].copy() for i in group.nets}
         for setting, members in zip(settings, group.banks.values(), strict=True):

@@ -37,7 +37,7 @@ def new_site(nets: Nets, bench: Bench, highest_ohm: float) -> list[Remedy | None
     found = evaluate(nets, ladder, bench)
     share = np.where(found.passes, found.smallest_share, -np.inf)
     best = np.argmax(share, axis=1)
-    rows = np.arange(len(nets))
+    rows = range(len(nets))
     return [
         _site(nets, ladder, i, int(k)) if np.isfinite(share[i, k]) else None
         for i, k in zip(rows, best, strict=True)

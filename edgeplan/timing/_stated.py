@@ -29,16 +29,36 @@ def period_s(facts: NetFacts) -> float | None:
     return None if facts.interface.rate_hz is None else 1 / facts.interface.rate_hz
 
 
+def setup_s(facts: NetFacts) -> float | None:
+    """Setup time of what the net's driver drives. [s]"""
+    return facts.direction.setup_s if facts.direction else None
+
+
+def hold_s(facts: NetFacts) -> float | None:
+    """Hold time of what the net's driver drives. [s]"""
+    return facts.direction.hold_s if facts.direction else None
+
+
+def valid_before_s(facts: NetFacts) -> float | None:
+    """How long before the strobe data is valid at the output. [s]"""
+    return facts.direction.valid_before_s if facts.direction else None
+
+
+def valid_after_s(facts: NetFacts) -> float | None:
+    """How long after the strobe data is valid at the output. [s]"""
+    return facts.direction.valid_after_s if facts.direction else None
+
+
 STATED: dict[str, Callable[[NetFacts], Any]] = {
     "rate": lambda f: f.interface.rate_hz,
     "direction": lambda f: f.direction,
-    "setup": lambda f: f.direction and f.direction.setup_s,
-    "hold": lambda f: f.direction and f.direction.hold_s,
+    "setup": setup_s,
+    "hold": hold_s,
     "maximum clock-to-output": lambda f: output(f) and output(f).max_s,
     "minimum clock-to-output": lambda f: output(f) and output(f).min_s,
     "test load": lambda f: f.direction and f.direction.test_load,
-    "valid before": lambda f: f.direction and f.direction.valid_before_s,
-    "valid after": lambda f: f.direction and f.direction.valid_after_s,
+    "valid before": valid_before_s,
+    "valid after": valid_after_s,
 }
 
 

@@ -24,7 +24,7 @@ def checks(seen: Seen) -> list[CheckTable]:
 
 
 def _deadline(seen: Seen) -> CheckTable:
-    """Latest arrival against a stated deadline, slow corner; without clock-to-output from the edge."""
+    """Latest arrival against a stated deadline, slow corner; without output delay from the edge."""
     worst = Worst("deadline", "faster", "s", seen.shape)
     facts = seen.nets.facts
     limit = seen.per_receiver(_stated.per_net(facts, lambda f: f.interface.deadline_s))

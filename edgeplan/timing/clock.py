@@ -57,9 +57,7 @@ def _jitter(seen: Seen) -> CheckTable:
 def _pairs(seen: Seen) -> list[tuple[Received, Received]]:
     """Rising and falling readings of the same corner and state."""
     by = {(r.corner, r.state, r.edge): r for r in seen.received}
-    return [
-        (r, by[(r.corner, r.state, "falling")]) for r in seen.received if r.edge == "rising"
-    ]
+    return [(r, by[(r.corner, r.state, "falling")]) for r in seen.received if r.edge == "rising"]
 
 
 def _duty(seen: Seen) -> CheckTable:
@@ -73,9 +71,7 @@ def _duty(seen: Seen) -> CheckTable:
     for rising, falling in _pairs(seen):
         distortion = np.abs(rising.last_s - falling.last_s)
         error = rising.error_s + falling.error_s
-        worst.add(
-            seen.nets.first_receiver, distortion, limit, limit, rising.condition, error=error
-        )
+        worst.add(seen.nets.first_receiver, distortion, limit, limit, rising.condition, error=error)
     return worst.table()
 
 

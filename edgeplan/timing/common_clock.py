@@ -27,14 +27,12 @@ def _setup(seen: Seen) -> CheckTable:
     period = seen.per_receiver(_stated.per_net(facts, _stated.period_s))
     outside = seen.per_receiver(
         _stated.per_net(facts, _stated.latest_output_s)
-        + _stated.per_net(facts, lambda f: f.direction and f.direction.setup_s)
+        + _stated.per_net(facts, _stated.setup_s)
         + _stated.per_net(facts, _stated.allowance_s)
     )
     for r in seen.at("slow"):
         needed = outside + r.last_s - r.reference_s + r.interference_s
-        worst.add(
-            seen.nets.first_receiver, needed, period, period, r.condition, error=r.error_s
-        )
+        worst.add(seen.nets.first_receiver, needed, period, period, r.condition, error=r.error_s)
     _stated.require(
         worst, facts, ("rate", "direction", "setup", "maximum clock-to-output", "test load")
     )
@@ -48,7 +46,7 @@ def _hold(seen: Seen) -> CheckTable:
     period = seen.per_receiver(_stated.per_net(facts, _stated.period_s))
     earliest = seen.per_receiver(_stated.per_net(facts, _stated.earliest_output_s))
     needed = seen.per_receiver(
-        _stated.per_net(facts, lambda f: f.direction and f.direction.hold_s)
+        _stated.per_net(facts, _stated.hold_s)
         + _stated.per_net(facts, lambda f: f.interface.skew_s)
     )
     for r in seen.at("fast"):

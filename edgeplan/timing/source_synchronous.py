@@ -36,7 +36,7 @@ def _strobe_flight(seen: Seen, corner: str, which: str) -> np.ndarray:
 
 
 def _needs(worst: Worst, seen: Seen, valid: str, own: str) -> None:
-    """Undecided without the driver's valid time, the receiver's own time, a test load or a strobe."""
+    """Undecided without the driver's valid time, the receiver's time, a test load or a strobe."""
     facts = seen.nets.facts
     _stated.require(worst, facts, ("direction", valid, own, "test load"))
     for i, f in enumerate(facts):
@@ -63,12 +63,9 @@ def _setup(seen: Seen) -> CheckTable:
     """Latest data against the earliest strobe, each corner."""
     worst = Worst("setup", "faster", "s", seen.shape)
     facts = seen.nets.facts
-    valid = seen.per_receiver(
-        _stated.per_net(facts, lambda f: f.direction and f.direction.valid_before_s)
-    )
+    valid = seen.per_receiver(_stated.per_net(facts, _stated.valid_before_s))
     own = seen.per_receiver(
-        _stated.per_net(facts, lambda f: f.direction and f.direction.setup_s)
-        + _stated.per_net(facts, _stated.allowance_s)
+        _stated.per_net(facts, _stated.setup_s) + _stated.per_net(facts, _stated.allowance_s)
     )
     for r in seen.received:
         latest = r.last_s - r.reference_s + r.interference_s
@@ -82,11 +79,9 @@ def _hold(seen: Seen) -> CheckTable:
     """Earliest data against the latest strobe, each corner."""
     worst = Worst("hold", "slower", "s", seen.shape)
     facts = seen.nets.facts
-    valid = seen.per_receiver(
-        _stated.per_net(facts, lambda f: f.direction and f.direction.valid_after_s)
-    )
+    valid = seen.per_receiver(_stated.per_net(facts, _stated.valid_after_s))
     own = seen.per_receiver(
-        _stated.per_net(facts, lambda f: f.direction and f.direction.hold_s)
+        _stated.per_net(facts, _stated.hold_s)
         + _stated.per_net(facts, lambda f: f.interface.skew_s)
     )
     for r in seen.received:
@@ -96,10 +91,6 @@ def _hold(seen: Seen) -> CheckTable:
     return worst.table()
 
 
-def _add(
-    worst: Worst, seen: Seen, r: Received, needed: np.ndarray, valid: np.ndarray
-) -> None:
+def _add(worst: Worst, seen: Seen, r: Received, needed: np.ndarray, valid: np.ndarray) -> None:
     """What is needed against what the driver gives."""
-    worst.add(
-        seen.nets.first_receiver, needed, valid, _bit(seen), r.condition, error=r.error_s
-    )
+    worst.add(seen.nets.first_receiver, needed, valid, _bit(seen), r.condition, error=r.error_s)
