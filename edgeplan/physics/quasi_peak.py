@@ -100,7 +100,7 @@ def noise_over_rms_db(band: Band) -> float:
     low, high, product_s = 0.0, LARGEST_ENVELOPE, charging_s(band)
     for _ in range(40):
         volt = (low + high) / 2
-        current = np.sum(chance * envelope * _conduction(volt / envelope)) / product_s
+        current = np.sum(chance * envelope * conduction(volt / envelope)) / product_s
         low, high = (volt, high) if current > volt / band.discharge_s else (low, volt)
     return float(20 * np.log10(low / sine_share(band)))
 
@@ -132,7 +132,7 @@ def charging_s(band: Band) -> float:
     for _ in range(30):
         final = _sine_share(product_s, band)
         share = SHARES * (1 - np.exp(-1)) * final
-        rate = _conduction(share) / product_s - share / band.discharge_s
+        rate = conduction(share) / product_s - share / band.discharge_s
         taken_s = np.sum(1 / rate) * (share[1] - share[0])
         product_s *= band.charge_s / taken_s
     return float(product_s)
@@ -165,13 +165,31 @@ def _sine_share(product_s: float, band: Band) -> float:
     low, high = 0.0, 1.0
     for _ in range(50):
         share = (low + high) / 2
-        charges = _conduction(np.array(share)) / product_s > share / band.discharge_s
+        charges = conduction(np.array(share)) / product_s > share / band.discharge_s
         low, high = (share, high) if charges else (low, share)
     return low
 
 
-def _conduction(share: Array) -> Array:
-    """Diode current times resistor over amplitude, averaged over a cycle, at a voltage share."""
+def conduction(share: Array) -> Array:
+    r"""Mean current of the diode, over a cycle, times resistor over amplitude.
+
+    .. math:: \frac{\sqrt{1 - s^2} - s\arccos s}{\pi}
+
+    Parameters
+    ----------
+    share : numpy.ndarray
+        Capacitor voltage over the amplitude, s; held between 0 and 1. [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        1/pi at an empty capacitor, 0 at a full one. [-]
+
+    Examples
+    --------
+    >>> print(conduction(np.array([0.0, 1.0])).round(4))
+    [0.3183 0.    ]
+    """
     share = np.clip(share, 0, 1)
     return np.asarray((np.sqrt(1 - share**2) - share * np.arccos(share)) / np.pi)
 
@@ -183,7 +201,7 @@ def _charged(before: Array, envelope: Array, step_s: float, band: Band) -> Array
     def slope(volt: Array, amplitude: float) -> Array:
         """Rate of the capacitor voltage."""
         share = volt / max(amplitude, 1e-300)
-        return amplitude * _conduction(share) / product_s - volt / band.discharge_s
+        return amplitude * conduction(share) / product_s - volt / band.discharge_s
 
     volt = before.copy()
     for start, end in pairwise(envelope):
