@@ -58,7 +58,7 @@ def _series_permittivity(dielectrics: Sequence[Layer]) -> float:
 
 
 def _towards(stack: Sequence[Layer], start: int, step: int) -> tuple[list[Layer], bool]:
-    """Dielectrics between a layer and the next copper in one direction, and whether that is a plane."""
+    """Dielectrics up to the next copper in one direction, and whether that is a plane."""
     found: list[Layer] = []
     index = start + step
     while 0 <= index < len(stack):
@@ -95,7 +95,8 @@ def _surface_line(line: Line, thickness_m: float, around: _Surroundings, height_
     )
     problem = ""
     if isnan(float(impedance)):
-        problem = f"layer {line.layer}: width, thickness or permittivity is outside the closed form; state z0"
+        outside = "width, thickness or permittivity is outside the closed form"
+        problem = f"layer {line.layer}: {outside}; state z0"
     return replace(
         line,
         surface=True,
@@ -111,7 +112,7 @@ def _surface_line(line: Line, thickness_m: float, around: _Surroundings, height_
 
 
 def _inner_line(line: Line, thickness_m: float, around: _Surroundings) -> Line:
-    """Stripline between two planes: Wheeler when centred, the parallel rule nearly so, else solved."""
+    """Stripline between two planes: Wheeler if centred, the parallel rule if nearly, else solved."""
     low, high = sorted((around.above_m, around.below_m))
     permittivity = max(around.above_permittivity, around.below_permittivity)
     alike = abs(around.above_permittivity - around.below_permittivity) <= 0.1 * permittivity
@@ -189,10 +190,11 @@ def _computed(stack: Sequence[Layer], index: int, width_m: float) -> Line:
 
 def _skin_factor(line: Line, thickness_m: float, heights_m: Sequence[float]) -> float:
     """Resistance over the root of frequency, strip and return. [ohm/m/sqrt(Hz)]"""
-    if len(heights_m) == 2 and line.provenance == SOLVED:
-        return float(solved_stripline.skin_factor_solved(line.width_m, *heights_m, thickness_m))
     if len(heights_m) == 2:
         low, high = heights_m
+        if line.provenance == SOLVED:
+            solved = solved_stripline.skin_factor_solved(line.width_m, low, high, thickness_m)
+            return float(solved)
         return float(line_losses.skin_factor_stripline(line.width_m, low, high, thickness_m))
     return float(line_losses.skin_factor(line.width_m, line.height_m, thickness_m))
 

@@ -126,7 +126,7 @@ def _edge(picoseconds):
 
 
 def test_the_open_drain_pull_up_is_sized_by_the_bus_standard(saltmarsh):
-    """0.8473 R C <= 300 ns at 180 pF and 5 %: 1.87 kohm at most; 1.8 kohm is the E12 value below."""
+    """0.8473 R C <= 300 ns at 180 pF and 5 %: at most 1.87 kohm; the E12 value below is 1.8."""
     scl = by_name(saltmarsh)["I2C_SCL"]
     assert scl.verdict == "too slow"
     assert "1.8 kΩ" in scl.proposal_text
