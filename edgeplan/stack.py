@@ -112,7 +112,7 @@ def _surface_line(line: Line, thickness_m: float, around: _Surroundings, height_
 
 
 def _inner_line(line: Line, thickness_m: float, around: _Surroundings) -> Line:
-    """Stripline between two planes: Wheeler if centred, the parallel rule if nearly, else solved."""
+    """Stripline between two planes: Wheeler if centred, the parallel rule near it, else solved."""
     low, high = sorted((around.above_m, around.below_m))
     permittivity = max(around.above_permittivity, around.below_permittivity)
     alike = abs(around.above_permittivity - around.below_permittivity) <= 0.1 * permittivity
