@@ -82,7 +82,23 @@ class Candidates:
 
 
 def allowed_values(resistors: Resistors) -> Array:
-    """Values a site may take, 0 ohm first. [ohm]"""
+    """Values a site may take, 0 ohm first. [ohm]
+
+    Parameters
+    ----------
+    resistors : Resistors
+        A series of preferred values between two ends, or the values themselves.
+
+    Returns
+    -------
+    numpy.ndarray
+        Rising, each once; 0 ohm stands for a link. [ohm]
+
+    Examples
+    --------
+    >>> allowed_values(Resistors(series="E3", lowest_ohm=10, highest_ohm=100)).tolist()
+    [0.0, 10.0, 22.0, 47.0, 100.0]
+    """
     if resistors.values_ohm is not None:
         values = np.array(sorted(set(resistors.values_ohm)), dtype=float)
     else:
@@ -99,7 +115,18 @@ def _settings_of(facts: NetFacts) -> list[int]:
 
 
 def drawn_ohm(facts: NetFacts) -> float:
-    """What is drawn: the pull-up of an open-drain net, else the series resistor. [ohm]"""
+    """What is drawn: the pull-up of an open-drain net, else the series resistor. [ohm]
+
+    Parameters
+    ----------
+    facts : NetFacts
+        One net.
+
+    Returns
+    -------
+    float
+        0 where no series resistor is drawn, NaN where no pull-up is given. [ohm]
+    """
     if facts.timing == "open-drain":
         return nan if facts.net.pull_up_ohm is None else facts.net.pull_up_ohm
     return facts.net.resistor_ohm or 0.0
@@ -153,7 +180,18 @@ def list_candidates(nets: Nets, resistors: Resistors) -> Candidates:
 
 
 def list_drawn(nets: Nets) -> Candidates:
-    """The nets as drawn, one candidate each."""
+    """The nets as drawn, one candidate each.
+
+    Parameters
+    ----------
+    nets : Nets
+        N nets.
+
+    Returns
+    -------
+    Candidates
+        Tables (N, 1).
+    """
     return _tables(nets.facts, [[(f.setting, drawn_ohm(f))] for f in nets.facts])
 
 
@@ -162,6 +200,20 @@ def list_continuous(nets: Nets, highest_ohm: float, count: int = 24) -> Candidat
 
     Tells a closed window from a missing site: 0 ohm, then ``count`` values in
     equal ratios up to ``highest_ohm``.
+
+    Parameters
+    ----------
+    nets : Nets
+        N nets without open-drain ones: their pull-ups are not series resistors.
+    highest_ohm : float
+        Last value of the ladder. [ohm]
+    count : int
+        Values beside 0 ohm, from 4 ohm on.
+
+    Returns
+    -------
+    Candidates
+        Tables (N, settings x (count + 1)).
     """
     ladder = [0.0, *np.geomspace(4.0, highest_ohm, count)]
     return _tables(
@@ -200,7 +252,24 @@ def _tables(
 
 
 def setting_table(nets: Nets, quantity: str, corner: str, direction: str | None) -> Array:
-    """One quantity of all settings, padded to (N, S). NaN where a setting does not state it."""
+    """One quantity of all settings, padded to (N, S). NaN where a setting does not state it.
+
+    Parameters
+    ----------
+    nets : Nets
+        N nets, of which the one with most settings has S.
+    quantity : {"resistance_ohm", "ramp_s", "trapezoid_s", "pad_f"}
+        Field of `SettingCorners`.
+    corner : {"slow", "typical", "fast"}
+        Which corner.
+    direction : {"rising", "falling"} or None
+        None for a quantity that both edges share.
+
+    Returns
+    -------
+    numpy.ndarray
+        (N, S), in the quantity's own unit. [SI]
+    """
     width = max((len(f.settings) for f in nets.facts), default=1)
     table = np.full((len(nets), width), np.nan)
     for i, f in enumerate(nets.facts):

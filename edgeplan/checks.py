@@ -59,7 +59,29 @@ class CheckTable:
 
 
 def condition_code(receiver: int, corner: str, edge: str, state: str) -> int:
-    """Where and when, in one number."""
+    """Where and when, in one number.
+
+    Parameters
+    ----------
+    receiver : int
+        Place among the receivers of its net.
+    corner : {"slow", "fast"}
+        Corner.
+    edge : {"rising", "falling"}
+        Edge.
+    state : {"run", "boot"}
+        State.
+
+    Returns
+    -------
+    int
+        `condition_words` turns it back.
+
+    Examples
+    --------
+    >>> condition_code(1, "fast", "rising", "boot")
+    13
+    """
     return (
         receiver * 8
         + CONDITION_CORNERS.index(corner) * 4
@@ -73,6 +95,16 @@ def condition_words(code: int) -> tuple[int, str, str, str]:
 
     >>> condition_words(condition_code(2, "fast", "falling", "run"))
     (2, 'fast', 'falling', 'run')
+
+    Parameters
+    ----------
+    code : int
+        From `condition_code`.
+
+    Returns
+    -------
+    tuple of int and str
+        Receiver, corner, edge, state.
     """
     return (
         code // 8,
@@ -99,7 +131,17 @@ class Worst:
         self.error = np.zeros(shape)
 
     def cannot(self, net: int, because: str, missing: Missing | None = None) -> None:
-        """The check applies to a net but a value is missing."""
+        """The check applies to a net but a value is missing.
+
+        Parameters
+        ----------
+        net : int
+            Which net; all its candidates become undecided, whatever is added later.
+        because : str
+            Why; the first reason given stays.
+        missing : Missing, optional
+            The value that would help.
+        """
         self.applies[net] = True
         self.margin[net] = np.nan
         self.share[net] = np.nan
@@ -122,6 +164,28 @@ class Worst:
         ``scale`` turns a margin into its share.  Rows of nets with several receivers are
         reduced to the worst one; NaN stays NaN.  A NaN limit means the check does not
         apply to that receiver.
+
+        Parameters
+        ----------
+        first_receiver : numpy.ndarray
+            Offsets of each net's receivers, (N+1,).
+        value, limit, scale, error : array_like
+            Broadcast to (R, C), in the check's own unit.
+        condition : tuple of str
+            Corner, edge and state of these values.
+        larger_is_better : bool
+            Whether the value must be above its limit.
+
+        Examples
+        --------
+        9 ns needed of 10 ns leave 1 ns, a tenth:
+
+        >>> worst = Worst("setup", "faster", "s", (1, 1))
+        >>> now = ("slow", "rising", "run")
+        >>> worst.add(np.array([0, 1]), np.array([[9e-9]]), 10e-9, 10e-9, now)
+        >>> table = worst.table()
+        >>> print(f"{table.margin[0, 0] * 1e9:.1f} ns, {table.share[0, 0]:.2f}")
+        1.0 ns, 0.10
         """
         value, limit, scale, error = np.broadcast_arrays(value, limit, scale, error)
         margin = value - limit if larger_is_better else limit - value

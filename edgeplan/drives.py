@@ -169,5 +169,23 @@ def _pad_corners(stated: Range[float] | float, provenance: str) -> Quantity:
 
 
 def driver_corners(driver: Driver) -> dict[str, SettingCorners]:
-    """Every setting of a driver by its name."""
+    """Every setting of a driver by its name.
+
+    Parameters
+    ----------
+    driver : Driver
+        As the user wrote it.
+
+    Returns
+    -------
+    dict of str to SettingCorners
+        In the driver's own order.
+
+    Examples
+    --------
+    >>> plain = {"resistance_ohm": 30, "edge_s": 1e-9}
+    >>> two = [Setting(setting=name, **plain) for name in ("HIGH", "LOW")]
+    >>> list(driver_corners(Driver(name="out", settings=two)))
+    ['HIGH', 'LOW']
+    """
     return {s.setting: setting_corners(s) for s in driver.settings}

@@ -35,7 +35,20 @@ class EmissionLines:
     is_data: Array
 
     def detector_db(self, detector: Detector, bandwidth_hz: Array) -> Array:
-        """What a detector adds to the envelope of data and of clocks below its bandwidth. (N, F)"""
+        """What a detector adds to the envelope of data and of clocks below its bandwidth. (N, F)
+
+        Parameters
+        ----------
+        detector : {"peak", "quasi-peak", "average", "rms"}
+            Detector of a limit line.
+        bandwidth_hz : numpy.ndarray
+            Its bandwidth at every line, (N, F). [Hz]
+
+        Returns
+        -------
+        numpy.ndarray
+            Level over the envelope; 0 for a clock whose lines stand apart. [dB]
+        """
         toggle = self.toggle_hz[:, None]
         with np.errstate(invalid="ignore", divide="ignore"):
             data = data_spectra.random_data_db(2 * toggle, bandwidth_hz, detector)
@@ -45,7 +58,18 @@ class EmissionLines:
 
 
 def toggle_hz(facts: NetFacts) -> float:
-    """Clock frequency, or half the bit rate of data; NaN where neither is given. [Hz]"""
+    """Clock frequency, or half the bit rate of data; NaN where neither is given. [Hz]
+
+    Parameters
+    ----------
+    facts : NetFacts
+        One net.
+
+    Returns
+    -------
+    float
+        Fundamental of the fastest pattern the net can carry. [Hz]
+    """
     if facts.activity == "clock":
         return facts.net.clock_hz or np.nan
     if facts.net.data_bps:
@@ -54,7 +78,18 @@ def toggle_hz(facts: NetFacts) -> float:
 
 
 def is_data(facts: NetFacts) -> bool:
-    """Whether the net carries random data; a repeating pattern is judged as a clock."""
+    """Whether the net carries random data; a repeating pattern is judged as a clock.
+
+    Parameters
+    ----------
+    facts : NetFacts
+        One net.
+
+    Returns
+    -------
+    bool
+        True where its spectrum is dense and a detector's bandwidth counts.
+    """
     return facts.activity == "random" or (facts.activity is None and bool(facts.net.data_bps))
 
 

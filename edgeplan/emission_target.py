@@ -85,6 +85,17 @@ def target_of(board: Board) -> Target:
 
 
 def band_edges_hz(target: Target) -> Array:
-    """Frequencies at which a line starts, ends or steps, inside the judged range. [Hz]"""
+    """Frequencies at which a line starts, ends or steps, inside the judged range. [Hz]
+
+    Parameters
+    ----------
+    target : Target
+        Lines and range.
+
+    Returns
+    -------
+    numpy.ndarray
+        Rising, each once. [Hz]
+    """
     edges = np.unique(np.concatenate([b.frequency_hz for line in target.lines for b in line.bands]))
     return edges[(edges >= target.lowest_hz) & (edges <= target.covered_to_hz)]

@@ -297,7 +297,27 @@ def _trees(facts: Sequence[NetFacts], corner: str) -> Trees:
 
 
 def supply_v(interface: Interface, corner: str) -> float:
-    """Supply at a corner: lowest when slow, highest when fast. [V]"""
+    """Supply at a corner: lowest when slow, highest when fast. [V]
+
+    Parameters
+    ----------
+    interface : Interface
+        Its minimum and maximum supply are stated.
+    corner : {"slow", "typical", "fast"}
+        Typical without a typical value: the middle.
+
+    Returns
+    -------
+    float
+        Supply, which is the swing too. [V]
+
+    Examples
+    --------
+    >>> bus = Interface(name="bus", timing="clock", levels="lvttl-3v3",
+    ...                 supply_v={"min": 3.0, "max": 3.6})
+    >>> [round(supply_v(bus, corner), 3) for corner in CORNERS]
+    [3.0, 3.3, 3.6]
+    """
     stated = interface.supply_v
     low, high = float(stated.min or nan), float(stated.max or nan)
     typical = 0.5 * (low + high) if stated.typ is None else float(stated.typ)

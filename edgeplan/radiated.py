@@ -69,7 +69,18 @@ class Radiation:
     notes: tuple[str, ...] = ()
 
     def passive(self, nets: Nets) -> Passive:
-        """Passive quantities of a block, worked out once."""
+        """Passive quantities of a block, worked out once.
+
+        Parameters
+        ----------
+        nets : Nets
+            N nets; the result is kept with them.
+
+        Returns
+        -------
+        Passive
+            Fields per volt of source, limits and what binds. [V/A], [dBuV/m]
+        """
         if "passive" not in nets.kept:
             nets.kept["passive"] = _passive(self, nets)
         found: Passive = nets.kept["passive"]
@@ -78,7 +89,22 @@ class Radiation:
     def judge(
         self, nets: Nets, candidates: Candidates, tolerance: float, *, state: str = "run"
     ) -> CheckTable:
-        """Check ``emission`` of every candidate, fast corner. Margin in dB."""
+        """Check ``emission`` of every candidate, fast corner. Margin in dB.
+
+        Parameters
+        ----------
+        nets, candidates : Nets, Candidates
+            N nets, C candidates.
+        tolerance : float
+            Of the series resistor. [-]
+        state : {"run", "boot"}
+            Which state the candidates' settings belong to.
+
+        Returns
+        -------
+        CheckTable
+            One check, the worst line of every candidate; its parts are in ``extra``.
+        """
         passive = self.passive(nets)
         excess = source_levels(nets, candidates, passive, tolerance)
         open_cables = None
@@ -89,7 +115,18 @@ class Radiation:
 
 
 def radiation_of(board: Board) -> Radiation:
-    """Emission target and cables of a board, with what was taken for granted."""
+    """Emission target and cables of a board, with what was taken for granted.
+
+    Parameters
+    ----------
+    board : Board
+        As read.
+
+    Returns
+    -------
+    Radiation
+        ``cable_state`` says whether cables are declared, none, or unknown.
+    """
     declared = board.file.cable
     notes = []
     if declared is None and board.file.board.no_cables:
@@ -131,7 +168,22 @@ def _undeclared(cable: Cable) -> bool:
 
 
 def source_levels(nets: Nets, candidates: Candidates, passive: Passive, tolerance: float) -> Array:
-    """Volts of source spectrum over D at every line, worse of both edges, fast corner. (N, C, F)"""
+    """Volts of source spectrum over D at every line, worse of both edges, fast corner. (N, C, F)
+
+    Parameters
+    ----------
+    nets, candidates : Nets, Candidates
+        N nets, C candidates.
+    passive : Passive
+        Of the same nets.
+    tolerance : float
+        Of the series resistor. [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Times a passive field per volt it is that field, (N, C, F). [V]
+    """
     found: Array | None = None
     for direction in _edges(nets):
         levels = _one_direction(nets, candidates, passive, tolerance, direction)

@@ -190,6 +190,20 @@ def reference_crossing_s(nets: Nets, corner: str, direction: str) -> Array:
 
     The same engine drives a capacitor (and a resistor to a voltage, where stated)
     instead of the line.  NaN where no test load is stated.  Worked out once per block.
+
+    Parameters
+    ----------
+    nets : Nets
+        N nets; the result is kept with them.
+    corner : {"slow", "typical", "fast"}
+        Of the driver and supply.
+    direction : {"rising", "falling"}
+        Which edge.
+
+    Returns
+    -------
+    numpy.ndarray
+        (N,), from the start of the source's edge. [s]
     """
     key = ("reference", corner, direction)
     if key not in nets.kept:

@@ -44,6 +44,20 @@ def blocks_of(facts: Sequence[NetFacts], board: Board, *, drawn_only: bool) -> l
 
     Nets with another setting before firmware runs stand in blocks of their own, since
     they are judged twice.
+
+    Parameters
+    ----------
+    facts : sequence of NetFacts
+        N nets in the order of the board.
+    board : Board
+        For levels and resistors.
+    drawn_only : bool
+        Whether only the nets as drawn are wanted.
+
+    Returns
+    -------
+    list of Block
+        Every net in one of them.
     """
     groups: dict[tuple[str, bool], list[int]] = defaultdict(list)
     for i, f in enumerate(facts):
@@ -61,12 +75,38 @@ def blocks_of(facts: Sequence[NetFacts], board: Board, *, drawn_only: bool) -> l
 
 
 def score_block(block: Block, bench: Bench) -> Scores:
-    """Evaluate one block and keep what choosing needs."""
+    """Evaluate one block and keep what choosing needs.
+
+    Parameters
+    ----------
+    block : Block
+        Nets and candidates.
+    bench : Bench
+        What every evaluation shares.
+
+    Returns
+    -------
+    Scores
+        Of this block, in its own order.
+    """
     return summarise(block.candidates, evaluate(block.nets, block.candidates, bench))
 
 
 def summarise(candidates: Candidates, evaluation: Evaluation) -> Scores:
-    """Pass, undecided and smallest share of every candidate."""
+    """Pass, undecided and smallest share of every candidate.
+
+    Parameters
+    ----------
+    candidates : Candidates
+        Tables (N, C).
+    evaluation : Evaluation
+        Their checks.
+
+    Returns
+    -------
+    Scores
+        Undecided only where nothing fails.
+    """
     failing = evaluation.failing("faster") | evaluation.failing("slower")
     return Scores(
         candidates=candidates,
@@ -80,7 +120,24 @@ def summarise(candidates: Candidates, evaluation: Evaluation) -> Scores:
 def score_blocks(
     blocks: Sequence[Block], bench: Bench, jobs: int, progress: Progress | None
 ) -> list[Scores]:
-    """Evaluate all blocks, over several processes if asked."""
+    """Evaluate all blocks, over several processes if asked.
+
+    Parameters
+    ----------
+    blocks : sequence of Block
+        All of a board.
+    bench : Bench
+        What every evaluation shares.
+    jobs : int
+        Processes; the result does not depend on it.
+    progress : callable, optional
+        Called with a word and the share done, in one process only.
+
+    Returns
+    -------
+    list of Scores
+        In the order of the blocks.
+    """
     if jobs > 1 and len(blocks) > 1:
         from joblib import Parallel, delayed
 
@@ -102,7 +159,20 @@ def _one_by_one(
 
 
 def gather(blocks: Sequence[Block], scores: Sequence[Scores], count: int) -> Scores:
-    """Scores of all blocks in the order of the board, padded to one width."""
+    """Scores of all blocks in the order of the board, padded to one width.
+
+    Parameters
+    ----------
+    blocks, scores : sequence of Block, sequence of Scores
+        Of a whole board, in one order.
+    count : int
+        Nets N on the board.
+
+    Returns
+    -------
+    Scores
+        (N, C); what a narrower block does not have does not exist.
+    """
     width = max((s.candidates.count for s in scores), default=1)
     whole = Candidates(
         setting=np.zeros((count, width), dtype=int),
@@ -128,6 +198,20 @@ def can_pass(facts: Sequence[NetFacts], board: Board, bench: Bench, scores: Scor
     """Whether any setting with any resistor passes (or is undecided), site or not. (N,)
 
     Only nets without a passing candidate are looked at again, over a dense ladder of values.
+
+    Parameters
+    ----------
+    facts : sequence of NetFacts
+        N nets.
+    board, bench : Board, Bench
+        As for candidates.
+    scores : Scores
+        Of the candidates that sites allow, (N, C).
+
+    Returns
+    -------
+    numpy.ndarray
+        Booleans (N,); open-drain nets count as able, since another resistor decides them.
     """
     found = (scores.passes | scores.undecided).any(axis=1)
     found |= np.array([f.timing == "open-drain" for f in facts], dtype=bool)

@@ -95,6 +95,23 @@ def exit_code(results: Results) -> int:
     ``check`` asks for the verdict as drawn, ``plan`` and ``explain`` for the one after the
     proposals.  Undecided nets count as findings unless the policy says ``warn``; waived
     findings do not count.
+
+    Parameters
+    ----------
+    results : Results
+        With its findings and policy.
+
+    Returns
+    -------
+    int
+        0 or 1; what could not be judged at all never gets here (2).
+
+    Examples
+    --------
+    >>> from types import SimpleNamespace as Some
+    >>> finding = Some(rule="edge-undecided", waived=None)
+    >>> [exit_code(Some(undecided_policy=p, findings=[finding])) for p in ("fail", "warn")]
+    [1, 0]
     """
     counted = [f for f in results.findings if f.waived is None]
     if results.undecided_policy == "warn":

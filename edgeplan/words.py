@@ -12,7 +12,27 @@ ORDINALS = {1: "1st", 2: "2nd", 3: "3rd"}
 
 
 def resistor_place(net: Net) -> str:
-    """Where a series resistor sits or would sit."""
+    """Where a series resistor sits or would sit.
+
+    Parameters
+    ----------
+    net : Net
+        One row of the list.
+
+    Returns
+    -------
+    str
+        By its name, else by the driver's pin.
+
+    Examples
+    --------
+    >>> from edgeplan.board import Point
+    >>> here = Point(file="nets.csv", row=2)
+    >>> resistor_place(Net(net="A", at=here, resistor="R7"))
+    'at R7'
+    >>> resistor_place(Net(net="A", at=here, driver_pin=("U1.4",)))
+    'near U1.4'
+    """
     if net.resistor:
         return f"at {net.resistor}"
     pin = net.driver_pin[0] if net.driver_pin else "the driver"
@@ -30,6 +50,11 @@ def change_words(facts: NetFacts, setting: int, value_ohm: float) -> tuple[str, 
         Index of the proposed setting.
     value_ohm : float
         Proposed series resistor, or pull-up of an open-drain net. [ohm]
+
+    Returns
+    -------
+    tuple of str
+        Kind, for example "setting and value"; words for the table.
     """
     kinds, words = [], []
     if setting != facts.setting:
@@ -62,7 +87,18 @@ def _value_words(facts: NetFacts, drawn: float, value_ohm: float) -> tuple[str, 
 
 
 def check_words(check: Check) -> str:
-    """A check as a cause: its name, with frequency and harmonic number for emission."""
+    """A check as a cause: its name, with frequency and harmonic number for emission.
+
+    Parameters
+    ----------
+    check : Check
+        Of a net's record.
+
+    Returns
+    -------
+    str
+        For the column that says what binds.
+    """
     early = " before firmware" if check.condition.state == "boot" else ""
     if check.check != "emission" or check.frequency_hz is None:
         return f"{check.check}{early}"
@@ -77,7 +113,22 @@ def check_words(check: Check) -> str:
 
 
 def binds_words(verdict: Verdict, failing: list[Check], tightest: Check | None) -> str:
-    """What binds: every failing kind once, worst first; of an inside net the tightest check."""
+    """What binds: every failing kind once, worst first; of an inside net the tightest check.
+
+    Parameters
+    ----------
+    verdict : str
+        The net's verdict.
+    failing : list of Check
+        What fails, in any order.
+    tightest : Check or None
+        Smallest share of an inside net.
+
+    Returns
+    -------
+    str
+        At most three causes.
+    """
     if failing:
         ordered = sorted(failing, key=lambda c: c.margin_share if c.margin_share is not None else 0)
         return "; ".join(dict.fromkeys(check_words(c) for c in ordered[:3]))

@@ -39,7 +39,25 @@ class Tied:
 
 
 def tied_groups(facts: Sequence[NetFacts]) -> list[Tied]:
-    """Connected groups of nets that share banks or arrays; nets without either are left out."""
+    """Connected groups of nets that share banks or arrays; nets without either are left out.
+
+    Parameters
+    ----------
+    facts : sequence of NetFacts
+        N nets.
+
+    Returns
+    -------
+    list of Tied
+        In the order of their first nets.
+
+    Examples
+    --------
+    >>> from types import SimpleNamespace as Some
+    >>> nets = [Some(net=Some(bank=(b,), array=a)) for b, a in (("x", None), ("x", "R"), ("", "R"))]
+    >>> tied_groups(nets)
+    [Tied(nets=(0, 1, 2), banks={'x': (0, 1)}, arrays={'R': (1, 2)})]
+    """
     banks: dict[str, list[int]] = defaultdict(list)
     arrays: dict[str, list[int]] = defaultdict(list)
     for i, f in enumerate(facts):

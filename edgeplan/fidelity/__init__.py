@@ -12,6 +12,22 @@ SHAPES = {
 
 
 def checks_of(name: str) -> Callable[[Any], Sequence[Any]]:
-    """Function ``checks(seen)`` of one fidelity check, imported on first use."""
+    """Function ``checks(seen)`` of one fidelity check, imported on first use.
+
+    Parameters
+    ----------
+    name : str
+        A key of ``SHAPES``.
+
+    Returns
+    -------
+    callable
+        From what receivers see to a list of check tables.
+
+    Examples
+    --------
+    >>> checks_of("overshoot").__module__
+    'edgeplan.fidelity.overshoot'
+    """
     found: Callable[[Any], Sequence[Any]] = import_module(SHAPES[name]).checks
     return found

@@ -9,7 +9,18 @@ ENGINE_ERROR = 0.01  # of the mean slope: a dip no larger may be the engine's ow
 
 
 def checks(seen: Seen) -> list[CheckTable]:
-    """Lowest slope within the edge over its mean slope, both corners; below zero it turns back."""
+    """Lowest slope within the edge over its mean slope, both corners; below zero it turns back.
+
+    Parameters
+    ----------
+    seen : Seen
+        Nets of one timing class with their candidates and readings.
+
+    Returns
+    -------
+    list of CheckTable
+        ``plateau``, relative to the mean slope. [-]
+    """
     worst = Worst("plateau", "slower", "1", seen.shape)
     for r in seen.received:
         span = seen.nets.transition_high[r.corner] - seen.nets.transition_low[r.corner]

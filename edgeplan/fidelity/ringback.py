@@ -7,7 +7,18 @@ ENGINE_ERROR = 1.4e-3  # of the swing, 99 % of readings against a four times fin
 
 
 def checks(seen: Seen) -> list[CheckTable]:
-    """Lowest level after the first peak against the threshold, fast corner. Margin in V."""
+    """Lowest level after the first peak against the threshold, fast corner. Margin in V.
+
+    Parameters
+    ----------
+    seen : Seen
+        Nets of one timing class with their candidates and readings.
+
+    Returns
+    -------
+    list of CheckTable
+        ``ringback``. [V]
+    """
     worst = Worst("ringback", "slower", "V", seen.shape)
     swing = seen.per_receiver(seen.nets.swing_v["fast"])
     for r in seen.at("fast"):

@@ -15,6 +15,22 @@ CLASSES = {
 
 
 def checks_of(timing: str) -> Callable[[Any], Sequence[Any]]:
-    """Function ``checks(seen)`` of one timing class, imported on first use."""
+    """Function ``checks(seen)`` of one timing class, imported on first use.
+
+    Parameters
+    ----------
+    timing : str
+        A key of ``CLASSES``.
+
+    Returns
+    -------
+    callable
+        From what receivers see to a list of check tables.
+
+    Examples
+    --------
+    >>> checks_of("strobe").__module__
+    'edgeplan.timing.strobe'
+    """
     found: Callable[[Any], Sequence[Any]] = import_module(CLASSES[timing]).checks
     return found

@@ -13,7 +13,18 @@ from edgeplan.timing import _settling, _stated, _transition
 
 
 def checks(seen: Seen) -> list[CheckTable]:
-    """Deadline, pulse, settling, input transition and no second crossing."""
+    """Deadline, pulse, settling, input transition and no second crossing.
+
+    Parameters
+    ----------
+    seen : Seen
+        Nets of one timing class with their candidates and readings.
+
+    Returns
+    -------
+    list of CheckTable
+        ``deadline``, ``pulse width``, ``settling``, ``transition``, ``ringback``. [s], [V]
+    """
     return [
         _deadline(seen),
         _pulse(seen),

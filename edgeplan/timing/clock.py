@@ -13,7 +13,19 @@ from edgeplan.timing import _settling, _stated, _transition
 
 
 def checks(seen: Seen) -> list[CheckTable]:
-    """Input transition, level within half a period, duty, pulse, jitter, plateau, ringback."""
+    """Input transition, level within half a period, duty, pulse, jitter, plateau, ringback.
+
+    Parameters
+    ----------
+    seen : Seen
+        Nets of one timing class with their candidates and readings.
+
+    Returns
+    -------
+    list of CheckTable
+        ``transition``, ``settling``, ``jitter``, ``plateau``, ``ringback``, ``duty``,
+        ``pulse width``. [s], [V], [-]
+    """
     return [
         *_transition.checks(seen),
         *_settling.checks(seen),
@@ -24,7 +36,18 @@ def checks(seen: Seen) -> list[CheckTable]:
 
 
 def event_checks(seen: Seen) -> list[CheckTable]:
-    """What every net whose edges are events must hold: jitter, plateau and ringback."""
+    """What every net whose edges are events must hold: jitter, plateau and ringback.
+
+    Parameters
+    ----------
+    seen : Seen
+        Nets of one timing class with their candidates and readings.
+
+    Returns
+    -------
+    list of CheckTable
+        ``jitter``, ``plateau``, ``ringback``. [s], [-], [V]
+    """
     return [
         _jitter(seen),
         *fidelity.checks_of("plateau")(seen),

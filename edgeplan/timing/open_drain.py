@@ -18,12 +18,34 @@ RESISTOR_TOLERANCE = 0.05
 
 
 def checks(seen: Seen) -> list[CheckTable]:
-    """Rise by the pull-up, sink current, and the falling edge's own transition."""
+    """Rise by the pull-up, sink current, and the falling edge's own transition.
+
+    Parameters
+    ----------
+    seen : Seen
+        Nets of one timing class with their candidates and readings.
+
+    Returns
+    -------
+    list of CheckTable
+        ``rise by pull-up``, ``sink current``, ``transition``. [s], [A]
+    """
     return [_rise(seen), _sink(seen), *_transition.checks(seen)]
 
 
 def bus_capacitance_f(seen: Seen) -> np.ndarray:
-    """Capacitance that the pull-up has to charge, (N,): stated bus, or receivers alone. [F]"""
+    """Capacitance that the pull-up has to charge, (N,): stated bus, or receivers alone. [F]
+
+    Parameters
+    ----------
+    seen : Seen
+        Open-drain nets.
+
+    Returns
+    -------
+    numpy.ndarray
+        Of the slow corner. [F]
+    """
     trees = seen.nets.trees["slow"]
     return np.add.reduceat(trees.node_farad, trees.segment_offset[:-1])
 

@@ -22,7 +22,18 @@ from edgeplan.timing import _settling, _stated, _transition
 
 
 def checks(seen: Seen) -> list[CheckTable]:
-    """Setup and hold against the strobe, settling and input transition. Margins in s and V."""
+    """Setup and hold against the strobe, settling and input transition. Margins in s and V.
+
+    Parameters
+    ----------
+    seen : Seen
+        Nets of one timing class with their candidates and readings.
+
+    Returns
+    -------
+    list of CheckTable
+        ``setup``, ``hold``, ``settling``, ``transition``. [s], [V]
+    """
     return [_setup(seen), _hold(seen), *_settling.checks(seen), *_transition.checks(seen)]
 
 
