@@ -154,3 +154,30 @@ def test_a_line_of_data_stands_above_the_data():
 def test_equal_edges_without_skew_have_no_line():
     lines = data_spectra.data_line_amplitude(np.arange(1, 9), 3.3, 1e8, 1e-9, 1e-9)
     assert np.all(lines == 0)
+
+
+def test_discrete_lines_of_data_are_those_of_a_sampled_waveform():
+    # bits drawn with ramps and a late falling edge, sampled and transformed; no formula shared
+    rng = np.random.default_rng(34)
+    bits, samples, rise, fall, skew = rng.integers(0, 2, 4096), 64, 9, 21, 6
+    wave = np.zeros(bits.size * samples)
+    at = np.arange(samples)
+    for i, (old, new) in enumerate(zip(np.roll(bits, 1), bits, strict=True)):
+        ramp = np.full(samples, float(new))
+        if new > old:
+            ramp = np.clip((at - 16 + rise / 2) / rise, 0, 1)
+        elif new < old:
+            ramp = 1 - np.clip((at - 16 - skew + fall / 2) / fall, 0, 1)
+        wave[i * samples : (i + 1) * samples] = ramp
+    multiple = np.arange(1, 6)
+    lines = 2 * np.abs(np.fft.rfft(wave))[multiple * bits.size] / wave.size
+    computed = data_spectra.data_line_amplitude(
+        multiple, 1.0, 1.0, rise / samples, fall / samples, skew / samples
+    )
+    np.testing.assert_allclose(computed, lines, rtol=0.06, atol=2e-4)
+
+
+def test_skew_alone_makes_lines_and_more_of_it_stronger_ones_at_low_multiples():
+    lines = [data_spectra.data_line_amplitude(1, 1.0, 1e8, 1e-9, 1e-9, s) for s in (0, 1e-10, 1e-9)]
+    assert lines[0] == 0
+    assert 0 < lines[1] < lines[2]
