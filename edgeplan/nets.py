@@ -1,9 +1,9 @@
 """From board records to arrays: one entry per judged net, one row per receiver."""
 
 from collections import defaultdict
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
-from math import isnan, nan
+from math import nan
 from typing import Any
 
 import numpy as np
@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from edgeplan import levels
 from edgeplan.board import Board, Direction, Driver, Interface, Net, Range, Receiver
-from edgeplan.drives import CORNERS, RAISED_COSINE_SHARE, SettingCorners, driver_corners
+from edgeplan.drives import CORNERS, SettingCorners, driver_corners
 from edgeplan.physics.lines import LineConstants
 from edgeplan.physics.network import Trees
 from edgeplan.results import Missing
@@ -114,11 +114,6 @@ class Nets:
             overshoot_limit={c: v[rows] for c, v in self.overshoot_limit.items()},
             bit_s=self.bit_s[index],
         )
-
-    def blocks(self, size: int = 256) -> Iterator[Array]:
-        """Indices of consecutive nets; the size depends on the input only."""
-        for start in range(0, len(self), size):
-            yield np.arange(start, min(start + size, len(self)))
 
 
 def resolve(board: Board) -> tuple[list[NetFacts], list[Blocked]]:
@@ -405,13 +400,3 @@ def _overshoot_limits(receivers: Sequence[tuple[NetFacts, Receiver]], corner: st
             for f, r in receivers
         ]
     )
-
-
-def edge_10_90_s(ramp_s: Array) -> Array:
-    """10-90 % of a raised-cosine ramp. [s]"""
-    return np.asarray(ramp_s) * RAISED_COSINE_SHARE["10-90"]
-
-
-def known(value: float) -> bool:
-    """Whether a corner value is stated."""
-    return not isnan(value)

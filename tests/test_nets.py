@@ -214,11 +214,6 @@ def test_taking_nets_is_the_same_as_building_them_alone():
         np.testing.assert_array_equal(taken.overshoot_limit[corner], alone.overshoot_limit[corner])
 
 
-def test_blocks_cover_every_net_once_and_depend_on_the_input_only():
-    nets = nets_of(board(*(net(f"N{i}") for i in range(7))))
-    assert [block.tolist() for block in nets.blocks(3)] == [[0, 1, 2], [3, 4, 5], [6]]
-
-
 def test_a_supply_without_a_typical_value_is_labelled_by_its_middle():
     nets = nets_of(board(interface=[interface(supply_v={"min": 3.0, "max": 3.6})]))
     assert nets.swing_v["typical"][0] == pytest.approx(3.3)
