@@ -10,6 +10,7 @@ Array = NDArray[Any]
 
 GUARD = 0.01  # a threshold is read at -1 %, 0 and +1 % of the swing
 NEAR = 4  # samples in which a clean edge passes the three readings
+EARLY = 3  # part of a window in which most edges arrive
 WINDOW = 64  # samples in which a clean edge passes all thresholds
 
 
@@ -48,7 +49,7 @@ def edges(level: Array, lowest: Array, highest: Array) -> Edges:
     """
     rows, samples = level.shape
     width = min(WINDOW, samples)
-    begin = np.clip(first_reach(level, lowest) - 2, 0, samples - width)
+    begin = np.clip(_early_reach(level, lowest) - 2, 0, samples - width)
     every = sliding_window_view(level.ravel(), width)
     near = np.asarray(every[np.arange(rows) * samples + begin])
     long = np.flatnonzero((first_reach(near, highest) == width) & (begin + width < samples))
@@ -144,8 +145,8 @@ def first_readings(level: Array, threshold: Array, found: Edges) -> Array:
     for reading, wanted in ((1, threshold), (2, threshold + guard)):
         steps = _leading(after < wanted)
         index[reading] = index[0] + steps
-        for kind, row in _pairs((steps > NEAR) & (index[0] < samples)):
-            index[reading, kind, row] = first_reach(level[row], wanted[kind, row])
+        which, row = np.nonzero((steps > NEAR) & (index[0] < samples))
+        index[reading, which, row] = first_reach(level[row], wanted[which, row])
     return np.minimum(index, samples)
 
 
@@ -282,10 +283,10 @@ def cubic_time(level: Array, row: Array, index: Array, threshold: Array) -> Arra
     slope = y2 - y0 / 3 - y1 / 2 - y3 / 6
     rest = y1 - threshold
     with np.errstate(divide="ignore", invalid="ignore"):
-        u = np.clip(-rest / (y2 - y1), 0, 1)
+        u = _unit(-rest / (y2 - y1))
         for _ in range(2):
             value = ((cubic * u + square) * u + slope) * u + rest
-            u = np.clip(u - value / ((3 * cubic * u + 2 * square) * u + slope), 0, 1)
+            u = _unit(u - value / ((3 * cubic * u + 2 * square) * u + slope))
     time = np.where(index < 1, 0, inner - 1 + u)
     return np.where(index < samples, time, np.nan)
 
@@ -306,6 +307,21 @@ def straight_time(level: Array, row: Array, index: Array, threshold: Array) -> A
     return np.where(index < samples, time, np.inf)
 
 
+def _unit(share: Array) -> Array:
+    """Shares held between 0 and 1."""
+    return np.asarray(np.minimum(np.maximum(share, 0, out=share), 1, out=share))
+
+
+def _early_reach(level: Array, threshold: Array) -> Array:
+    """First reach, sought in the first part of the rows first: most windows begin with the edge."""
+    samples = level.shape[1]
+    part = max(samples // EARLY, 1)
+    index = first_reach(level[:, :part], threshold)
+    rest = np.flatnonzero(index == part)
+    index[rest] = part + first_reach(level[rest, part:], threshold[rest])
+    return index
+
+
 def _positions(rows: int, samples: int, index: Array) -> Array:
     """Flat places of the samples from each index on (NEAR + 1, k, M), none beyond its row."""
     begin = np.arange(rows) * samples
@@ -321,8 +337,3 @@ def _leading(mask: Array) -> Array:
         going &= more
         count += going
     return np.asarray(count)
-
-
-def _pairs(mask: Array) -> list[tuple[int, Array]]:
-    """Rows to look at again, for each kind that has any."""
-    return [(kind, np.flatnonzero(rows)) for kind, rows in enumerate(mask) if rows.any()]

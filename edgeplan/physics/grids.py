@@ -14,12 +14,12 @@ Array = NDArray[Any]
 SAMPLES_PER_RAMP = 10  # raised cosine: 1 mV/V and 0.07 % of the edge with cubic crossings
 DAMPING = 6.0  # sigma T; more raises the noise late in the window, less the wrap-around
 KEPT = 0.75  # share of the period that is read; the rest drowns in the growing exponential
-SHORTEST = 256
+SHORTEST = 128
 SPLIT_ABOVE = 1024
 LONGEST = 4096
 LEAST_OBSERVED_S = 2e-9
 SETTLED = 1e-3
-TASK_ROWS = 12  # what one more tree pass costs, in waveform rows of 256 samples
+TASK_ROWS = 20  # what one more tree pass costs, in waveform rows of 256 samples
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -146,7 +146,8 @@ def needs(trees: Trees, drive: Drive, observe_s: ArrayLike) -> Needs:
     9.60 ns
     """
     delay = longest_delay_s(trees)
-    pole, trip, fall = _decays(trees, drive, delay)
+    pole, loading = _slow_pole(trees, drive)
+    trip, fall = 2 * delay[:, None] * loading, _ringing_loss(trees, drive)
     observe = np.broadcast_to(np.asarray(observe_s, dtype=float), delay.shape)[:, None]
     with np.errstate(divide="ignore", invalid="ignore"):
         trips = [np.where(fall > 0, np.log(1 / share) / fall, np.inf) for share in (SETTLED, 0.1)]
@@ -162,39 +163,52 @@ def needs(trees: Trees, drive: Drive, observe_s: ArrayLike) -> Needs:
     )
 
 
-def _decays(trees: Trees, drive: Drive, delay: Array) -> tuple[Array, Array, Array]:
-    """Slow pole (N, C), loaded round trip (N, 1) and loss of ringing per round trip in nepers."""
-    net = segment_net(trees)
-    count = len(trees)
-    impedance = root_impedance_ohm(trees)
-    capacitance = trees.line.delay_s_per_m / trees.line.impedance_ohm * trees.length_m
-    of_lines = np.bincount(net, capacitance, minlength=count)[:, None]
+def _slow_pole(trees: Trees, drive: Drive) -> tuple[Array, Array]:
+    """Time constant of driver and capacitance (N, C), and slowing of the lines by loads (N, 1)."""
+    net, count = segment_net(trees), len(trees)
+    own = trees.line.delay_s_per_m / trees.line.impedance_ohm * trees.length_m
+    of_lines = np.bincount(net, own, minlength=count)[:, None]
     lumped = np.bincount(net, trees.node_farad, minlength=count)[:, None]
     siemens = np.bincount(net, trees.node_siemens, minlength=count)[:, None]
-    own = np.asarray(trees.line.impedance_ohm) * trees.node_siemens
-    far = np.zeros(count)
-    leaf = _leaves(trees)
-    np.maximum.at(far, net[leaf], np.abs((1 - own) / (1 + own))[leaf])
-    total = drive.resistance_ohm + drive.series_ohm
-    z = impedance[:, None]
-    with np.errstate(divide="ignore"):
-        fall = -np.log(np.abs((total - z) / (total + z)) * far[:, None])
-    slow = total > z
-    seen = np.where(slow, total, z)
+    total, impedance = drive.resistance_ohm + drive.series_ohm, root_impedance_ohm(trees)[:, None]
+    slow = total > impedance
+    seen = np.where(slow, total, impedance)
     pole = seen / (1 + seen * siemens) * (lumped + np.where(slow, of_lines, 0))
-    pole = pole + drive.resistance_ohm * drive.pad_farad
     with np.errstate(divide="ignore", invalid="ignore"):
         loading = np.where(of_lines > 0, np.sqrt(1 + lumped / of_lines), 1.0)
-    return pole, 2 * delay[:, None] * loading, fall
+    return pole + drive.resistance_ohm * drive.pad_farad, loading
 
 
-def _leaves(trees: Trees) -> Array:
-    """Whether a segment (S,) has no child."""
-    start = np.repeat(np.asarray(trees.segment_offset)[:-1], np.diff(trees.segment_offset))
-    has_child = np.zeros(len(trees.parent), dtype=bool)
-    inner = np.asarray(trees.parent) >= 0
-    has_child[(start + trees.parent)[inner]] = True
-    return ~has_child
+def _ringing_loss(trees: Trees, drive: Drive) -> Array:
+    """Least loss of a round trip (N, C), in nepers: what an arm sees at its two ends.
+
+    At its near end an arm meets the lines beside it and the one it comes from, or the
+    driver; arms of a star ring against each other even where the driver matches them.
+    """
+    net, count = segment_net(trees), len(trees)
+    admittance = 1 / np.asarray(trees.line.impedance_ohm)
+    above = np.asarray(trees.parent) + np.asarray(trees.segment_offset)[net]
+    root, inner = np.flatnonzero(trees.parent < 0), np.flatnonzero(trees.parent >= 0)
+    below = np.bincount(above[inner], admittance[inner], minlength=len(net))
+    of_roots = np.bincount(net[root], admittance[root], minlength=count)
+    beside = below[above[inner]] - admittance[inner] + admittance[above[inner]]
+    strongest = np.zeros(drive.exists.shape)
+    np.maximum.at(strongest, net[inner], _mismatch(admittance[inner], beside)[:, None])
+    with np.errstate(divide="ignore", invalid="ignore"):
+        of_driver = 1 / (drive.resistance_ohm + drive.series_ohm)[net[root]]
+        others = (of_roots[net[root]] - admittance[root])[:, None] + of_driver
+        near = np.where(np.isinf(others), 1.0, _mismatch(admittance[root, None], others))
+        np.maximum.at(strongest, net[root], near)
+        leaf = np.flatnonzero(below == 0)
+        far = np.zeros(count)
+        load = np.asarray(trees.node_siemens)[leaf]
+        np.maximum.at(far, net[leaf], _mismatch(admittance[leaf], load))
+        return np.asarray(-np.log(strongest * far[:, None]))
+
+
+def _mismatch(admittance: Array, beyond: Array) -> Array:
+    """Size of the reflection of a line at what lies beyond its end."""
+    return np.asarray(np.abs((admittance - beyond) / (admittance + beyond)))
 
 
 def choose_grids(drive: Drive, window: Needs) -> Grids:
@@ -226,14 +240,15 @@ def choose_grids(drive: Drive, window: Needs) -> Grids:
     >>> drive = drive_of([[50.0, 50.0]], ramp_s=[[1e-9, 1e-6]])
     >>> grids = choose_grids(drive, needs(point_to_point([0.1]), drive, [10e-9]))
     >>> grids.length.tolist(), grids.candidate.tolist()
-    ([256, 256], [0, 1])
+    ([192, 128], [0, 1])
     """
     ramp, need, possible = _feasible(drive, window)
-    caps = [SHORTEST, 2 * SHORTEST, SPLIT_ABOVE]
-    plans = [_rounds(ramp, need, possible, np.full(len(ramp), cap)) for cap in caps]
+    steps = rounded_step_s(ramp / SAMPLES_PER_RAMP)
+    caps = [SHORTEST, 2 * SHORTEST, 4 * SHORTEST, SPLIT_ABOVE]
+    plans = [_rounds(steps, need, possible, np.full(len(ramp), cap)) for cap in caps]
     costs = np.stack([_cost(plan, possible) for plan in plans])
     cap = np.array(caps)[costs.argmin(axis=0)]
-    piece, step, length = _rounds(ramp, need, possible, cap)
+    piece, step, length = _rounds(steps, need, possible, cap)
     net, candidate = np.nonzero(possible)
     key = net * (piece.max(initial=0) + 1) + piece[net, candidate]
     order = np.argsort(key, kind="stable")
@@ -272,29 +287,27 @@ def _feasible(drive: Drive, window: Needs) -> tuple[Array, Array, Array]:
     return ramp, need, possible & ((need <= LONGEST * kept) | change)
 
 
-def _rounds(ramp: Array, need: Array, possible: Array, cap: Array) -> tuple[Array, Array, Array]:
+def _rounds(steps: Array, need: Array, possible: Array, cap: Array) -> tuple[Array, Array, Array]:
     """Piece of every candidate (N, C), step and length of every piece (pieces, N)."""
-    open_, piece = possible.copy(), np.zeros(ramp.shape, dtype=np.intp)
-    wanted = need / (KEPT * rounded_step_s(ramp / SAMPLES_PER_RAMP))
-    everyone = np.arange(len(ramp))
-    steps, lengths = [np.ones(len(ramp))], [np.full(len(ramp), SHORTEST)]
-    for round_ in range(ramp.shape[1]):
+    open_, piece = possible.copy(), np.zeros(steps.shape, dtype=np.intp)
+    everyone, need = np.arange(len(steps)), need / KEPT
+    of_piece, lengths = [np.ones(len(steps))], [np.full(len(steps), SHORTEST)]
+    for round_ in range(steps.shape[1]):
         if not open_.any():
             break
-        opener = np.where(open_, ramp, np.inf).argmin(axis=1)
-        step = rounded_step_s(ramp[everyone, opener] / SAMPLES_PER_RAMP)
-        most = np.maximum(cap, _length(wanted[everyone, opener]))
-        samples = need / (KEPT * step[:, None])
-        members = open_ & (samples <= most[:, None])
+        opener = np.where(open_, steps, np.inf).argmin(axis=1)
+        step = steps[everyone, opener]
+        most = np.maximum(cap, _length(need[everyone, opener] / step))
+        members = open_ & (need <= (most * step)[:, None])
         piece[members] = round_
         open_ &= ~members
-        steps[round_:] = [step]
-        lengths[round_:] = [_length(np.where(members, samples, 0).max(axis=1))]
-    return piece, np.stack(steps), np.stack(lengths)
+        of_piece[round_:] = [step]
+        lengths[round_:] = [_length(np.where(members, need, 0).max(axis=1) / step)]
+    return piece, np.stack(of_piece), np.stack(lengths)
 
 
 def _length(samples: Array) -> Array:
-    """Length that holds so many samples: 256 times 1, 1.5, 2, 3, 4 and so on."""
+    """Length that holds so many samples: 128 times 1, 1.5, 2, 3, 4 and so on."""
     times = np.maximum(samples, SHORTEST) / SHORTEST
     octave = np.floor(np.log2(times) + 1e-9)
     within = times / 2**octave

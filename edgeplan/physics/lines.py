@@ -162,7 +162,7 @@ class KnownLines:
     ([0, 0], (1, 2), [0.02, 0.02])
     """
 
-    most = 4096  # rows kept; a board with more hardly repeats its lines
+    most = 8192  # rows kept, 17 MB at 256 samples; a board with more hardly repeats its lines
 
     def __init__(self) -> None:
         self.rows: dict[tuple[bytes, bytes], tuple[Array, Array]] = {}
@@ -174,15 +174,17 @@ class KnownLines:
         row = np.asarray(s_row)[first]
         of_row = [frequencies.tobytes() for frequencies in s]
         keys = [(of_row[r], own.tobytes()) for r, own in zip(row, kind, strict=True)]
-        new = [i for i, key in enumerate(keys) if key not in self.rows]
-        if len(self.rows) + len(new) > self.most:
-            self.rows.clear()
-            new = list(range(len(keys)))
+        known = {key: self.rows[key] for key in keys if key in self.rows}
+        new = [i for i, key in enumerate(keys) if key not in known]
         gamma, impedance = propagation(s[row[new]], LineConstants(*kind[new].T[..., None]))
         found = (gamma.astype(s.dtype), reciprocal(impedance).astype(s.dtype))
-        self.rows.update(zip([keys[i] for i in new], zip(*found, strict=True), strict=True))
-        known = [self.rows[key] for key in keys]
-        return index, np.stack([g for g, _ in known]), np.stack([y for _, y in known])
+        known.update(zip([keys[i] for i in new], zip(*found, strict=True), strict=True))
+        if len(self.rows) + len(new) > self.most:
+            self.rows.clear()
+        if len(known) <= self.most:
+            self.rows.update(known)
+        pairs = [known[key] for key in keys]
+        return index, np.stack([g for g, _ in pairs]), np.stack([y for _, y in pairs])
 
 
 def _distinct(columns: tuple[Array, ...]) -> tuple[Array, Array]:

@@ -24,6 +24,7 @@ Array = NDArray[Any]
 ROWS = 1536
 CACHED = 32_768  # spectral values of candidates at a time, so that they stay in the cache
 CHUNK_MEMBERS = 20_000  # candidates whose trees are solved in one pass
+LINES = KnownLines()  # corners, ramps and repeated calls meet the same lines on the same grids
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -31,7 +32,7 @@ class Block:
     """M step responses of one length, each on its own step.
 
     ``level`` (M, n) is normalised to end at 1 and sampled at ``start_s + n step_s``;
-    ``receiver`` counts over all nets.
+    ``receiver`` counts over all nets. The next block overwrites ``level``.
     """
 
     level: Array
@@ -75,6 +76,7 @@ class _Rows:
         self.label = np.empty((3, capacity), dtype=np.intp)
         self.time = np.empty((2, capacity))
         self.growth = _growth(length, self.spectrum.real.dtype)
+        self.level = np.empty((capacity, len(self.growth)), dtype=self.growth.dtype)
 
     def room(self) -> int:
         """Rows that still fit."""
@@ -84,10 +86,8 @@ class _Rows:
         """Transform what has come in and start again."""
         rows = slice(0, self.filled)
         wave = fft.irfft(self.spectrum[rows], self.length, axis=1, overwrite_x=True)
-        kept = len(self.growth)
-        level = np.multiply(
-            wave[:, :kept], self.growth, out=np.empty((self.filled, kept), wave.dtype)
-        )
+        level = self.level[rows]
+        np.multiply(wave[:, : level.shape[1]], self.growth, out=level)
         level -= level.dtype.type(1 / np.expm1(DAMPING))
         net, candidate, receiver = self.label[:, rows].copy()
         step_s, start_s = self.time[:, rows].copy()
@@ -167,9 +167,8 @@ def blocks(
         tasks = tasks[np.argsort(net_shape[grids.net[tasks]], kind="stable")]
         waiting = _Rows(int(length), max(rows, int(receivers.max())), precision)
         axis = damped_axis(int(length)).astype(precision)
-        lines = KnownLines()
         for part in _chunks(tasks, net_shape[grids.net[tasks]], members[tasks]):
-            yield from _fill(solve(trees, drive, grids, part, axis, shape, lines), waiting)
+            yield from _fill(solve(trees, drive, grids, part, axis, shape, LINES), waiting)
         if waiting.filled:
             yield waiting.take()
 
@@ -206,7 +205,8 @@ def solve(
     s = (axis / steps[:, None]).astype(axis.dtype)
     task, candidate = _members(grids, tasks)
     chosen = (net[task], candidate)
-    weights, pad_farad = _weights(drive, chosen, task, dc_response(own)[0])
+    rest_siemens, rest_transfer = dc_response(own)
+    weights, pad_farad = _weights(drive, chosen, task, rest_siemens)
     tree = response(own, s, s_row=s_row, lines=lines)
     has_stub = own.stub_length_m[0] > 0
     chain = stub_chain(own, s, s_row, lines=lines) if has_stub else None
@@ -221,7 +221,7 @@ def solve(
         candidate=candidate,
         weights=weights.astype(axis.real.dtype),
         terms=terms.view(axis.real.dtype),
-        transfer=tree.transfer / dc_response(own)[1][..., None].astype(axis.real.dtype),
+        transfer=tree.transfer / rest_transfer[..., None].astype(axis.real.dtype),
         edges=_edges(ratios, axis, shape),
         edge_row=edge_row,
         receivers=np.asarray(trees.receiver_offset)[net][:, None] + receivers,

@@ -22,6 +22,7 @@ from edgeplan.physics.crossings import (
 Array = NDArray[Any]
 
 SPREAD = 0.06  # of the transition; a straight edge has 0.025 between the two readings
+STRIP = 192  # rows whose differences stay in the cache
 FALLING = -5e-4  # slope per sample from which a row counts as falling
 
 
@@ -120,8 +121,10 @@ class Readings:
     ``ringback``                 lowest value after the first local maximum that follows the
                                  first reach of VIH, 1 where there is none
     ``slope_min_per_s``          lowest slope within the transition, swings per second
-    ``level_after``              level one observation time after the first 50 %
-    ``residual``                 largest distance from the final level after that time
+    ``level_after``              level one observation time after the first 50 %; where that is
+                                 after the window, 1 less the residual
+    ``residual``                 largest distance from the final level after that time, or in
+                                 the last period of ringing of the window
     ``guarded``                  a threshold lies within 1 % of a plateau or bump; the worse
                                  of the readings at +-1 % is then stored
     ============================ ==========================================================
@@ -196,7 +199,8 @@ def block_readings(
     later = sorted({kind[FIRST[way][1]] for way in directions})
     steps = _Steps(level, found)
     falling = _first_fall(level, first[1, later].min(axis=0))
-    tail = _tail(half + observe, level.shape[1])
+    latest = level.shape[1] - settle_trip
+    tail = _tail(half + observe, np.minimum(latest, 0.95 * level.shape[1]))
     lowest = lowest_from(level, np.concatenate([first[2, later], [falling, tail]]))
     last = last_readings(level, threshold[later], first[:, later], lowest[:-2])
     for way in directions:
@@ -204,7 +208,7 @@ def block_readings(
     index = np.concatenate([first, last], axis=1)
     target = np.concatenate([threshold, threshold[later]])
     result, result["guarded"] = _guarded_times(level, kind, index, target)
-    _drop_endless(result, kind, index, level.shape[1] - settle_trip)
+    _drop_endless(result, kind, index, latest)
     result["transition_s"] = result.pop("high") - result.pop("low")
     result["overshoot"] = overshoot(level)
     reached = first[1, later].min(axis=0) < level.shape[1]
@@ -265,7 +269,10 @@ class _Steps:
 def _first_fall(level: Array, start: Array) -> Array:
     """Index of the first sample from start on that the next one falls short of, or n."""
     rows, samples = level.shape
-    falls = level[:, 1:] - level[:, :-1] < FALLING
+    falls = np.empty((rows, samples - 1), dtype=bool)
+    for first in range(0, rows, STRIP):
+        strip = level[first : first + STRIP]
+        np.less(strip[:, 1:] - strip[:, :-1], FALLING, out=falls[first : first + STRIP])
     row = np.arange(rows)
     index = falls.argmax(axis=1)
     early = np.flatnonzero(falls[row, index] & (index < start))
@@ -312,13 +319,18 @@ def _guarded_times(
         spread = straight_time(level, row, index[2], target + guard)
         spread -= straight_time(level, row, index[0], target - guard)
         flagged = ~(spread <= allowed_spread(target) * transition)
-    which, where = np.nonzero(flagged)
-    early, late = time.copy(), time.copy()
-    for worse, reading, shift in ((early, 0, -guard), (late, 2, guard)):
+    early, late = time.copy(), time
+    for worse, reading, shift, names in (
+        (early, 0, -guard, set(kind) & set(EARLIER_IS_WORSE)),
+        (late, 2, guard, set(kind) - set(EARLIER_IS_WORSE)),
+    ):
+        own = np.zeros((len(target), 1), dtype=bool)
+        own[[kind[name] for name in names]] = True
+        which, where = np.nonzero(flagged & own)
         worse[which, where] = cubic_time(
             level, where, index[reading, which, where], target[which, where] + shift
         )
-    times = {name: (early if name in EARLIER_IS_WORSE else late)[own] for name, own in kind.items()}
+    times = {name: (early if name in EARLIER_IS_WORSE else late)[k] for name, k in kind.items()}
     return times, flagged.any(axis=0)
 
 
@@ -345,18 +357,18 @@ def _drop_endless(
             times[last] = np.where(again & (times[last] > latest), np.nan, times[last])
 
 
-def _tail(time: Array, samples: int) -> Array:
-    """First sample at or before a time, but not later than the last twentieth of the window."""
-    return np.asarray(np.fmin(time, int(0.95 * samples)).astype(np.intp))
+def _tail(time: Array, latest: Array) -> Array:
+    """First sample at or before a time, early enough for a period of ringing to follow."""
+    return np.asarray(np.maximum(np.fmin(time, latest), 0).astype(np.intp))
 
 
 def _level_at(level: Array, time: Array, residual: Array) -> Array:
-    """Level at a time, straight between samples; 1 beyond the window if it has settled."""
+    """Level at a time, straight between samples; beyond the window what ringing may leave of 1."""
     rows, samples = level.shape
     place = np.fmin(time, samples - 1.0)
     at = np.minimum(place.astype(np.intp), samples - 2)
     part = (place - at).astype(level.dtype)
     flat, begin = level.ravel(), np.arange(rows) * samples + at
     value = (1 - part) * flat[begin] + part * flat[begin + 1]
-    value = np.where(time > samples - 1, np.where(residual < GUARD, 1, np.nan), value)
+    value = np.where(time > samples - 1, 1 - residual, value)
     return np.where(np.isnan(time), np.nan, value)

@@ -192,14 +192,14 @@ def step_rows(
     wanted = float(np.max(np.asarray(duration_s) / step) / KEPT)
     length = max(SHORTEST, 2 ** int(np.ceil(np.log2(wanted))))
     grids = _one_grid(drive, step, length)
-    found = list(blocks(trees, drive, grids, shape=shape, precision=np.complex128))
-    receiver = np.concatenate([block.receiver for block in found])
-    candidate = np.concatenate([block.candidate for block in found])
+    parts = [
+        (np.array(block.level), block.net, block.candidate, block.receiver)
+        for block in blocks(trees, drive, grids, shape=shape, precision=np.complex128)
+    ]
+    level, net, candidate, receiver = (np.concatenate(part) for part in zip(*parts, strict=True))
     order = np.lexsort((candidate, receiver))
-    level = np.concatenate([block.level for block in found])[order]
-    net = np.concatenate([block.net for block in found])[order]
-    time = np.arange(level.shape[1]) * step[net, None]
-    return StepRows(time, level, net, candidate[order], receiver[order])
+    time = np.arange(level.shape[1]) * step[net[order], None]
+    return StepRows(time, level[order], net[order], candidate[order], receiver[order])
 
 
 def periodic_rows(

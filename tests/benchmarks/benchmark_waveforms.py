@@ -22,6 +22,7 @@ from skrf.media import DistributedCircuit
 from edgeplan.physics.grids import choose_grids, needs
 from edgeplan.physics.lines import LineConstants, dielectric_factor
 from edgeplan.physics.network import Trees
+from edgeplan.physics.row_blocks import LINES
 from edgeplan.physics.sources import Drive
 from edgeplan.physics.waveform_readings import Levels, levels_of
 from edgeplan.physics.waveforms import read
@@ -93,6 +94,7 @@ def seconds(work: Callable[[], object], repeats: int) -> float:
 
 def engine(trees: Trees, corners: list[Drive], levels: Levels, bit_s: np.ndarray) -> None:
     """Everything that is read, at both corners."""
+    LINES.rows.clear()
     for drive in corners:
         read(trees, drive, levels, bit_s)
 
@@ -109,15 +111,16 @@ def kernel(trees: Trees, corners: list[Drive], bit_s: np.ndarray) -> Callable[[]
             rows = int((counts * receivers[own]).sum())
             jobs.append((int(length), counts.tolist(), rows))
     rng = np.random.default_rng(0)
+    longest = max(length for length, _, _ in jobs)
+    numbers = rng.random((1536, longest + 2), dtype=np.float32)
+    weights = rng.random((CANDIDATES, 4), dtype=np.float32)
 
     def run() -> None:
         for length, counts, rows in jobs:
-            bins = length // 2 + 1
-            terms = rng.random((4, 2 * bins), dtype=np.float32)
-            weights = rng.random((max(counts), 4), dtype=np.float32)
+            terms = np.ascontiguousarray(numbers[:4, : length + 2])
+            spectrum = np.ascontiguousarray(numbers[:, : length + 2]).view(np.complex64)
             for count in counts:
                 weights[:count] @ terms
-            spectrum = rng.random((1536, 2 * bins), dtype=np.float32).view(np.complex64)
             for start in range(0, rows, 1536):
                 fft.irfft(spectrum[: min(1536, rows - start)], length, axis=1)
 

@@ -338,8 +338,31 @@ def test_level_after_an_endless_bit_is_the_final_one():
     result = read(
         point_to_point([0.1]), drive_of([[30.0]], ramp_s=1e-9), levels_of(0.3, 0.7, 1), [np.inf]
     )
-    assert result.level_after[0, 0] == 1
     assert result.residual[0, 0] < 2e-3
+    assert result.level_after[0, 0] == pytest.approx(1 - result.residual[0, 0])
+
+
+def test_arms_of_a_star_that_ring_against_each_other_are_reported():
+    # The driver sits in the node of the ringing between two nearly equal arms.
+    star = Trees(
+        segment_offset=np.array([0, 2]),
+        parent=np.array([-1, -1]),
+        length_m=np.array([0.02, 0.03]),
+        line=LineConstants(*(np.full(2, x) for x in (45.0, 6e-9, 0.0, 0.0, 0.0))),
+        node_farad=np.full(2, 2e-12),
+        node_siemens=np.zeros(2),
+        receiver_offset=np.array([0, 2]),
+        receiver_segment=np.array([0, 1]),
+        stub_length_m=np.zeros(1),
+        stub_line=LineConstants(*np.ones((5, 1))),
+    )
+    drive = drive_of([[22.5]], ramp_s=0.3e-9)
+    result = read(star, drive, levels_of(0.3, 0.7, 2), [1e-3])
+    rows = step_rows(star, drive, duration_s=12e-9)
+    late = np.abs(rows.level[:, rows.time_s[0] > 8e-9] - 1).max(axis=1)
+    assert (result.residual[:, 0] >= late).all()
+    assert (result.residual[:, 0] > 0.01).all()
+    np.testing.assert_allclose(result.level_after, 1 - result.residual)
 
 
 def test_overshoot_and_ringback_of_an_open_line_are_those_of_the_lattice():
