@@ -3,6 +3,7 @@
 from collections import defaultdict
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from typing import NamedTuple
 from math import isnan
 
 from edgeplan.board import Net, RouteSegment
@@ -10,6 +11,17 @@ from edgeplan.stack import Line
 
 SITE = "site"
 LineOf = Callable[[str, float], Line]
+Position = tuple[float, float]
+
+
+class _Step(NamedTuple):
+    """One way to leave a node: where it leads, over which line, from and to which position."""
+
+    end: str
+    length_m: float
+    line: Line
+    from_m: Position | None
+    to_m: Position | None
 
 
 class CannotRoute(Exception):  # noqa: N818 - a finding about one net, not a fault of the run
@@ -26,18 +38,23 @@ class CannotRoute(Exception):  # noqa: N818 - a finding about one net, not a fau
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Piece:
-    """One segment of a path; ``parent`` is its index in the path, -1 at the source end."""
+    """One segment of a path; ``parent`` is its index in the path, -1 at the source end.
+
+    ``end_m`` is the position of its far end on the board, None where none is stated. [m]
+    """
 
     parent: int
     length_m: float
     line: Line
+    end_m: Position | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Path:
     """A net as the engine sees it: the stub before the series resistor, then the tree.
 
-    ``receiver_piece`` holds, per receiver, the piece at whose far end it sits.
+    ``receiver_piece`` holds, per receiver, the piece at whose far end it sits; ``origin_m``
+    is the position of the resistor site (of the driver where there is none). [m]
     """
 
     stub_m: float
@@ -45,6 +62,13 @@ class Path:
     pieces: tuple[Piece, ...]
     receiver_piece: tuple[int, ...]
     notes: tuple[str, ...] = ()
+    origin_m: Position | None = None
+
+    @property
+    def is_placed(self) -> bool:
+        """Whether every end of the path has a position on the board."""
+        ends = [self.origin_m, *(piece.end_m for piece in self.pieces)]
+        return all(position is not None for position in ends)
 
     @property
     def main_length_m(self) -> float:
@@ -169,14 +193,15 @@ def _assumed_chain(
 
 def _routed(net: Net, routes: Sequence[RouteSegment], line_of: LineOf) -> Path:
     """Walk the route from the driver pin; what lies before the site is the stub."""
-    neighbours: dict[str, list[tuple[str, float, Line]]] = defaultdict(list)
+    neighbours: dict[str, list[_Step]] = defaultdict(list)
     for segment in routes:
         width = segment.width_m if segment.width_m is not None else net.width_m
         if width is None:
             raise CannotRoute("no trace width is given", value="width")
         line = _known_line(line_of(segment.layer, width))
-        neighbours[segment.start].append((segment.end, segment.length_m, line))
-        neighbours[segment.end].append((segment.start, segment.length_m, line))
+        ends = (segment.start_m, segment.end_m)
+        neighbours[segment.start].append(_Step(segment.end, segment.length_m, line, *ends))
+        neighbours[segment.end].append(_Step(segment.start, segment.length_m, line, *ends[::-1]))
     start = net.driver_pin[0] if net.driver_pin else ""
     if start not in neighbours:
         raise CannotRoute(f"the route does not start at the driver pin {start or '(none given)'}")
@@ -190,28 +215,27 @@ def _routed(net: Net, routes: Sequence[RouteSegment], line_of: LineOf) -> Path:
         stub_line=stub_line or pieces[0].line,
         pieces=tuple(pieces),
         receiver_piece=tuple(node_piece[pin] for pin in net.receiver_pin),
+        origin_m=next((step.from_m for step in neighbours[passed[-1]]), None),
     )
 
 
-def _stub(
-    start: str, neighbours: dict[str, list[tuple[str, float, Line]]]
-) -> tuple[float, Line | None, list[str]]:
+def _stub(start: str, neighbours: dict[str, list[_Step]]) -> tuple[float, Line | None, list[str]]:
     """Length and line from the driver pin to the site, and the nodes passed, the root last."""
     if SITE not in neighbours:
         return 0.0, None, [start]
     previous, node, length, line, passed = "", start, 0.0, None, [start]
     while node != SITE:
-        onward = [n for n in neighbours[node] if n[0] != previous]
+        onward = [step for step in neighbours[node] if step.end != previous]
         if len(onward) != 1:
             raise CannotRoute("the route branches between the driver pin and its resistor site")
-        previous, (node, step, line) = node, onward[0]
-        length += step
+        previous, node, line = node, onward[0].end, onward[0].line
+        length += onward[0].length_m
         passed.append(node)
     return length, line, passed
 
 
 def _walk(
-    passed: Sequence[str], neighbours: dict[str, list[tuple[str, float, Line]]]
+    passed: Sequence[str], neighbours: dict[str, list[_Step]]
 ) -> tuple[list[Piece], dict[str, int]]:
     """Pieces of the tree behind the last node passed, parents first."""
     seen = set(passed)
@@ -220,11 +244,13 @@ def _walk(
     pending = [(passed[-1], -1)]
     while pending:
         node, parent = pending.pop()
-        for end, length, line in neighbours[node]:
-            if end in seen:
+        for step in neighbours[node]:
+            if step.end in seen:
                 continue
-            seen.add(end)
-            pieces.append(Piece(parent=parent, length_m=length, line=line))
-            node_piece[end] = len(pieces) - 1
-            pending.append((end, len(pieces) - 1))
+            seen.add(step.end)
+            pieces.append(
+                Piece(parent=parent, length_m=step.length_m, line=step.line, end_m=step.to_m)
+            )
+            node_piece[step.end] = len(pieces) - 1
+            pending.append((step.end, len(pieces) - 1))
     return pieces, node_piece
