@@ -6,6 +6,8 @@ from types import ModuleType
 MECHANISMS = {
     "trace": "edgeplan.emission.trace",
     "cable": "edgeplan.emission.cable",
+    "inner_layer": "edgeplan.emission.inner_layer",
+    "measured_transfer": "edgeplan.emission.measured_transfer",
 }
 
 
