@@ -78,7 +78,7 @@ def first_reach(level: Array, threshold: Array) -> Array:
     """
     above = level >= threshold[:, None]
     index = above.argmax(axis=1)
-    index[~above[np.arange(len(level)), index]] = level.shape[1]
+    index[(index == 0) & ~above[:, 0]] = level.shape[1]
     return np.asarray(index)
 
 
@@ -104,7 +104,7 @@ def last_reach(level: Array, threshold: Array) -> Array:
     """
     below = (level < threshold[:, None])[:, ::-1]
     back = below.argmax(axis=1)
-    never = ~below[np.arange(len(level)), back]
+    never = (back == 0) & ~below[:, 0]
     return np.where(never, 0, level.shape[1] - back)
 
 

@@ -1,4 +1,4 @@
-"""Step responses of candidates in blocks of about 1,500 rows of one length, whatever the shape."""
+"""Step responses of candidates in blocks of up to 2,048 rows of one length, whatever the shape."""
 
 from collections.abc import Iterator
 from dataclasses import dataclass
@@ -21,9 +21,9 @@ from edgeplan.physics.sources import (
 
 Array = NDArray[Any]
 
-ROWS = 1536
-CACHED = 32_768  # spectral values of candidates at a time, so that they stay in the cache
-CHUNK_MEMBERS = 20_000  # candidates whose trees are solved in one pass
+ROWS = 2048
+CACHED = 65_536  # spectral values at a time, so that they stay in the cache until transformed
+CHUNK_MEMBERS = 40_000  # candidates whose trees are solved in one pass
 LINES = KnownLines()  # corners, ramps and repeated calls meet the same lines on the same grids
 
 
@@ -67,33 +67,38 @@ class Chunk:
 
 
 class _Rows:
-    """Spectra that wait for their transform, with the labels of their rows."""
+    """Waveforms that wait to be read, with the labels of their rows."""
 
-    def __init__(self, length: int, capacity: int, precision: Any) -> None:
+    def __init__(self, length: int, capacity: int, real: Any) -> None:
         self.length = length
         self.filled = 0
-        self.spectrum = np.empty((capacity, length // 2 + 1), dtype=precision)
+        self.growth = _growth(length, real)
+        self.level = np.empty((capacity, len(self.growth)), dtype=real)
         self.label = np.empty((3, capacity), dtype=np.intp)
         self.time = np.empty((2, capacity))
-        self.growth = _growth(length, self.spectrum.real.dtype)
-        self.level = np.empty((capacity, len(self.growth)), dtype=self.growth.dtype)
 
     def room(self) -> int:
         """Rows that still fit."""
-        return len(self.spectrum) - self.filled
+        return len(self.level) - self.filled
 
-    def take(self) -> Block:
-        """Transform what has come in and start again."""
-        rows = slice(0, self.filled)
-        wave = fft.irfft(self.spectrum[rows], self.length, axis=1, overwrite_x=True)
+    def put(self, spectrum: Array) -> slice:
+        """Transform some spectra, undo the damping, and tell which rows they fill."""
+        rows = slice(self.filled, self.filled + len(spectrum))
+        wave = fft.irfft(spectrum, self.length, axis=1, overwrite_x=True)
         level = self.level[rows]
         np.multiply(wave[:, : level.shape[1]], self.growth, out=level)
         level -= level.dtype.type(1 / np.expm1(DAMPING))
+        self.filled = rows.stop
+        return rows
+
+    def take(self) -> Block:
+        """Hand out what has come in and start again."""
+        rows = slice(0, self.filled)
         net, candidate, receiver = self.label[:, rows].copy()
         step_s, start_s = self.time[:, rows].copy()
         self.filled = 0
         return Block(
-            level=level,
+            level=self.level[rows],
             step_s=step_s,
             start_s=start_s,
             net=net,
@@ -165,8 +170,8 @@ def blocks(
     for length in np.unique(grids.length):
         tasks = np.flatnonzero(grids.length == length)
         tasks = tasks[np.argsort(net_shape[grids.net[tasks]], kind="stable")]
-        waiting = _Rows(int(length), max(rows, int(receivers.max())), precision)
         axis = damped_axis(int(length)).astype(precision)
+        waiting = _Rows(int(length), max(rows, int(receivers.max())), axis.real.dtype)
         for part in _chunks(tasks, net_shape[grids.net[tasks]], members[tasks]):
             yield from _fill(solve(trees, drive, grids, part, axis, shape, LINES), waiting)
         if waiting.filled:
@@ -260,30 +265,24 @@ def _edges(ratios: Array, axis: Array, shape: str) -> Array:
 
 
 def _fill(chunk: Chunk, waiting: _Rows) -> Iterator[Block]:
-    """Spectra of the candidates of a chunk, passed on whenever the waiting rows are full."""
+    """Waveforms of the candidates of a chunk, passed on whenever the waiting rows are full."""
     at, receivers = 0, chunk.receivers.shape[1]
+    few = max(1, CACHED // (chunk.edges.shape[1] * receivers))
     while at < len(chunk.candidate):
         fit = waiting.room() // receivers
         if not fit:
             yield waiting.take()
             continue
-        part = slice(at, min(at + fit, len(chunk.candidate)))
-        rows = slice(waiting.filled, waiting.filled + (part.stop - at) * receivers)
-        spectra(chunk, part, waiting.spectrum[rows])
-        _label(chunk, part, waiting, rows)
-        waiting.filled, at = rows.stop, part.stop
+        part = slice(at, min(at + min(fit, few), len(chunk.candidate)))
+        _label(chunk, part, waiting, waiting.put(spectra(chunk, part)))
+        at = part.stop
 
 
-def spectra(chunk: Chunk, part: slice, out: Array) -> None:
-    """Write the spectrum of every row, E H / D, in the order candidate, receiver."""
-    shaped = out.reshape(part.stop - part.start, -1, out.shape[-1])
-    few = max(1, CACHED // out.shape[-1])
-    for start in range(part.start, part.stop, few):
-        own = slice(start, min(start + few, part.stop))
-        source = reciprocal(_ratios(chunk, own).view(out.dtype))
-        source *= chunk.edges[chunk.edge_row[own]]
-        to = shaped[own.start - part.start : own.stop - part.start]
-        np.multiply(source[:, None], chunk.transfer[chunk.task[own]], out=to)
+def spectra(chunk: Chunk, part: slice) -> Array:
+    """Spectrum of every row, E H / D, in the order candidate, receiver."""
+    source = reciprocal(_ratios(chunk, part))
+    source *= chunk.edges[chunk.edge_row[part]]
+    return (source[:, None] * chunk.transfer[chunk.task[part]]).reshape(-1, source.shape[1])
 
 
 def _ratios(chunk: Chunk, own: slice) -> Array:
@@ -294,7 +293,7 @@ def _ratios(chunk: Chunk, own: slice) -> Array:
         end = min(int(chunk.first[task + 1]), own.stop)
         to = result[begin - own.start : end - own.start]
         np.matmul(chunk.weights[begin:end], chunk.terms[task], out=to)
-    return result
+    return result.view(chunk.edges.dtype)
 
 
 def _label(chunk: Chunk, part: slice, waiting: _Rows, rows: slice) -> None:

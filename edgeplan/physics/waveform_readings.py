@@ -194,31 +194,71 @@ def block_readings(
     guard = level.dtype.type(GUARD)
     found = edges(level, threshold.min(axis=0) - guard, threshold.max(axis=0) + guard)
     first = first_readings(level, threshold, found)
-    row = np.arange(len(level))
-    half = cubic_time(level, row, first[1, kind["half_s"]], threshold[kind["half_s"]])
-    later = sorted({kind[FIRST[way][1]] for way in directions})
-    steps = _Steps(level, found)
-    falling = _first_fall(level, first[1, later].min(axis=0))
-    latest = level.shape[1] - settle_trip
-    tail = _tail(half + observe, np.minimum(latest, 0.95 * level.shape[1]))
-    lowest = lowest_from(level, np.concatenate([first[2, later], [falling, tail]]))
-    last = last_readings(level, threshold[later], first[:, later], lowest[:-2])
-    for way in directions:
-        kind[LAST[way]] = len(threshold) + later.index(kind[FIRST[way][1]])
-    index = np.concatenate([first, last], axis=1)
-    target = np.concatenate([threshold, threshold[later]])
-    result, result["guarded"] = _guarded_times(level, kind, index, target)
-    _drop_endless(result, kind, index, latest)
+    row = np.broadcast_to(np.arange(len(level)), threshold.shape)
+    plain = cubic_time(level, row, first[1], threshold)
+    transition = plain[kind["high"]] - plain[kind["low"]]
+    early, late, flagged = _worse(level, row, first, threshold, plain, transition)
+    result = {name: (early if name in EARLIER_IS_WORSE else late)[k] for name, k in kind.items()}
     result["transition_s"] = result.pop("high") - result.pop("low")
+    low, high = first[1, kind["low"]], first[1, kind["high"]]
+    result["slope_min_per_s"] = _lowest_step(level, found, low, high - 1)
     result["overshoot"] = overshoot(level)
-    reached = first[1, later].min(axis=0) < level.shape[1]
-    none = np.where(reached, 1, np.nan)
-    result["ringback"] = np.where(falling < level.shape[1], lowest[-2], none)
-    result["slope_min_per_s"] = steps.lowest(first[1, kind["low"]], first[1, kind["high"]] - 1)
-    result["residual"] = np.maximum(1 - lowest[-1], highest_after(level, tail) - 1)
-    result["level_after"] = _level_at(level, half + observe, result["residual"])
-    result["residual"] = np.where(np.isnan(half), np.nan, result["residual"])
+    later = sorted({kind[FIRST[way][1]] for way in directions})
+    end = _Ending(
+        level=level,
+        first=first[:, later],
+        target=threshold[later],
+        late=late[later],
+        transition=transition,
+        after=plain[kind["half_s"]] + observe,
+        latest=level.shape[1] - settle_trip,
+    )
+    last, again = end.read(result)
+    result["guarded"] = flagged.any(axis=0) | again
+    for way in directions:
+        result[LAST[way]] = last[later.index(kind[FIRST[way][1]])]
     return result
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Ending:
+    """What follows the first reach of the q later thresholds (3, q, M): dips, levels, residual."""
+
+    level: Array
+    first: Array
+    target: Array
+    late: Array
+    transition: Array
+    after: Array
+    latest: Array
+
+    def read(self, result: dict[str, Array]) -> tuple[Array, Array]:
+        """Write ringback, level and residual; return last crossings (q, M) and their guard."""
+        level, samples = self.level, self.level.shape[1]
+        reached = self.first[1].min(axis=0)
+        falling = _first_fall(level, reached)
+        tail = np.fmin(self.after, np.minimum(self.latest, 0.95 * samples))
+        tail = np.maximum(tail, 0).astype(np.intp)
+        lowest = lowest_from(level, np.concatenate([self.first[2], [falling, tail]]))
+        none = np.where(reached < samples, 1, np.nan)
+        result["ringback"] = np.where(falling < samples, lowest[-2], none)
+        residual = np.maximum(1 - lowest[-1], highest_after(level, tail) - 1)
+        result["residual"] = np.where(np.isnan(self.after), np.nan, residual)
+        result["level_after"] = _level_at(level, self.after, residual)
+        return self._last(lowest[:-2])
+
+    def _last(self, lowest: Array) -> tuple[Array, Array]:
+        """Last crossings, the first ones where there is no other; NaN where more may follow."""
+        last = last_readings(self.level, self.target, self.first, lowest)
+        time, guarded = self.late.copy(), np.zeros(len(self.level), dtype=bool)
+        which, row = np.nonzero((last != self.first).any(axis=0))
+        index, own = last[:, which, row], self.target[which, row]
+        plain = cubic_time(self.level, row, index[1], own)
+        _, late, flagged = _worse(self.level, row, index, own, plain, self.transition[row])
+        dips = index[1] != self.first[1, which, row]
+        time[which, row] = np.where(dips & (late > self.latest[row]), np.nan, late)
+        guarded[row[flagged]] = True
+        return time, guarded
 
 
 def overshoot(level: Array) -> Array:
@@ -249,21 +289,13 @@ def overshoot(level: Array) -> Array:
     return np.asarray(np.maximum(np.maximum(at + rise, np.maximum(before, after)) - 1, 0))
 
 
-class _Steps:
-    """Differences between samples near the edges, and elsewhere where an edge is long."""
-
-    def __init__(self, level: Array, found: Edges) -> None:
-        self.level = level
-        self.found = found
-        self.near = found.near[:, 1:] - found.near[:, :-1]
-
-    def lowest(self, start: Array, stop: Array) -> Array:
-        """Lowest difference from start to before stop, at least the one at start."""
-        begin, long = self.found.begin, self.found.long
-        result = lowest_between(self.near, np.maximum(start - begin, 0), stop - begin)
-        level = self.level[long]
-        result[long] = lowest_between(level[:, 1:] - level[:, :-1], start[long], stop[long])
-        return result
+def _lowest_step(level: Array, found: Edges, start: Array, stop: Array) -> Array:
+    """Lowest difference between samples from start to before stop, at least the one at start."""
+    near, begin, long = found
+    result = lowest_between(near[:, 1:] - near[:, :-1], np.maximum(start - begin, 0), stop - begin)
+    rows = level[long]
+    result[long] = lowest_between(rows[:, 1:] - rows[:, :-1], start[long], stop[long])
+    return result
 
 
 def _first_fall(level: Array, start: Array) -> Array:
@@ -307,31 +339,20 @@ def _thresholds(
     return kind, np.stack(distinct)
 
 
-def _guarded_times(
-    level: Array, kind: dict[str, int], index: Array, target: Array
-) -> tuple[dict[str, Array], Array]:
-    """Times of every crossing, the worse where the readings at +-1 % differ, and which rows do."""
+def _worse(
+    level: Array, row: Array, index: Array, target: Array, plain: Array, transition: Array
+) -> tuple[Array, Array, Array]:
+    """Times with the earlier and with the later of the readings at +-1 % where they differ."""
     guard = level.dtype.type(GUARD)
-    row = np.broadcast_to(np.arange(len(level)), target.shape)
-    time = cubic_time(level, row, index[1], target)
-    transition = time[kind["high"]] - time[kind["low"]]
     with np.errstate(invalid="ignore"):  # never reached: infinity less infinity, flagged
         spread = straight_time(level, row, index[2], target + guard)
         spread -= straight_time(level, row, index[0], target - guard)
         flagged = ~(spread <= allowed_spread(target) * transition)
-    early, late = time.copy(), time
-    for worse, reading, shift, names in (
-        (early, 0, -guard, set(kind) & set(EARLIER_IS_WORSE)),
-        (late, 2, guard, set(kind) - set(EARLIER_IS_WORSE)),
-    ):
-        own = np.zeros((len(target), 1), dtype=bool)
-        own[[kind[name] for name in names]] = True
-        which, where = np.nonzero(flagged & own)
-        worse[which, where] = cubic_time(
-            level, where, index[reading, which, where], target[which, where] + shift
-        )
-    times = {name: (early if name in EARLIER_IS_WORSE else late)[k] for name, k in kind.items()}
-    return times, flagged.any(axis=0)
+    early, late = plain.copy(), plain.copy()
+    where = np.nonzero(flagged)
+    for worse, reading, shift in ((early, 0, -guard), (late, 2, guard)):
+        worse[where] = cubic_time(level, row[where], index[reading][where], target[where] + shift)
+    return early, late, flagged
 
 
 def allowed_spread(threshold: Array) -> Array:
@@ -345,21 +366,6 @@ def allowed_spread(threshold: Array) -> Array:
     rest = np.maximum(1 - threshold, 2 * GUARD)
     pole = np.log((rest + GUARD) / (rest - GUARD)) / np.log(9)
     return np.asarray(np.maximum(SPREAD, 1.25 * pole))
-
-
-def _drop_endless(
-    times: dict[str, Array], kind: dict[str, int], index: Array, latest: Array
-) -> None:
-    """Forget last crossings after a dip so near the end of the window that more may follow."""
-    for way, last in LAST.items():
-        if last in kind:
-            again = index[1, kind[last]] != index[1, kind[FIRST[way][1]]]
-            times[last] = np.where(again & (times[last] > latest), np.nan, times[last])
-
-
-def _tail(time: Array, latest: Array) -> Array:
-    """First sample at or before a time, early enough for a period of ringing to follow."""
-    return np.asarray(np.maximum(np.fmin(time, latest), 0).astype(np.intp))
 
 
 def _level_at(level: Array, time: Array, residual: Array) -> Array:

@@ -370,8 +370,7 @@ def _period(
     """Periodic state of one net: levels, net, candidate, receiver."""
     chunk = solve(trees, drive, grids, np.array([task]), axis, shape, KnownLines())
     count, receivers = len(chunk.candidate), chunk.receivers.shape[1]
-    spectrum = np.empty((count * receivers, len(axis)), dtype=complex)
-    spectra(chunk, slice(0, count), spectrum)
+    spectrum = spectra(chunk, slice(0, count))
     length, net = 2 * (len(axis) - 1), int(chunk.net[0])
     spectrum *= 1 - np.exp(-axis * duty[net] * length)
     spectrum[:, 0] = duty[net] * length

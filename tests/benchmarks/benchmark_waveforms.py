@@ -112,7 +112,7 @@ def kernel(trees: Trees, corners: list[Drive], bit_s: np.ndarray) -> Callable[[]
             jobs.append((int(length), counts.tolist(), rows))
     rng = np.random.default_rng(0)
     longest = max(length for length, _, _ in jobs)
-    numbers = rng.random((1536, longest + 2), dtype=np.float32)
+    numbers = rng.random((2048, longest + 2), dtype=np.float32)
     weights = rng.random((CANDIDATES, 4), dtype=np.float32)
 
     def run() -> None:
@@ -121,8 +121,8 @@ def kernel(trees: Trees, corners: list[Drive], bit_s: np.ndarray) -> Callable[[]
             spectrum = np.ascontiguousarray(numbers[:, : length + 2]).view(np.complex64)
             for count in counts:
                 weights[:count] @ terms
-            for start in range(0, rows, 1536):
-                fft.irfft(spectrum[: min(1536, rows - start)], length, axis=1)
+            for start in range(0, rows, 2048):
+                fft.irfft(spectrum[: min(2048, rows - start)], length, axis=1)
 
     return run
 
