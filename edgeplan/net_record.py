@@ -77,6 +77,7 @@ class NetDraft:
     every: Evaluation | None
     every_row: int
     row: int
+    remarks: tuple[str, ...]
     pictures: Pictures | None
 
 
@@ -136,7 +137,7 @@ def write(draft: NetDraft) -> NetResult:
         candidates=candidates,
         checks=checks,
         remedies=list(draft.remedies),
-        notes=list(facts.path.notes),
+        notes=[*facts.path.notes, *draft.remarks],
         pictures=draft.pictures,
     )
 

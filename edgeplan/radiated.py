@@ -18,13 +18,12 @@ from edgeplan.drives import DIRECTIONS
 from edgeplan.emission import cable as cable_part
 from edgeplan.emission import trace as trace_part
 from edgeplan.emission.mechanism import Cable as RadiatingCable
-from edgeplan.emission.mechanism import RadiationInputs
 from edgeplan.emission_lines import EmissionLines, lines_of
 from edgeplan.emission_target import Target, target_of
-from edgeplan.nets import NetFacts, Nets
+from edgeplan.net_fields import fields_per_volt
+from edgeplan.nets import Nets
 from edgeplan.physics.edge_factor import null_free_edge_factor
 from edgeplan.physics.floor_reflection import near_field_factor, site_factor
-from edgeplan.physics.lines import LineConstants, propagation
 from edgeplan.physics.network import response
 from edgeplan.physics.sources import source_terms, source_weights, stub_chain
 from edgeplan.results import Missing
@@ -297,7 +296,9 @@ def _reasons(
             because[i] = "neither clock_mhz nor data_mbps is given"
             missing[i] = Missing(value="clock_mhz or data_mbps", of=f"net {f.net.net}")
         elif np.isnan(passive.trace[i]).all():
-            because[i] = "the net runs on an inner layer: its emission is not judged"
+            because[i] = (
+                "what the net radiates is not known: no surface layer, or a line without height"
+            )
         elif passive.unreached[i]:
             because[i] = f"the table of {passive.unreached[i]} does not reach every judged line"
             missing[i] = Missing(value="attenuation", of=passive.unreached[i])
@@ -333,15 +334,10 @@ def _unreached(radiation: Radiation, lines: EmissionLines) -> tuple[str, ...]:
 def _passive(radiation: Radiation, nets: Nets) -> Passive:
     """Work out what a block of nets radiates per volt of source."""
     lines = lines_of(nets.facts, radiation.target)
-    terms, forward = _network(nets, lines.frequency_hz)
-    inputs = _inputs(radiation, nets, lines.frequency_hz)
+    terms = _network(nets, lines.frequency_hz)
     cables = _cables(radiation, lines.frequency_hz)
-    up_to = cable_part.field_per_forward_ampere(_with_cables(inputs, cables), lines.frequency_hz)
-    surface = np.array([f.path.main_line.surface for f in nets.facts])
-    known = np.where(surface, 1.0, np.nan)[:, None] * forward
-    trace = trace_part.field_per_forward_ampere(inputs, lines.frequency_hz)
-    trace = trace * _enclosure(radiation.board, lines.frequency_hz) * known
-    up_to = up_to * known
+    trace, up_to = fields_per_volt(radiation.board, cables, nets, lines.frequency_hz)
+    trace = trace * _enclosure(radiation.board, lines.frequency_hz)
     expected = up_to * 10 ** (cable_part.MODEL.offset_db / 20)
     judged = up_to if radiation.target.statistic == "worst-case" else expected
     fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to)
@@ -408,71 +404,18 @@ def _against_budget(
     )
 
 
-def _network(nets: Nets, frequency_hz: Array) -> tuple[Array, Array]:
-    """Terms of D (N, 6, F) and the forward wave per volt at node 0 (N, F), fast corner."""
+def _network(nets: Nets, frequency_hz: Array) -> Array:
+    """Terms of D at the judged lines, fast corner. (N, 6, F)"""
     trees = nets.trees["fast"]
     s = 2j * np.pi * frequency_hz
     terms = np.empty((len(nets), 6, frequency_hz.shape[1]), dtype=np.complex64)
-    forward = np.empty(frequency_hz.shape)
     for index in trees.shapes():
         group = trees.take(index)
         rows = np.arange(len(index))
         admittance = response(group, s[index]).admittance
         chain = stub_chain(group, s[index], rows) if np.any(group.stub_length_m > 0) else None
         terms[index] = source_terms(admittance, s[index], chain=chain)
-        line = LineConstants(*(c[group.segment_offset[:-1], None] for c in group.line))
-        _, characteristic = propagation(s[index], line)
-        forward[index] = np.abs(1 / characteristic + admittance) / 2
-    return terms, forward
-
-
-def _inputs(radiation: Radiation, nets: Nets, frequency_hz: Array) -> RadiationInputs:
-    """Geometry of the nets as straight traces, with the load at their last receiver."""
-    facts = nets.facts
-    size = radiation.board.file.board.size_m
-    main = [f.path.main_line for f in facts]
-    line = LineConstants(
-        *(np.array([getattr(m, name) for m in main])[:, None] for name in LineConstants._fields)
-    )
-    s = 2j * np.pi * frequency_hz
-    gamma, characteristic = propagation(s, line)
-    trees = nets.trees["fast"]
-    last = trees.segment_offset[:-1] + np.array([f.path.receiver_piece[-1] for f in facts])
-    load = s * trees.node_farad[last][:, None] + trees.node_siemens[last][:, None]
-    own = 1 / characteristic
-    half_width = 0.5 * min(size)
-    return RadiationInputs(
-        length_m=_column([f.path.main_length_m for f in facts]),
-        height_m=_column([m.height_m for m in main]),
-        permittivity=_column([m.permittivity for m in main]),
-        permittivity_effective=_column([m.permittivity_effective for m in main]),
-        impedance_ohm=_column([m.impedance_ohm for m in main]),
-        side_offset_m=_column([_offset_m(f, half_width) for f in facts]),
-        board_length_m=np.array(max(size)),
-        board_width_m=np.array(min(size)),
-        load_reflection=(own - load) / (own + load),
-        propagation_per_m=gamma,
-    )
-
-
-def _column(values: Sequence[float]) -> Array:
-    """Values per net as (N, 1)."""
-    return np.array(values, dtype=float)[:, None]
-
-
-def _offset_m(facts: NetFacts, half_width_m: float) -> float:
-    """Distance of the trace from the board's centre line; centred where nothing is stated."""
-    side = facts.net.side_distance_m
-    return 0.0 if side is None else max(half_width_m - side, 0.0)
-
-
-def _with_cables(
-    inputs: RadiationInputs, cables: tuple[RadiatingCable, ...] | None
-) -> RadiationInputs:
-    """The same nets with their cables."""
-    from dataclasses import replace
-
-    return replace(inputs, cables=cables)
+    return terms
 
 
 def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...] | None:

@@ -16,12 +16,13 @@ from edgeplan.candidates import Candidates, drawn_ohm
 from edgeplan.caution import CAUTION
 from edgeplan.choice import per_net, remedies, settles
 from edgeplan.drives import CORNERS
-from edgeplan.emission import MECHANISMS, mechanism_of
+from edgeplan.emission import mechanism_of
 from edgeplan.errors import InputError, Problem
 from edgeplan.evaluate import Bench, evaluate
 from edgeplan.names import natural_key
+from edgeplan.net_fields import INNER, kind_of, remarks
 from edgeplan.nets import Blocked, NetFacts
-from edgeplan.radiated import Passive, source_levels
+from edgeplan.radiated import NONE, Passive, source_levels
 from edgeplan.results import (
     VERDICTS,
     ArrayChoice,
@@ -141,7 +142,7 @@ def results(draft: Draft) -> Results:
             unverified=[*target.unverified, *_unverified_levels(draft.facts)],
         ),
         conditions=Conditions(corners=list(CORNERS), states=_states(draft.facts)),
-        models=_models(),
+        models=_models(draft),
         assumptions=_assumptions(draft),
         nets=nets,
         not_judged=sorted(not_judged, key=lambda n: natural_key(n.net)),
@@ -167,26 +168,30 @@ def _states(facts: tuple[NetFacts, ...]) -> list[str]:
     return ["boot", "run"] if boot else ["run"]
 
 
-def _models() -> list[ModelNote]:
-    """Models that levels rest on."""
-    notes = []
-    for name in MECHANISMS:
-        model = mechanism_of(name).MODEL
-        notes.append(
-            ModelNote(
-                model=model.name,
-                version=model.version,
-                error_db=Spread(low=-model.error_db, high=model.error_db),
-                source=model.source,
-            )
+def _models(draft: Draft) -> list[ModelNote]:
+    """Models that the levels of this board rest on."""
+    used = ["trace"]
+    if draft.bench_now.radiation.cable_state != NONE:
+        used.append("cable")
+    if any(kind_of(f) == INNER for f in draft.facts):
+        used.append("inner_layer")
+    models = [mechanism_of(name).MODEL for name in used]
+    return [
+        ModelNote(
+            model=model.name.replace("_", " "),
+            version=model.version,
+            error_db=Spread(low=-model.error_db, high=model.error_db),
+            source=model.source,
         )
-    return notes
+        for model in models
+    ]
 
 
 def _judged(draft: Draft) -> list[NetResult]:
     """Every net that was simulated."""
     sentences = settles.minimum_edges(draft.facts, draft.board, draft.bench_now)
     advice = _remedies(draft)
+    highest_hz = draft.bench_now.radiation.target.highest_hz
     found = []
     for block in draft.blocks:
         states = {
@@ -213,6 +218,7 @@ def _judged(draft: Draft) -> list[NetResult]:
                         every=every if shown else None,
                         every_row=row,
                         row=i,
+                        remarks=tuple(remarks(facts, highest_hz)),
                         pictures=pictures_of.draw(block, row, draft) if shown else None,
                     )
                 )

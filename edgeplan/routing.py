@@ -3,8 +3,8 @@
 from collections import defaultdict
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from typing import NamedTuple
 from math import isnan
+from typing import NamedTuple
 
 from edgeplan.board import Net, RouteSegment
 from edgeplan.stack import Line

@@ -29,6 +29,7 @@ class Line:
     width_m: float
     surface: bool = True
     height_m: float = nan
+    plane_gap_m: float = nan
     permittivity: float = nan
     permittivity_effective: float = nan
     impedance_ohm: float = nan
@@ -36,6 +37,7 @@ class Line:
     resistance_dc_ohm_per_m: float = nan
     skin_ohm_per_m_rthz: float = nan
     loss_tangent: float = nan
+    planes: tuple[str, ...] = ()
     provenance: str = COMPUTED
     problem: str = ""
 
@@ -49,6 +51,7 @@ class _Surroundings:
     above_permittivity: float
     below_permittivity: float
     loss_tangent: float
+    planes: tuple[str, ...]
 
 
 def _series_permittivity(dielectrics: Sequence[Layer]) -> float:
@@ -57,17 +60,17 @@ def _series_permittivity(dielectrics: Sequence[Layer]) -> float:
     return total / sum(d.thickness_m / (d.permittivity or nan) for d in dielectrics)
 
 
-def _towards(stack: Sequence[Layer], start: int, step: int) -> tuple[list[Layer], bool]:
-    """Dielectrics up to the next copper in one direction, and whether that is a plane."""
+def _towards(stack: Sequence[Layer], start: int, step: int) -> tuple[list[Layer], str]:
+    """Dielectrics up to the next plane in one direction, and its name; empty where none lies."""
     found: list[Layer] = []
     index = start + step
     while 0 <= index < len(stack):
         if stack[index].kind == "plane":
-            return found, True
+            return found, stack[index].layer
         if stack[index].kind == "dielectric":
             found.append(stack[index])
         index += step
-    return found, False
+    return found, ""
 
 
 def _surroundings(stack: Sequence[Layer], index: int) -> _Surroundings:
@@ -82,6 +85,7 @@ def _surroundings(stack: Sequence[Layer], index: int) -> _Surroundings:
         above_permittivity=_series_permittivity(above) if plane_above and above else nan,
         below_permittivity=_series_permittivity(below) if plane_below and below else nan,
         loss_tangent=max(tangents),
+        planes=tuple(name for name in (plane_above, plane_below) if name),
     )
 
 
@@ -143,6 +147,7 @@ def _inner_line(line: Line, thickness_m: float, around: _Surroundings) -> Line:
         line,
         surface=False,
         height_m=low,
+        plane_gap_m=low + high + thickness_m,
         permittivity=mean,
         permittivity_effective=mean,
         impedance_ohm=impedance,
@@ -169,7 +174,7 @@ def _computed(stack: Sequence[Layer], index: int, width_m: float) -> Line:
     """A line from the stack alone, without any stated impedance."""
     layer = stack[index]
     around = _surroundings(stack, index)
-    line = Line(layer=layer.layer, width_m=width_m)
+    line = Line(layer=layer.layer, width_m=width_m, planes=around.planes)
     heights = [h for h in (around.above_m, around.below_m) if not isnan(h)]
     outer = index == 0 or index == len(stack) - 1
     if not heights or min(heights) <= 0:
@@ -291,3 +296,36 @@ def _cached(
     if table:
         return _from_table(line, table)
     return _with_stated_impedance(line, stack, index)
+
+
+def surface_line(stack: Sequence[Layer], width_m: float) -> Line | None:
+    """The line of one width on the first surface layer whose constants are known.
+
+    Parameters
+    ----------
+    stack : sequence of Layer
+        The stack, top first.
+    width_m : float
+        Width of the trace. [m]
+
+    Returns
+    -------
+    Line or None
+        None where neither the top nor the bottom layer carries signals over a plane.
+
+    Examples
+    --------
+    >>> stack = (
+    ...     Layer(layer="L1", kind="signal", thickness_m=35e-6),
+    ...     Layer(layer="D1", kind="dielectric", thickness_m=0.11e-3, permittivity=4.2),
+    ...     Layer(layer="L2", kind="plane", thickness_m=18e-6),
+    ... )
+    >>> surface_line(stack, 0.18e-3).layer
+    'L1'
+    """
+    for layer in (stack[0], stack[-1]):
+        if layer.kind == "signal":
+            line = printed_line(stack, layer.layer, width_m)
+            if line.surface and not line.problem:
+                return line
+    return None

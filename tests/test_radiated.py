@@ -290,17 +290,19 @@ def test_an_enclosure_table_is_not_extrapolated_either():
     assert found.missing[0].of == "the enclosure"
 
 
-def test_a_net_on_an_inner_layer_is_open():
-    inner = [
-        STACK[2],
-        STACK[1] | {"layer": "D0"},
-        {"layer": "L1", "kind": "signal", "thickness_m": 18e-6},
-        STACK[1],
-        STACK[4],
-    ]
-    found = judge(the_board(stack=inner))
+INNER = [
+    STACK[2],
+    STACK[1] | {"layer": "D0"},
+    {"layer": "L1", "kind": "signal", "thickness_m": 18e-6},
+    STACK[1],
+    STACK[4],
+]
+
+
+def test_a_net_between_planes_without_any_surface_layer_is_open():
+    found = judge(the_board(stack=INNER))
     assert found.open[0, 0]
-    assert "inner layer" in found.because[0]
+    assert "no surface layer" in found.because[0]
 
 
 def test_a_net_without_a_rate_is_open_and_asks_for_one():

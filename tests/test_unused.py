@@ -36,8 +36,10 @@ def test_each_kind_of_input_is_named_once(changes, word):
     assert word in found[0]
 
 
-def test_coordinates_are_named_and_lengths_alone_are_not():
+def test_the_side_of_one_cable_counts_for_nets_with_positions():
     plain = segment("U1.1", "U2.1", 0.04)
     placed = segment("U1.1", "U2.1", 0.04, start_m=(0.0, 0.0), end_m=(0.04, 0.0))
-    assert unused_values(board(net(), routes=[plain])) == []
-    assert "coordinates of routes" in unused_values(board(net(), routes=[placed]))[0]
+    one = {"cable": [CABLE | {"side": "left"}]}
+    assert unused_values(board(net(), routes=[placed], **one)) == []
+    assert unused_values(board(net(), routes=[plain], **one))
+    assert unused_values(board(net(), routes=[placed], cable=[*one["cable"], CABLE]))

@@ -63,7 +63,7 @@ def field_per_forward_ampere(paths: RadiationInputs, frequency_hz: ArrayLike) ->
     if not cables:
         return np.zeros(np.broadcast_shapes(frequency_hz.shape, paths.load_reflection.shape))
     voltage = _one_cable if len(cables) == 1 else _several_cables
-    return voltage(paths, frequency_hz) * _strongest_antenna(paths, cables, frequency_hz)
+    return voltage(paths, frequency_hz) * strongest_antenna(paths, cables, frequency_hz)
 
 
 def _one_cable(paths: RadiationInputs, frequency_hz: Array) -> Array:
@@ -111,7 +111,7 @@ def _board(
     return ends, 2 * np.pi * frequency_hz / SPEED_OF_LIGHT_M_PER_S, ratio, height
 
 
-def _strongest_antenna(
+def strongest_antenna(
     paths: RadiationInputs, cables: Sequence[Cable], frequency_hz: Array
 ) -> Array:
     """Largest antenna factor after each cable's own attenuation.
