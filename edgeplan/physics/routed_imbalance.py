@@ -85,9 +85,10 @@ def common_mode_per_volt(
     along a segment counts by its extent along the axis, as the current flows that way;
     its charge counts by its whole length: a trace across the board drives it too. One
     cable of unknown side: the largest of the four; several or unknown cables: the
-    larger of both axes. Inner segments (a plane gap) leak by `edge_leakage`. The
-    full-wave error of the straight form (+0.4 dB, standard deviation 1.6 dB, one cable
-    along the trace) was not measured for bends.
+    larger of both axes. Inner segments (a plane gap) leak by `edge_leakage`. Against 180
+    full-wave runs of straight, bent and crossing traces with one cable at a known side:
+    +1.2 dB, standard deviation 2.6 dB, -9 to +8 dB (lowest where drop and charge nearly
+    cancel); for any cables never more than 4.6 dB low.
 
     Examples
     --------
