@@ -20,7 +20,7 @@ SETTLED = 1e-3  # of the swing: what is left after one bit counts from here on
 OVERLAP = 0.5  # of a bit: an edge as long as this may meet the next one before it is done
 SAMPLES_PER_BIT = 32
 STEPS_PER_SAMPLE = 5  # of the engine, so that a ramp of a sixteenth of a bit has ten steps
-BITS = 8  # length of the pulse that is folded
+BITS = 12  # length of the pulse that is folded
 SHORTEST_OF_PERIOD = 1000  # a shorter ramp would have to ring hundreds of round trips to matter
 ROWS = 512  # waveforms held at once
 
@@ -166,7 +166,8 @@ def _later(step: Array, worst: Array, threshold: Array) -> Array:
         cubic_time(level, row, last_reach(level, threshold), threshold) for level in (step, worst)
     )
     later = np.maximum(crowded - alone, 0.0)
-    return np.where(np.isnan(crowded) & np.isfinite(alone), np.inf, later)
+    never = float(worst.shape[1])  # the whole stretch looked at: no pattern got there
+    return np.where(np.isnan(crowded) & np.isfinite(alone), never, later)
 
 
 def _last_crossing(time_s: Array, level: Array, threshold: Array) -> Array:

@@ -96,7 +96,13 @@ def evaluate(nets: Nets, candidates: Candidates, bench: Bench) -> Evaluation:
     if boot is not None:
         received += receive(nets, boot, bench.tolerance, state="boot")
         radiated.append(bench.radiation.judge(nets, boot, bench.tolerance, state="boot"))
-    seen = Seen(nets=nets, candidates=candidates, received=received, strobe=bench.strobe)
+    seen = Seen(
+        nets=nets,
+        candidates=candidates,
+        received=received,
+        strobe=bench.strobe,
+        tolerance=bench.tolerance,
+    )
     tables = [
         *timing.checks_of(nets.facts[0].timing)(seen),
         *fidelity.checks_of("overshoot")(seen),

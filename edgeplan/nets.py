@@ -58,8 +58,8 @@ class NetFacts:
     def bit_s(self) -> float:
         """Shortest time between two edges: half a clock period or one bit; NaN if not given."""
         if self.activity == "clock" and self.net.clock_hz:
-            duty = self.interface.duty
-            return min(duty, 1 - duty) / self.net.clock_hz
+            duty, tolerance = self.interface.duty, self.interface.duty_tolerance
+            return (min(duty, 1 - duty) - tolerance) / self.net.clock_hz
         if self.net.data_bps:
             return 1 / self.net.data_bps
         return 0.5 / self.net.clock_hz if self.net.clock_hz else nan

@@ -68,6 +68,7 @@ class Seen:
     candidates: Candidates
     received: tuple[Received, ...]
     strobe: Mapping[str, Mapping[tuple[str, str], float]]
+    tolerance: float
 
     @property
     def shape(self) -> tuple[int, int]:

@@ -171,8 +171,15 @@ def seen_of(
     nets = lossless(nets_of(board))
     if candidates is None:
         candidates = list_drawn(nets) if drawn else list_candidates(nets, board.file.resistors)
-    received = receive(nets, candidates, board.file.resistors.tolerance)
-    return Seen(nets=nets, candidates=candidates, received=received, strobe=strobe or {})
+    tolerance = board.file.resistors.tolerance
+    received = receive(nets, candidates, tolerance)
+    return Seen(
+        nets=nets,
+        candidates=candidates,
+        received=received,
+        strobe=strobe or {},
+        tolerance=tolerance,
+    )
 
 
 def checks_of(board: Board, **changes: Any) -> dict[str, CheckTable]:

@@ -14,8 +14,6 @@ from edgeplan.received import Seen
 from edgeplan.results import Missing
 from edgeplan.timing import _stated, _transition
 
-RESISTOR_TOLERANCE = 0.05
-
 
 def checks(seen: Seen) -> list[CheckTable]:
     """Rise by the pull-up, sink current, and the falling edge's own transition.
@@ -57,7 +55,7 @@ def _rise(seen: Seen) -> CheckTable:
     low, high = nets.transition_low["slow"], nets.transition_high["slow"]
     factor = np.log((1 - low) / (1 - high))[:, None]
     constant = seen.candidates.pull_up_ohm * bus_capacitance_f(seen)[:, None]
-    rise = factor * (constant * (1 + RESISTOR_TOLERANCE))[nets.receiver_net]
+    rise = factor * (constant * (1 + seen.tolerance))[nets.receiver_net]
     limit = nets.longest_transition_s[:, None]
     worst.add(nets.first_receiver, rise, limit, limit, ("slow", "rising", "run"))
     for i, f in enumerate(nets.facts):
@@ -77,7 +75,7 @@ def _sink(seen: Seen) -> CheckTable:
     limit = _stated.per_net(nets.facts, lambda f: f.interface.sink_current_a)
     low = np.nan_to_num(_stated.per_net(nets.facts, lambda f: f.interface.output_low_v))
     across = seen.per_receiver(nets.swing_v["fast"] - low)
-    current = across / (seen.candidates.pull_up_ohm[nets.receiver_net] * (1 - RESISTOR_TOLERANCE))
+    current = across / (seen.candidates.pull_up_ohm[nets.receiver_net] * (1 - seen.tolerance))
     judged = seen.per_receiver(limit)
     worst.add(nets.first_receiver, current, judged, judged, ("fast", "falling", "run"))
     return worst.table()
