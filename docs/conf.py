@@ -21,7 +21,7 @@ extensions = [
 ]
 myst_enable_extensions = ["colon_fence", "dollarmath"]
 myst_heading_anchors = 3
-exclude_patterns = ["_build", "_generated"]
+exclude_patterns = ["_build"]
 nitpicky = False
 
 autodoc_default_options = {"exclude-members": "model_config"}
@@ -38,6 +38,21 @@ suppress_warnings = ["ref.python"]  # "Band" is a word of two rooms; their pages
 
 REFERENCE = re.compile(r"^(\s*)\.\. \[(\d+)\] ")
 HERE = Path(__file__).parent
+GENERATED = HERE / "_generated"
+PACKAGE = HERE.parent / "edgeplan"
+ROOMS = {
+    "formulas": ("Formulas", "Arrays in, arrays out; nothing of a board.", ["physics"]),
+    "checks": ("Emission, timing and shape", "A module each.", ["emission", "timing", "fidelity"]),
+    "tables": ("Limits and levels", "Shipped tables and their look-up.", ["limits", "levels"]),
+}
+MODULE = """
+## {name}
+
+```{{eval-rst}}
+.. automodule:: edgeplan.{name}
+   :members:
+```
+"""
 
 
 def draw(_app: Sphinx) -> None:
@@ -45,10 +60,20 @@ def draw(_app: Sphinx) -> None:
     from edgeplan.plan import explain
     from edgeplan.reports import pictures
 
-    picture = HERE / "_generated" / "lamp_clk.svg"
-    picture.parent.mkdir(exist_ok=True)
+    picture = GENERATED / "lamp_clk.svg"
+    GENERATED.mkdir(exist_ok=True)
     results = explain(HERE.parent / "examples" / "starter", "LAMP_CLK")
     picture.write_bytes(pictures.draw(results, ".svg"))
+
+
+def list_modules(_app: Sphinx) -> None:
+    """Write a page per room with all of its modules, so that a new file needs no entry."""
+    GENERATED.mkdir(exist_ok=True)
+    for page, (title, text, rooms) in ROOMS.items():
+        files = [p for room in rooms for p in sorted((PACKAGE / room).glob("[!_]*.py"))]
+        names = [f"{path.parent.name}.{path.stem}" for path in files]
+        modules = "".join(MODULE.format(name=name) for name in names)
+        (GENERATED / f"{page}.md").write_text(f"# {title}\n\n{text}\n{modules}", "utf-8")
 
 
 def list_references(
@@ -59,6 +84,7 @@ def list_references(
 
 
 def setup(app: Sphinx) -> None:
-    """Draw before the pages are read; go over docstrings before they are parsed."""
+    """Draw and list before the pages are read; go over docstrings before they are parsed."""
     app.connect("builder-inited", draw)
+    app.connect("builder-inited", list_modules)
     app.connect("autodoc-process-docstring", list_references, priority=400)

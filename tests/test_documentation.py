@@ -20,7 +20,7 @@ from edgeplan.units import QUANTITIES
 ROOT = Path(__file__).parents[1]
 DOCS = ROOT / "docs"
 PAGES = [ROOT / "README.md", ROOT / "DEVELOPERS.md"]
-PAGES += [p for p in sorted(DOCS.rglob("*.md")) if "_build" not in p.parts]
+PAGES += [p for p in sorted(DOCS.rglob("*.md")) if not {"_build", "_generated"} & {*p.parts}]
 BOARD = schemas.board_schema()
 
 OUTPUT = re.compile(r"<!-- output of: edgeplan (.+?) -->\n```text\n(.*?)```", re.DOTALL)

@@ -57,7 +57,7 @@ def end_states(trees: Trees, s: ArrayLike) -> EndStates:
     Examples
     --------
     A quarter of a wave, open at its end: no current there, and the near voltage is that
-    of the far current's dual, |V_far| = |I_near| Z.
+    of the far current's dual, ``|V_far| = |I_near| Z``.
 
     >>> from edgeplan.physics.network import point_to_point
     >>> state = end_states(point_to_point([0.1], receiver_siemens=1e-9), [0.5j * np.pi / 0.6e-9])
