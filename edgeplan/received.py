@@ -155,7 +155,7 @@ def _received(
         else ("fall_first_s", "fall_first_low_s", "fall_last_s")
     )
     periodic = np.isfinite(between.transition_s)
-    shared = ("overshoot", "ringback", "level_after", "residual", "guarded")
+    shared = ("overshoot", "level_after", "residual", "guarded")
     return Received(
         corner=corner,
         edge=edge,
@@ -165,6 +165,7 @@ def _received(
         last_s=getattr(readings, last),
         transition_s=np.where(periodic, between.transition_s, readings.transition_s),
         slope_min=readings.slope_min_per_s,
+        ringback=readings.rise_ringback if rising else readings.fall_ringback,
         start_level=low if rising else 1 - high,
         end_level=high if rising else 1 - low,
         reference_s=reference_s[nets.receiver_net][:, None],

@@ -21,6 +21,7 @@ from edgeplan.physics.crossings import (
 
 Array = NDArray[Any]
 
+WHOLE_SPAN = 0.8  # of the levels that the allowed spread is a share of: 10 to 90 %
 SPREAD = 0.06  # of the transition; a straight edge has 0.025 between the two readings
 STRIP = 192  # rows whose differences stay in the cache
 FALLING = -5e-4  # slope per sample from which a row counts as falling
@@ -118,8 +119,9 @@ class Readings:
     ``half_s``                   first 50 %
     ``transition_s``             first low to first high level of the transition
     ``overshoot``                peak over the final level, fraction of the swing
-    ``ringback``                 lowest value after the first local maximum that follows the
+    ``rise_ringback``            lowest value after the first local maximum that follows the
                                  first reach of VIH, 1 where there is none
+    ``fall_ringback``            the same for the mirrored edge, after 1 - VIL
     ``slope_min_per_s``          lowest slope within the transition, swings per second
     ``level_after``              level one observation time after the first 50 %; where that is
                                  after the window, 1 less the residual
@@ -139,7 +141,8 @@ class Readings:
     half_s: Array
     transition_s: Array
     overshoot: Array
-    ringback: Array
+    rise_ringback: Array
+    fall_ringback: Array
     slope_min_per_s: Array
     level_after: Array
     residual: Array
@@ -152,6 +155,7 @@ FIRST = {
     "fall": ("fall_first_s", "fall_first_low_s"),
 }
 LAST = {"rise": "rise_last_s", "fall": "fall_last_s"}
+RINGBACK = {"rise": "rise_ringback", "fall": "fall_ringback"}
 EARLIER_IS_WORSE = ("rise_first_s", "fall_first_s", "low")
 
 
@@ -197,6 +201,8 @@ def block_readings(
     row = np.broadcast_to(np.arange(len(level)), threshold.shape)
     plain = cubic_time(level, row, first[1], threshold)
     transition = plain[kind["high"]] - plain[kind["low"]]
+    span = np.asarray(levels.transition_high) - np.asarray(levels.transition_low)
+    transition = transition * (WHOLE_SPAN / span).astype(level.dtype)
     early, late, flagged = _worse(level, row, first, threshold, plain, transition)
     result = {name: (early if name in EARLIER_IS_WORSE else late)[k] for name, k in kind.items()}
     result["transition_s"] = result.pop("high") - result.pop("low")
@@ -213,10 +219,11 @@ def block_readings(
         after=plain[kind["half_s"]] + observe,
         latest=level.shape[1] - settle_trip,
     )
-    last, again = end.read(result)
+    last, again, ringback = end.read(result)
     result["guarded"] = flagged.any(axis=0) | again
     for way in directions:
-        result[LAST[way]] = last[later.index(kind[FIRST[way][1]])]
+        own = later.index(kind[FIRST[way][1]])
+        result[LAST[way]], result[RINGBACK[way]] = last[own], ringback[own]
     return result
 
 
@@ -232,20 +239,31 @@ class _Ending:
     after: Array
     latest: Array
 
-    def read(self, result: dict[str, Array]) -> tuple[Array, Array]:
-        """Write ringback, level and residual; return last crossings (q, M) and their guard."""
+    def read(self, result: dict[str, Array]) -> tuple[Array, Array, Array]:
+        """Write level and residual; return last crossings, their guard (M,) and ringback (q, M)."""
         level, samples = self.level, self.level.shape[1]
-        reached = self.first[1].min(axis=0)
-        falling = _first_fall(level, reached)
+        reached = self.first[1]
+        falling = self._falls(reached)
         tail = np.fmin(self.after, np.minimum(self.latest, 0.95 * samples))
         tail = np.maximum(tail, 0).astype(np.intp)
-        lowest = lowest_from(level, np.concatenate([self.first[2], [falling, tail]]))
+        count = len(reached)
+        lowest = lowest_from(level, np.concatenate([self.first[2], falling, tail[None]]))
         none = np.where(reached < samples, 1, np.nan)
-        result["ringback"] = np.where(falling < samples, lowest[-2], none)
+        ringback = np.where(falling < samples, lowest[count : 2 * count], none)
         residual = np.maximum(1 - lowest[-1], highest_after(level, tail) - 1)
         result["residual"] = np.where(np.isnan(self.after), np.nan, residual)
         result["level_after"] = _level_at(level, self.after, residual)
-        return self._last(lowest[:-2])
+        return (*self._last(lowest[:count]), ringback)
+
+    def _falls(self, reached: Array) -> Array:
+        """Where each row first falls after it reached each threshold (q, M)."""
+        earliest = reached.min(axis=0)
+        falling = np.repeat(_first_fall(self.level, earliest)[None], len(reached), axis=0)
+        for own, start in zip(falling, reached, strict=True):
+            again = np.flatnonzero(own < start)
+            if again.size:
+                own[again] = _first_fall(self.level[again], start[again])
+        return falling
 
     def _last(self, lowest: Array) -> tuple[Array, Array]:
         """Last crossings, the first ones where there is no other; NaN where more may follow."""

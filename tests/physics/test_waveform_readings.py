@@ -37,7 +37,8 @@ def test_straight_edge_is_read_where_it_crosses():
         "transition_s": 16.0,
         "slope_min_per_s": 0.05,
         "overshoot": 0.0,
-        "ringback": 1.0,
+        "rise_ringback": 1.0,
+        "fall_ringback": 1.0,
         "level_after": 1.0,
         "residual": 0.0,
     }
@@ -57,7 +58,7 @@ def test_dip_through_a_threshold_moves_the_last_crossing_only():
     found = readings_of(dip)
     assert found["rise_first_high_s"] == pytest.approx(34.0, abs=0.05)
     assert 80 < found["rise_last_s"] < 90
-    assert found["ringback"] == pytest.approx(0.5, abs=1e-3)
+    assert found["rise_ringback"] == pytest.approx(0.5, abs=1e-3)
 
 
 def test_dip_at_the_end_of_the_window_leaves_the_last_crossing_unknown():
@@ -184,3 +185,11 @@ def test_readings_are_those_of_steps_four_times_finer():
         assert max(errors[name]) < limit, name
     assert np.percentile(errors["half_s"], 90) < 0.3e-12
     assert np.percentile(errors["overshoot"], 90) < 1e-3
+
+
+def test_a_pause_between_both_thresholds_is_no_ringback_of_the_later_one():
+    """A row that pauses at 0.7: over VIH at 0.6 it falls back to 0.65, over 1 - VIL at 0.8 never."""
+    pause = np.interp(np.arange(200), [20, 40, 50, 60, 80], [0.0, 0.7, 0.65, 0.7, 1.0])
+    found = readings_of(pause, levels=(0.2, 0.6))
+    assert found["rise_ringback"] == pytest.approx(0.65, abs=1e-3)
+    assert found["fall_ringback"] == 1.0

@@ -371,7 +371,7 @@ def test_overshoot_and_ringback_of_an_open_line_are_those_of_the_lattice():
         point_to_point([0.2]), drive_of([[15.0]], ramp_s=0.2e-9), levels_of(0.3, 0.7, 1), [20e-9]
     )
     assert result.overshoot[0, 0] == pytest.approx(0.53846, abs=3e-3)
-    assert result.ringback[0, 0] == pytest.approx(0.71006, abs=3e-3)
+    assert result.rise_ringback[0, 0] == pytest.approx(0.71006, abs=3e-3)
 
 
 def test_raised_cosine_through_one_pole_crosses_where_its_closed_form_does():
