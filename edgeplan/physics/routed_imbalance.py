@@ -160,7 +160,10 @@ def _heights(
     shape = near_m.shape
     impedance = np.asarray(trees.line.impedance_ohm).reshape(shape)
     effective = (SPEED_OF_LIGHT_M_PER_S * np.asarray(trees.line.delay_s_per_m).reshape(shape)) ** 2
-    permittivity, height_m = layout.permittivity.reshape(shape), layout.height_m.reshape(shape)
+    permittivity, height_m = (
+        layout.permittivity.reshape(shape),
+        layout.known_height_m().reshape(shape),
+    )
     gap_m = np.zeros(shape) if layout.plane_gap_m is None else layout.plane_gap_m.reshape(shape)
     inner = gap_m > 0
     magnetic, electric = np.zeros(shape), np.zeros(shape)

@@ -60,6 +60,17 @@ class Layout(NamedTuple):
             None if self.plane_gap_m is None else self.plane_gap_m[rows],
         )
 
+    def known_height_m(self) -> Array:
+        """Heights over the plane, NaN where it is not known whether there are two planes. [m]
+
+        >>> empty = np.zeros((2, 2))
+        >>> Layout(empty, empty, np.zeros(2), np.ones(2), np.arange(3),
+        ...        np.array([1e-3, np.nan])).known_height_m().tolist()
+        [0.0, nan]
+        """
+        gap_m = 0.0 if self.plane_gap_m is None else self.plane_gap_m
+        return np.where(np.isnan(gap_m), np.nan, self.height_m)
+
     def nodes_m(self, parent: Array) -> tuple[Array, Array]:
         """Near and far end of each segment of G trees of one shape, ``(G, segments, 2)``. [m]
 
@@ -211,7 +222,7 @@ def _segments(trees: Trees, layout: Layout, states: EndStates) -> list[_Segment]
     places = (
         along[..., 0],
         along[..., 1],
-        layout.height_m.reshape(count, -1),
+        layout.known_height_m().reshape(count, -1),
         1 / layout.permittivity.reshape(count, -1),
     )
     per_volt = states.gamma_per_m / states.impedance_ohm

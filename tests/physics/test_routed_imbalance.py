@@ -7,7 +7,7 @@ from scipy.integrate import quad_vec
 from edgeplan.physics import imbalance, network
 from edgeplan.physics.lines import LineConstants, propagation
 from edgeplan.physics.routed_imbalance import common_mode_per_volt
-from edgeplan.physics.routed_radiation import Layout
+from edgeplan.physics.routed_radiation import Layout, routed_field_per_volt
 from edgeplan.physics.stripline_leakage import edge_leakage
 from edgeplan.physics.tree_currents import end_states
 
@@ -221,3 +221,12 @@ def test_an_unknown_net_is_unknown_and_stays_alone():
     for volts in common_mode_per_volt(trees, layout, BAND_HZ, SIZE_M):
         assert np.all(np.isnan(volts[0]))
         assert np.all(np.isfinite(volts[1]))
+
+
+def test_a_line_with_an_unknown_number_of_planes_is_unknown_and_not_silent():
+    # a covered strip over one plane radiates; without its height it must not count as hidden
+    for volts in common_mode_per_volt(*routed([(25, 50), (125, 50)], gap=np.nan), BAND_HZ, SIZE_M):
+        assert np.all(np.isnan(volts))
+    assert np.all(
+        np.isnan(routed_field_per_volt(*routed([(25, 50), (125, 50)], gap=np.nan), BAND_HZ))
+    )
