@@ -188,7 +188,7 @@ def test_readings_are_those_of_steps_four_times_finer():
 
 
 def test_a_pause_between_both_thresholds_is_no_ringback_of_the_later_one():
-    """A row that pauses at 0.7: over VIH at 0.6 it falls back to 0.65, over 1 - VIL at 0.8 never."""
+    """A pause at 0.7: over VIH at 0.6 it falls back to 0.65, over 1 - VIL at 0.8 never."""
     pause = np.interp(np.arange(200), [20, 40, 50, 60, 80], [0.0, 0.7, 0.65, 0.7, 1.0])
     found = readings_of(pause, levels=(0.2, 0.6))
     assert found["rise_ringback"] == pytest.approx(0.65, abs=1e-3)
