@@ -6,6 +6,7 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy import fft
 
 from edgeplan.nets import Nets
 from edgeplan.physics import waveforms
@@ -22,6 +23,7 @@ SAMPLES_PER_BIT = 32
 STEPS_PER_SAMPLE = 5  # of the engine, so that a ramp of a sixteenth of a bit has ten steps
 BITS = 12  # length of the pulse that is folded
 SHORTEST_OF_PERIOD = 1000  # a shorter ramp would have to ring hundreds of round trips to matter
+SAMPLES_PER_PERIOD = 2048  # of a steady state, so that its ends are cut to a thousandth
 ROWS = 512  # waveforms held at once
 
 
@@ -220,7 +222,7 @@ def _steady_state(
     facts = [nets.facts[i] for i in index]
     period = np.array([1 / (f.net.clock_hz or np.nan) for f in facts])
     duty = np.array([f.interface.duty for f in facts])
-    found = waveforms.periodic_rows(trees.take(index), drive, period, duty)
+    found = _finer(waveforms.periodic_rows(trees.take(index), drive, period, duty))
     receiver, candidate = _place(nets, index, found)
     low = np.asarray(levels.threshold_low)[receiver]
     high = np.asarray(levels.threshold_high)[receiver]
@@ -245,6 +247,17 @@ def _steady_state(
     spread = _last_crossing(time, half, stop) - _last_crossing(time, half, start)
     # An edge that does not reach the level takes at least until it is driven again.
     effects.transition_s[receiver, candidate] = np.where(reached, spread, period[found.net])
+
+
+def _finer(rows: waveforms.StepRows) -> waveforms.StepRows:
+    """The same periods on more samples: exact, since a period is the sum of its harmonics."""
+    count = rows.level.shape[1]
+    if count >= SAMPLES_PER_PERIOD:
+        return rows
+    ratio = SAMPLES_PER_PERIOD / count
+    level = ratio * fft.irfft(fft.rfft(rows.level, axis=1), SAMPLES_PER_PERIOD, axis=1)
+    time = np.arange(SAMPLES_PER_PERIOD) * rows.time_s[:, 1:2] / ratio
+    return rows._replace(time_s=time, level=level)
 
 
 def _delays_s(nets: Nets) -> Array:

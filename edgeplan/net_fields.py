@@ -212,15 +212,15 @@ def _effective_volts(
 def _layout(nets: Nets) -> Layout:
     """Positions, heights and permittivities of all segments."""
     pieces = [piece for f in nets.facts for piece in f.path.pieces]
-    surface = np.array([p.line.surface for p in pieces])
     height = np.array([p.line.height_m for p in pieces])
+    gap = np.nan_to_num([p.line.plane_gap_m for p in pieces])  # a covered strip over one plane: 0
     return Layout(
         origin_m=np.array([f.path.origin_m for f in nets.facts], dtype=float),
         end_m=np.array([p.end_m for p in pieces], dtype=float),
-        height_m=np.where(surface, height, 0.0),
+        height_m=np.where(gap > 0, 0.0, height),
         permittivity=np.array([p.line.permittivity for p in pieces]),
         segment_offset=np.asarray(nets.trees["fast"].segment_offset),
-        plane_gap_m=np.where(surface, 0.0, [p.line.plane_gap_m for p in pieces]),
+        plane_gap_m=gap,
     )
 
 
@@ -283,7 +283,9 @@ def _ends(nets: Nets, frequency_hz: Array) -> tuple[Array, Array, Array, Array]:
         states = end_states(trees.take(index), 2j * np.pi * frequency_hz[index])
         rows = np.arange(len(index))
         last = np.array([nets.facts[i].path.receiver_piece[-1] for i in index])
-        found[0][index], found[1][index] = states.near_volt[:, 0], states.near_ampere[:, 0]
+        roots = np.asarray(trees.take(index).parent).reshape(len(index), -1)[0] < 0
+        found[0][index] = states.near_volt[:, 0]
+        found[1][index] = states.near_ampere[:, roots].sum(axis=1)
         found[2][index] = states.far_volt[rows, last]
         found[3][index] = states.far_ampere[rows, last]
     return found[0], found[1], found[2], found[3]

@@ -15,7 +15,7 @@ from edgeplan.scoring import blocks_of
 from edgeplan.verdicts import judge
 from edgeplan.windows import StateWindow, solve
 
-NETS = 2000
+NETS = 2000  # about 40 s on an idle core
 SEED = 20261201
 NEAR = 2e-3  # windows are refined to two thousandths of an edge
 
@@ -53,14 +53,18 @@ def _factors(window: StateWindow, count: int) -> np.ndarray:
 
 
 def test_every_ramp_between_both_ends_of_a_window_passes_every_check():
+    """Up to the stated error of each check: near an end, a finer grid may read it that much off."""
     swept = 0
     for nets, state, _, windows, bench in _solved():
         factors = np.stack([_factors(w, 60) for w in windows])
         ramps = state.with_ramps(factors)
         evaluation = evaluate(nets, ramps, bench)
-        failing = ramps.exists & ~evaluation.passes
-        names = {t.check: int(((t.fails | t.open) & ramps.exists).sum()) for t in evaluation.tables}
-        assert not failing.any(), names
+        for t in evaluation.tables:
+            beyond = (t.fails | t.open) & ramps.exists & ~(t.margin >= -2 * t.error_high)
+            assert not beyond.any(), (
+                t.check,
+                [nets.facts[i].net.net for i in np.nonzero(beyond)[0]],
+            )
         swept += int(ramps.exists.sum())
     assert swept > 30_000  # most windows are open, and each was swept at 60 ramps
 
@@ -111,7 +115,11 @@ def _ends(board, end: str) -> dict[str, float]:
 
 
 def test_more_available_time_never_shortens_the_slowest_allowed_edge():
-    tight = random_board(150, 5)
+    tight = random_board(
+        100,
+        5,
+        receiver=[{"name": n, "capacitance_f": c} for n, c in (("in_a", 5e-12), ("in_b", 8e-12))],
+    )
     interfaces = [
         i.model_copy(
             update={
@@ -132,8 +140,8 @@ def test_more_available_time_never_shortens_the_slowest_allowed_edge():
 
 
 def test_more_cable_attenuation_never_lengthens_the_fastest_acceptable_edge():
-    loud = random_board(150, 6)
-    quiet = random_board(150, 6, cable=[{"name": "mains", "length_m": 1.5, "attenuation_db": 14.0}])
+    loud = random_board(100, 6)
+    quiet = random_board(100, 6, cable=[{"name": "mains", "length_m": 1.5, "attenuation_db": 14.0}])
     before, after = _ends(loud, "fastest"), _ends(quiet, "fastest")
     for name in before:
         if np.isfinite(before[name]):
@@ -143,11 +151,11 @@ def test_more_cable_attenuation_never_lengthens_the_fastest_acceptable_edge():
 
 @pytest.mark.parametrize("seed", [11, 12])
 def test_the_proposed_edge_of_an_inside_net_lies_in_its_own_window(seed, monkeypatch):
-    board = random_board(120, seed)
+    board = random_board(80, seed)
     monkeypatch.setattr(plan, "read_board", lambda _: board)
     found = plan.plan("any")
     inside = [n for n in found.nets if n.verdict_after == "inside"]
-    assert len(inside) > 40
+    assert len(inside) > 25
     for net in inside:
         own = net.window_after
         edge, slowest = net.edge_after_s.typical, own.slowest_allowed.edge_s

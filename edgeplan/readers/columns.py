@@ -55,7 +55,7 @@ def _length(name: str, field: str, meaning: str, *, zero: bool = True) -> Column
 
 def _coordinate(name: str) -> Column:
     """Return a column of board coordinates, which may lie on either side of the origin."""
-    meaning = "coordinate on the board, any origin"
+    meaning = "coordinate from the lower left corner of the board"
     return Column(
         name=name, field=name, meaning=meaning, kind="number", units=LENGTH_UNITS, lowest=None
     )
