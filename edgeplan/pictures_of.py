@@ -1,11 +1,12 @@
 """Waveforms and spectra of one net as drawn and as proposed, for pictures."""
 
-from typing import TYPE_CHECKING, Any, Literal
+from typing import Any, Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
 from edgeplan.candidates import Candidates, drive, setting_table
+from edgeplan.draft import Draft
 from edgeplan.emission_lines import is_data
 from edgeplan.emission_target import Target
 from edgeplan.nets import Nets
@@ -16,9 +17,6 @@ from edgeplan.radiated import Passive, source_levels
 from edgeplan.results import Pictures, Spectrum, Trace
 from edgeplan.scoring import Block
 
-if TYPE_CHECKING:
-    from edgeplan.record import Draft
-
 Array = NDArray[Any]
 
 SAMPLES = 240
@@ -26,7 +24,7 @@ STEPS_PER_RAMP = 40  # so that a drawn curve shows no corners
 When = Literal["now", "after"]
 
 
-def draw(block: Block, row: int, draft: "Draft") -> Pictures:
+def draw(block: Block, row: int, draft: Draft) -> Pictures:
     """Received waveforms at both corners and the judged spectrum, now and after.
 
     Parameters

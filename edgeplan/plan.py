@@ -2,7 +2,6 @@
 
 from collections import Counter
 from collections.abc import Callable
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
@@ -13,6 +12,7 @@ from edgeplan import record, scoring
 from edgeplan.board import Board
 from edgeplan.candidates import AS_DRAWN, drawn_ohm
 from edgeplan.choice import per_net
+from edgeplan.draft import Draft, State
 from edgeplan.evaluate import Bench, Evaluation, evaluate, strobe_flights
 from edgeplan.nets import NetFacts, resolve
 from edgeplan.radiated import radiation_of
@@ -24,15 +24,6 @@ from edgeplan.windows import StateWindow, solve
 Array = NDArray[Any]
 
 ROUNDS = 8  # of choosing again after an edge fell outside its own window
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class State:
-    """One candidate per net: its checks (one column) and its window, in board order."""
-
-    chosen: Array
-    evaluation: dict[int, tuple[Evaluation, int]]
-    window: dict[int, StateWindow]
 
 
 def plan(
@@ -122,7 +113,7 @@ def _run(
     else:
         scores, after, after_bench = _choose(blocks, facts, drawn_bench, now, jobs, progress)
     able = scoring.can_pass(facts, board, after_bench, scores)
-    draft = record.Draft(
+    draft = Draft(
         board=board,
         command=command,
         facts=tuple(facts),

@@ -3,9 +3,8 @@
 import hashlib
 from collections import Counter, defaultdict
 from collections.abc import Iterator
-from dataclasses import dataclass
 from math import isnan
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,6 +14,7 @@ from edgeplan.board import Board
 from edgeplan.candidates import Candidates, drawn_ohm
 from edgeplan.caution import CAUTION
 from edgeplan.choice import per_net, remedies, settles
+from edgeplan.draft import Draft, State
 from edgeplan.drives import CORNERS
 from edgeplan.emission import mechanism_of
 from edgeplan.errors import InputError, Problem
@@ -48,11 +48,8 @@ from edgeplan.results import (
     Window,
     WindowEnd,
 )
-from edgeplan.scoring import Block, Scores
+from edgeplan.scoring import Block
 from edgeplan.windows import launched_edge_s
-
-if TYPE_CHECKING:
-    from edgeplan.plan import State
 
 Array = NDArray[Any]
 
@@ -62,25 +59,6 @@ RULES = {
     "no window": "window-closed",
     "undecided": "edge-undecided",
 }
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Draft:
-    """Everything a run found, before it is written down."""
-
-    board: Board
-    command: str
-    facts: tuple[NetFacts, ...]
-    blocked: tuple[Blocked, ...]
-    blocks: tuple[Block, ...]
-    scores: Scores
-    now: "State"
-    after: "State"
-    bench_now: Bench
-    bench_after: Bench
-    can_pass: Array
-    undecided: str
-    only: str
 
 
 def find_net(board: Board, name: str) -> str:
@@ -233,7 +211,7 @@ def _every(block: Block, draft: Draft) -> Any:
     return evaluate(block.nets, block.candidates, draft.bench_after)
 
 
-def _net_states(block: Block, state: "State", bench: Bench) -> list[net_record.NetState]:
+def _net_states(block: Block, state: State, bench: Bench) -> list[net_record.NetState]:
     """One state of every net of a block."""
     column = block.candidates.state(state.chosen[block.index])
     edges = {c: launched_edge_s(block.nets, column, c)[:, 0] for c in ("slow", "fast")}
