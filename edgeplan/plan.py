@@ -2,6 +2,7 @@
 
 from collections import Counter
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -10,11 +11,11 @@ from numpy.typing import NDArray
 
 from edgeplan import record, scoring
 from edgeplan.board import Board
-from edgeplan.candidates import AS_DRAWN, drawn_ohm
+from edgeplan.candidates import AS_DRAWN, Candidates, drawn_ohm
 from edgeplan.choice import per_net
 from edgeplan.draft import Draft, State
 from edgeplan.evaluate import Bench, Evaluation, evaluate, strobe_flights
-from edgeplan.nets import NetFacts, resolve
+from edgeplan.nets import NetFacts, Nets, resolve
 from edgeplan.radiated import radiation_of
 from edgeplan.readers import read_board
 from edgeplan.results import Results
@@ -106,7 +107,7 @@ def _run(
     blocks = scoring.blocks_of(facts, board, drawn_only=command == "check")
     nothing = np.zeros(len(facts), dtype=int)
     drawn_bench = bench.with_strobe(_flights(blocks, facts, nothing, bench))
-    now = _state(blocks, nothing, drawn_bench, progress)
+    now = _state(blocks, nothing, drawn_bench, jobs, progress)
     if command == "check":
         scores = _gathered(blocks, facts, drawn_bench, jobs, progress)
         after, after_bench = now, drawn_bench
@@ -183,7 +184,7 @@ def _choose(
             scores = _gathered(blocks, facts, bench, jobs, progress)
             chosen = _chosen(facts, scores, allowed, common)
             state = None
-        state = _state(blocks, chosen, bench, progress, known=state)
+        state = _state(blocks, chosen, bench, jobs, progress, known=state)
         lucky = [
             i
             for i, k in enumerate(chosen)
@@ -222,31 +223,30 @@ def _state(
     blocks: list[Block],
     chosen: Array,
     bench: Bench,
+    jobs: int,
     progress: Progress | None,
     known: State | None = None,
 ) -> State:
     """Checks and windows of one candidate per net; what did not change is kept."""
-    evaluations: dict[int, tuple[Evaluation, int]] = {}
-    windows: dict[int, StateWindow] = {}
-    for done, block in enumerate(blocks):
-        if progress is not None:
-            progress("solving windows", done / len(blocks))
-        fresh = [
-            row
-            for row, i in enumerate(block.index)
-            if known is None or known.chosen[i] != chosen[i]
-        ]
-        if known is not None:
-            for i in block.index:
-                evaluations[int(i)] = known.evaluation[int(i)]
-                windows[int(i)] = known.window[int(i)]
-        if not fresh:
-            continue
-        nets = block.nets.take(fresh)
-        state = block.candidates.take(fresh).state(chosen[block.index[fresh]])
-        evaluation = evaluate(nets, state, bench)
-        for row, window in enumerate(solve(nets, state, bench)):
-            i = int(block.index[fresh[row]])
-            evaluations[i] = (evaluation, row)
-            windows[i] = window
+    evaluations = dict(known.evaluation) if known else {}
+    windows = dict(known.window) if known else {}
+    work = []
+    for block in blocks:
+        changed = [known is None or known.chosen[i] != chosen[i] for i in block.index]
+        fresh = np.flatnonzero(changed)
+        if fresh.size:
+            state = block.candidates.take(fresh).state(chosen[block.index[fresh]])
+            work.append((block.index[fresh], block.nets.take(fresh), state))
+    solved = scoring.mapped(partial(_solved, bench=bench), work, jobs, progress, "solving windows")
+    for (index, *_), (evaluation, found) in zip(work, solved, strict=True):
+        for row, i in enumerate(map(int, index)):
+            evaluations[i], windows[i] = (evaluation, row), found[row]
     return State(chosen=chosen, evaluation=evaluations, window=windows)
+
+
+def _solved(
+    work: tuple[Array, Nets, Candidates], bench: Bench
+) -> tuple[Evaluation, list[StateWindow]]:
+    """Checks and windows of one state of a block."""
+    _, nets, state = work
+    return evaluate(nets, state, bench), solve(nets, state, bench)

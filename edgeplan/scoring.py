@@ -1,9 +1,10 @@
 """All candidates of a board, block by block, reduced to what choosing needs."""
 
 from collections import defaultdict
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
-from typing import Any
+from functools import partial
+from typing import Any, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +17,8 @@ from edgeplan.nets import NetFacts, Nets, build
 Array = NDArray[Any]
 
 Progress = Callable[[str, float], None]
+Item = TypeVar("Item")
+Found = TypeVar("Found")
 BLOCK_NETS = 128
 
 
@@ -117,6 +120,51 @@ def summarise(candidates: Candidates, evaluation: Evaluation) -> Scores:
     )
 
 
+def mapped(
+    function: Callable[[Item], Found],
+    items: Sequence[Item],
+    jobs: int,
+    progress: Progress | None,
+    word: str,
+) -> list[Found]:
+    """Apply a function to every item, over several processes if asked; the order is kept.
+
+    Parameters
+    ----------
+    function : callable
+        Of one item; importable, since processes look it up by name.
+    items : sequence
+        Blocks of work whose sizes depend on the input only.
+    jobs : int
+        Processes.
+    progress : callable or None
+        Told the word and the share done, in this process only.
+    word : str
+        What is being done.
+
+    Returns
+    -------
+    list
+        One result per item.
+
+    Examples
+    --------
+    >>> mapped(abs, [-1, 2], 1, None, "counting")
+    [1, 2]
+    """
+    if jobs > 1 and len(items) > 1:
+        from joblib import Parallel, delayed
+
+        found: list[Found] = Parallel(n_jobs=jobs)(delayed(function)(item) for item in items)
+        return found
+    results = []
+    for done, item in enumerate(items):
+        if progress is not None:
+            progress(word, done / len(items))
+        results.append(function(item))
+    return results
+
+
 def score_blocks(
     blocks: Sequence[Block], bench: Bench, jobs: int, progress: Progress | None
 ) -> list[Scores]:
@@ -138,24 +186,8 @@ def score_blocks(
     list of Scores
         In the order of the blocks.
     """
-    if jobs > 1 and len(blocks) > 1:
-        from joblib import Parallel, delayed
-
-        found: list[Scores] = Parallel(n_jobs=jobs)(
-            delayed(score_block)(block, bench) for block in blocks
-        )
-        return found
-    return list(_one_by_one(blocks, bench, progress))
-
-
-def _one_by_one(
-    blocks: Sequence[Block], bench: Bench, progress: Progress | None
-) -> Iterator[Scores]:
-    """Evaluate blocks in this process, telling how far it is."""
-    for done, block in enumerate(blocks):
-        if progress is not None:
-            progress("judging candidates", done / len(blocks))
-        yield score_block(block, bench)
+    function = partial(score_block, bench=bench)
+    return mapped(function, blocks, jobs, progress, "judging candidates")
 
 
 def gather(blocks: Sequence[Block], scores: Sequence[Scores], count: int) -> Scores:

@@ -140,7 +140,7 @@ def test_nets_without_a_window_carry_a_sized_remedy(saltmarsh):
     closed = [n for n in saltmarsh.nets if n.verdict_after == "no window"]
     assert {n.net for n in closed} == {"SD_CLK", "EXP_CLK"}
     for net in closed:
-        assert any(r.remedy == "cable filter" and r.amount for r in net.remedies)
+        assert any(r.remedy.startswith("cable filter") and r.amount for r in net.remedies)
 
 
 def test_the_sized_cable_filter_opens_the_window(saltmarsh, copy):

@@ -65,8 +65,9 @@ def cable_filter(nets: Nets, candidates: Candidates, bench: Bench) -> list[Remed
     """More attenuation on every cable, so that some candidate passes every check.
 
     The trace's own part stays. Of all candidates that fail emission only, the one that needs
-    least attenuation is named; where none fails emission only, or the trace alone is
-    over budget, no filter will do and the amount is None.
+    least attenuation is named. Where the trace alone is over budget, cables and enclosure
+    have to give the same amount together; where no candidate fails emission only, nothing
+    on cables or enclosure will do and the amount is None.
 
     Parameters
     ----------
@@ -88,11 +89,17 @@ def cable_filter(nets: Nets, candidates: Candidates, bench: Bench) -> list[Remed
         if table.check != "emission":
             only_emission &= ~(table.fails | table.open)
     needed = np.where(only_emission, needed, np.inf)
-    best = np.argmin(needed, axis=1)
-    return [
-        _filter(nets, candidates, passive, i, int(k), needed[i, k], line[i, k], excess_db[i, k])
-        for i, k in enumerate(best)
-    ]
+    least = np.where(only_emission, excess_db, np.inf)
+    found_remedies = []
+    for i, k in enumerate(np.argmin(needed, axis=1)):
+        if not np.isfinite(needed[i, k]):
+            found_remedies.append(_both(nets, candidates, i, least[i]))
+            continue
+        hertz = float(passive.lines.frequency_hz[i, line[i, k]])
+        found_remedies.append(
+            _filter(nets, candidates, i, int(k), (needed[i, k], hertz, excess_db[i, k]))
+        )
+    return found_remedies
 
 
 def _needed_db(
@@ -113,35 +120,54 @@ def _needed_db(
     return needed.max(axis=2), line, excess_db
 
 
-def _filter(
-    nets: Nets,
-    candidates: Candidates,
-    passive: Passive,
-    net: int,
-    k: int,
-    needed: float,
-    line: int,
-    excess_db: float,
-) -> Remedy:
-    """The remedy in words, rounded up to a tenth of a decibel."""
-    if not np.isfinite(needed):
-        return Remedy(
-            remedy="cable filter",
-            amount=None,
-            unit="dB",
-            text="no cable filter is enough: the trace alone or another check is over its limit",
-        )
-    facts = nets.facts[net]
+def _beside(nets: Nets, candidates: Candidates, net: int, k: int) -> str:
+    """The change that goes with a remedy; empty where the net stays as drawn."""
     change, words_of_change = change_words(
-        facts, int(candidates.setting[net, k]), float(candidates.series_ohm[net, k])
+        nets.facts[net], int(candidates.setting[net, k]), float(candidates.series_ohm[net, k])
     )
-    beside = f" together with: {words_of_change}" if change != "none" else ""
-    amount = float(np.ceil(needed * 10 + 1e-6) / 10)
-    megahertz = passive.lines.frequency_hz[net, line] / 1e6
+    return f" together with: {words_of_change}" if change != "none" else ""
+
+
+def _rounded_up(amount_db: float) -> float:
+    """Up to the next tenth of a decibel."""
+    return float(np.ceil(amount_db * 10 + 1e-6) / 10)
+
+
+def _filter(
+    nets: Nets, candidates: Candidates, net: int, k: int, size: tuple[float, float, float]
+) -> Remedy:
+    """A filter on every cable: attenuation, the line that asks for it, and the excess now."""
+    needed_db, frequency_hz, excess_db = size
+    amount = _rounded_up(needed_db)
+    beside = _beside(nets, candidates, net, k)
     return Remedy(
         remedy="cable filter",
         amount=amount,
         unit="dB",
         closes_db=round(float(excess_db), 2),
-        text=f"{amount:.1f} dB more on every cable (set by {megahertz:.0f} MHz){beside}",
+        text=f"{amount:.1f} dB more on every cable (set by {frequency_hz / 1e6:.0f} MHz){beside}",
+    )
+
+
+def _both(nets: Nets, candidates: Candidates, net: int, excess_db: Array) -> Remedy:
+    """As much on every cable and on the enclosure, or nothing that would help."""
+    k = int(np.argmin(excess_db))
+    if not np.isfinite(excess_db[k]):
+        return Remedy(
+            remedy="cable filter",
+            amount=None,
+            unit="dB",
+            text="nothing on the cables is enough: another check fails with every candidate",
+        )
+    amount = _rounded_up(float(excess_db[k]))
+    beside = _beside(nets, candidates, net, k)
+    return Remedy(
+        remedy="cable filter and enclosure",
+        amount=amount,
+        unit="dB",
+        closes_db=round(float(excess_db[k]), 2),
+        text=(
+            f"{amount:.1f} dB more on every cable and {amount:.1f} dB by the enclosure "
+            f"(the trace alone is over budget){beside}"
+        ),
     )

@@ -134,16 +134,16 @@ def decay(exponent: Array) -> Array:
 
 
 def reciprocal(values: Array) -> Array:
-    """Return 1/z of complex numbers as ``conj(z)/|z|^2``, twice as fast as a complex division.
+    """Return 1/z of complex numbers as ``conj(z)/|z|^2``, several times faster than by a complex division.
 
     >>> print(reciprocal(np.array([3 + 4j])))
     [0.12-0.16j]
     """
-    parts = values.view(values.real.dtype)
-    squares = parts * parts
-    size = squares[..., ::2] + squares[..., 1::2]
     result = np.conj(values)
-    result *= np.divide(size.dtype.type(1), size, out=size)
+    size = result * (1 + 1j)
+    size *= values  # |z|^2 in both parts, so that the division below runs over real numbers
+    parts = result.view(result.real.dtype)
+    parts /= size.view(parts.dtype)
     return np.asarray(result)
 
 

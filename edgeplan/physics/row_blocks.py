@@ -81,15 +81,14 @@ class _Rows:
         """Rows that still fit."""
         return len(self.level) - self.filled
 
-    def put(self, spectrum: Array) -> slice:
-        """Transform some spectra, undo the damping, and tell which rows they fill."""
+    def put(self, spectrum: Array) -> None:
+        """Transform some spectra and undo the damping."""
         rows = slice(self.filled, self.filled + len(spectrum))
         wave = fft.irfft(spectrum, self.length, axis=1, overwrite_x=True)
         level = self.level[rows]
         np.multiply(wave[:, : level.shape[1]], self.growth, out=level)
         level -= level.dtype.type(1 / np.expm1(DAMPING))
         self.filled = rows.stop
-        return rows
 
     def take(self) -> Block:
         """Hand out what has come in and start again."""
@@ -273,16 +272,22 @@ def _fill(chunk: Chunk, waiting: _Rows) -> Iterator[Block]:
         if not fit:
             yield waiting.take()
             continue
-        part = slice(at, min(at + min(fit, few), len(chunk.candidate)))
-        _label(chunk, part, waiting, waiting.put(spectra(chunk, part)))
-        at = part.stop
+        stop = min(at + fit, len(chunk.candidate))
+        _label(chunk, slice(at, stop), waiting)
+        for start in range(at, stop, few):
+            waiting.put(spectra(chunk, slice(start, min(start + few, stop))))
+        at = stop
 
 
 def spectra(chunk: Chunk, part: slice) -> Array:
     """Spectrum of every row, E H / D, in the order candidate, receiver."""
-    source = reciprocal(_ratios(chunk, part))
-    source *= chunk.edges[chunk.edge_row[part]]
-    return (source[:, None] * chunk.transfer[chunk.task[part]]).reshape(-1, source.shape[1])
+    task, edge = chunk.task[part], chunk.edge_row[part]
+    opens = np.ones(len(task), dtype=bool)  # E H is shared by a run of one net and one edge
+    opens[1:] = (task[1:] != task[:-1]) | (edge[1:] != edge[:-1])
+    shared = chunk.edges[edge[opens]][:, None] * chunk.transfer[task[opens]]
+    result = shared[np.cumsum(opens) - 1]
+    result *= reciprocal(_ratios(chunk, part))[:, None]
+    return np.asarray(result.reshape(-1, result.shape[2]))
 
 
 def _ratios(chunk: Chunk, own: slice) -> Array:
@@ -296,9 +301,10 @@ def _ratios(chunk: Chunk, own: slice) -> Array:
     return result.view(chunk.edges.dtype)
 
 
-def _label(chunk: Chunk, part: slice, waiting: _Rows, rows: slice) -> None:
-    """Write net, candidate and receiver, step and start of the rows."""
+def _label(chunk: Chunk, part: slice, waiting: _Rows) -> None:
+    """Write net, candidate and receiver, step and start of the next rows."""
     task, receivers = chunk.task[part], chunk.receivers.shape[1]
+    rows = slice(waiting.filled, waiting.filled + len(task) * receivers)
     waiting.label[0, rows] = np.repeat(chunk.net[part], receivers)
     waiting.label[1, rows] = np.repeat(chunk.candidate[part], receivers)
     waiting.label[2, rows] = chunk.receivers[task].ravel()

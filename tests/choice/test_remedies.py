@@ -86,15 +86,19 @@ def test_what_the_filter_closes_is_the_excess_it_was_sized_for():
     assert filter_of(b).closes_db == pytest.approx(-table.margin[0, 0], abs=0.01)
 
 
-def test_where_the_trace_alone_is_too_loud_no_filter_is_enough():
-    b = loud(
-        0.0,
-        driver=[driver(setting(ohm=5.0, edge_s=0.2e-9))],
-        emission={"limits": ["cispr32-class-b-3m"], "margin": "40 dB"},
-    )
-    found = filter_of(b)
-    assert found.amount is None
-    assert "no cable filter is enough" in found.text
+def test_where_the_trace_alone_is_too_loud_cables_and_enclosure_give_the_same_together():
+    def at(attenuation_db):
+        return loud(
+            attenuation_db,
+            driver=[driver(setting(ohm=40.0, edge_s=0.2e-9))],
+            emission={"limits": ["cispr32-class-b-3m"], "margin": "40 dB"},
+            facts={"enclosure_attenuation_db": attenuation_db},
+        )
+
+    found = filter_of(at(0.0))
+    assert found.remedy == "cable filter and enclosure"
+    assert passes(at(found.amount))
+    assert not passes(at(found.amount - 0.2))
 
 
 def test_where_another_check_fails_no_filter_is_enough():
