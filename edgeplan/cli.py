@@ -1,6 +1,7 @@
 """Commands and exit codes; everything heavier than click is imported when a command runs."""
 
 import functools
+import importlib.util
 import os
 import shutil
 import sys
@@ -63,6 +64,13 @@ def _output(_ctx: click.Context, _param: click.Parameter, value: Path) -> Path:
     return writable(value)
 
 
+def _processes(_ctx: click.Context, _param: click.Parameter, value: int) -> int:
+    """Several processes need the package that starts them."""
+    if value > 1 and importlib.util.find_spec("joblib") is None:
+        raise click.BadParameter("more than 1 needs joblib: pip install 'edgeplan[parallel]'")
+    return value
+
+
 def _picture(_ctx: click.Context, _param: click.Parameter, value: Path | None) -> Path | None:
     """Check ``--plot`` before anything is computed."""
     if value is not None and value.suffix.lower() not in PICTURES:
@@ -90,7 +98,8 @@ def _judging(formats: Mapping[str, str], first: str) -> "Callable[[Command], Com
                      help="What an undecided net does to the exit code; the board file's policy "
                           "without it."),
         click.option("--jobs", type=click.IntRange(min=1), default=1, metavar="N",
-                     show_default=True, help="Processes to share the work among."),
+                     callback=_processes, show_default=True,
+                     help="Processes to share the work among."),
         click.option("--quiet", "-q", is_flag=True, help="Nothing but errors beside the result."),
         click.option("--color", type=click.Choice(["auto", "always", "never"]), default="auto",
                      show_default=True, help="Colour repeats a verdict; NO_COLOR is honoured."),

@@ -416,3 +416,16 @@ def test_a_starter_folder_is_written_and_never_over_anything(run, tmp_path):
     assert code == 2
     assert "is not empty" in err
     assert "Traceback" not in err
+
+
+def test_several_processes_without_the_package_for_them_are_refused(monkeypatch, capsys):
+    import importlib.util
+
+    from edgeplan import cli
+
+    monkeypatch.setattr(importlib.util, "find_spec", lambda _: None)
+    monkeypatch.setattr("sys.argv", ["edgeplan", "plan", ".", "--jobs", "2"])
+    with pytest.raises(SystemExit) as stopped:
+        cli.run()
+    assert stopped.value.code == 2
+    assert "edgeplan[parallel]" in capsys.readouterr().err
