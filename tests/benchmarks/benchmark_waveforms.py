@@ -1,31 +1,38 @@
 """Speed of the step responses against a scikit-rf script and against the bare arithmetic.
 
 Run ``OPENBLAS_NUM_THREADS=1 python tests/benchmarks/benchmark_waveforms.py [--mix] [--large]``.
-It prints and never asserts. All ratios come from one process.
+It prints and never asserts. All ratios come from one process; engine and kernel take turns,
+and the median of the pairs counts, so that what else the machine does hardly matters.
 
 * engine: ``read`` at two corners, all readings;
-* script: what a competent user of scikit-rf writes: the line network of a net once, then per
-  candidate a source cascade, an inverse transform and the same readings;
-* kernel: the same matrix products and inverse transforms alone, on the same sizes and types.
+* script: what a competent user of scikit-rf writes: the line networks of a net once, then per
+  candidate a source cascade, and per receiver an inverse transform and the same readings;
+* kernel: the matrix products and inverse transforms that the engine called, recorded and run
+  alone: the same calls on the same sizes and types.
 """
 
 import argparse
+import functools
 import resource
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
+from typing import Any
+from unittest import mock
 
 import numpy as np
 import skrf
+from numpy.typing import NDArray
 from scipy import fft
 from skrf.media import DistributedCircuit
 
-from edgeplan.physics.grids import choose_grids, needs
 from edgeplan.physics.lines import LineConstants, dielectric_factor
 from edgeplan.physics.network import Trees
 from edgeplan.physics.row_blocks import LINES
 from edgeplan.physics.sources import Drive
 from edgeplan.physics.waveform_readings import Levels, levels_of
 from edgeplan.physics.waveforms import read
+
+Array = NDArray[Any]
 
 CANDIDATES = 40
 E12 = np.array([0, 10, 15, 22, 27, 33, 47, 68.0])
@@ -82,16 +89,6 @@ def drives(nets: int, seed: int = 2) -> list[Drive]:
     ]
 
 
-def seconds(work: Callable[[], object], repeats: int) -> float:
-    """Shortest time of some repeats."""
-    times = []
-    for _ in range(repeats):
-        start = time.perf_counter()
-        work()
-        times.append(time.perf_counter() - start)
-    return min(times)
-
-
 def engine(trees: Trees, corners: list[Drive], levels: Levels, bit_s: np.ndarray) -> None:
     """Everything that is read, at both corners."""
     LINES.rows.clear()
@@ -99,63 +96,99 @@ def engine(trees: Trees, corners: list[Drive], levels: Levels, bit_s: np.ndarray
         read(trees, drive, levels, bit_s)
 
 
-def kernel(trees: Trees, corners: list[Drive], bit_s: np.ndarray) -> Callable[[], None]:
-    """Matrix products and inverse transforms of the same sizes and types, nothing else."""
-    jobs = []
-    for drive in corners:
-        grids = choose_grids(drive, needs(trees, drive, bit_s))
-        receivers = np.diff(trees.receiver_offset)[grids.net]
-        for length in np.unique(grids.length):
-            own = grids.length == length
-            counts = np.diff(grids.offset)[own]
-            rows = int((counts * receivers[own]).sum())
-            jobs.append((int(length), counts.tolist(), rows))
-    rng = np.random.default_rng(0)
-    longest = max(length for length, _, _ in jobs)
-    numbers = rng.random((2048, longest + 2), dtype=np.float32)
-    weights = rng.random((CANDIDATES, 4), dtype=np.float32)
+def recorded(work: Callable[[], object]) -> list[tuple[Any, ...]]:
+    """Matrix products (two shapes) and inverse transforms (shape, length) of some work, typed."""
+    calls: list[tuple[Any, ...]] = []
+    matmul, irfft = np.matmul, fft.irfft
+
+    def product(weights: Array, terms: Array, out: Array) -> Array:
+        calls.append((weights.shape, terms.shape, weights.dtype))
+        return matmul(weights, terms, out=out)
+
+    def transform(spectrum: Array, length: int, **options: Any) -> Array:
+        calls.append((spectrum.shape, length, spectrum.dtype))
+        return irfft(spectrum, length, **options)
+
+    with mock.patch.object(np, "matmul", product), mock.patch.object(fft, "irfft", transform):
+        work()
+    return calls
+
+
+def kernel(work: Callable[[], object]) -> Callable[[], None]:
+    """Matrix products and inverse transforms that some work makes, one after the other, bare.
+
+    Shapes, types, lengths and order are those of the calls. Operands are views of few
+    buffers, so that they are at least as warm as those of the engine.
+    """
+    calls = recorded(work)
+    size = max(2 * int(np.prod(call[0])) for call in calls) + 2**20
+    numbers = np.random.default_rng(0).random(size)
+    buffers: dict[Any, Array] = {kind: numbers.astype(kind) for kind in {c[2] for c in calls}}
+    buffers["out"] = numbers.astype(np.float32)
+
+    def shaped(shape: tuple[int, ...], kind: Any) -> Array:
+        return buffers[kind][: int(np.prod(shape))].reshape(shape)
+
+    jobs: list[tuple[Any, ...]] = []
+    for shape, other, kind in calls:
+        if isinstance(other, tuple):
+            out = shaped((shape[0], other[1]), "out")
+            jobs.append((shaped(shape, kind), shaped(other, kind), out))
+        else:
+            jobs.append((shaped(shape, kind), other))
 
     def run() -> None:
-        for length, counts, rows in jobs:
-            terms = np.ascontiguousarray(numbers[:4, : length + 2])
-            spectrum = np.ascontiguousarray(numbers[:, : length + 2]).view(np.complex64)
-            for count in counts:
-                weights[:count] @ terms
-            for start in range(0, rows, 2048):
-                fft.irfft(spectrum[: min(2048, rows - start)], length, axis=1)
+        for first, second, *out in jobs:
+            if out:
+                np.matmul(first, second, out=out[0])
+            else:
+                fft.irfft(first, second, axis=1)
 
     return run
 
 
-def script(trees: Trees, drive: Drive, levels: Levels, bit_s: np.ndarray, nets: range) -> int:
+def paired(
+    whole: Callable[[], object], bare: Callable[[], object], pairs: int, repeats: int = 5
+) -> dict[str, Array]:
+    """Seconds (pairs, 2) of the two in turn, by the wall's clock and by the processor's.
+
+    The bare work is the shorter one and is repeated, so that both see the same machine.
+    """
+    taken = np.empty((2, pairs, 2))
+    for pair in range(pairs):
+        for which, (work, times) in enumerate(((whole, 1), (bare, repeats))):
+            start = np.array([time.perf_counter(), time.process_time()])
+            for _ in range(times):
+                work()
+            now = np.array([time.perf_counter(), time.process_time()])
+            taken[:, pair, which] = (now - start) / times
+    return {"wall": taken[0], "processor": taken[1]}
+
+
+def script(
+    trees: Trees, drive: Drive, levels: Levels, bit_s: np.ndarray, nets: Sequence[int]
+) -> int:
     """Do the same with scikit-rf, one candidate after the other; return the count of them."""
     points, done = 512, 0
     for net in nets:
-        ramp = drive.ramp_s[net].min()
-        step = ramp / 10
+        step = drive.ramp_s[net].min() / 10
         frequency = skrf.Frequency.from_f(
             np.arange(1, points // 2 + 1) / (points * step), unit="hz"
         )
-        stub, line, load = _script_networks(trees, net, frequency)
+        stub, receivers = _script_networks(trees, net, frequency)
         for candidate in range(CANDIDATES):
             media = stub.media
-            network = (
+            source = (
                 media.resistor(drive.resistance_ohm[net, candidate])
                 ** media.shunt_capacitor(drive.pad_farad[net, candidate])
                 ** stub.network
                 ** media.resistor(drive.series_ohm[net, candidate])
-                ** line
             )
-            transfer = 1 / (network.a[:, 0, 0] + network.a[:, 0, 1] * load)
-            _script_readings(
-                transfer,
-                frequency.f,
-                drive.ramp_s[net, drive.ramp_index[net, candidate]],
-                step,
-                points,
-                bit_s[net],
-                levels,
-            )
+            ramp = drive.ramp_s[net, drive.ramp_index[net, candidate]]
+            for line, load in receivers:
+                network = source**line
+                transfer = 1 / (network.a[:, 0, 0] + network.a[:, 0, 1] * load)
+                _script_readings(transfer, frequency.f, ramp, step, points, bit_s[net], levels)
             done += 1
     return done
 
@@ -182,21 +215,34 @@ def _script_media(line: list[float], frequency: skrf.Frequency) -> DistributedCi
 
 def _script_networks(
     trees: Trees, net: int, frequency: skrf.Frequency
-) -> tuple[_Stub, skrf.Network, np.ndarray]:
-    """Stub, cascade of the segments up to the receiver, and load at its end; once a net."""
+) -> tuple[_Stub, list[tuple[skrf.Network, np.ndarray]]]:
+    """Stub, and for each receiver the cascade up to it and the load at its end; once a net."""
     own = trees.take([net])
     stub = _Stub(
         _script_media([float(f[0]) for f in own.stub_line], frequency), float(own.stub_length_m[0])
     )
-    s = 2j * np.pi * frequency.f
-    cascade = None
-    for segment in range(len(own.length_m)):
-        media = _script_media([float(f[segment]) for f in own.line], frequency)
-        part = media.line(float(own.length_m[segment]), unit="m")
-        if segment < len(own.length_m) - 1:
-            part = part ** media.shunt_capacitor(float(own.node_farad[segment]))
-        cascade = part if cascade is None else cascade**part
-    return stub, cascade, s * own.node_farad[-1]
+    parts = [
+        _script_media([float(f[i]) for f in own.line], frequency).line(float(length), unit="m")
+        for i, length in enumerate(own.length_m)
+    ]
+
+    def hanging(node: int, without: int = -1) -> np.ndarray:
+        own_load = 2j * np.pi * frequency.f * (own.node_farad[node] if node >= 0 else 0)
+        branches = [i for i in np.flatnonzero(own.parent == node) if i != without]
+        return own_load + sum(looking_into(i) for i in branches)
+
+    def looking_into(segment: int) -> np.ndarray:
+        a, load = parts[segment].a, hanging(segment)
+        return (a[:, 1, 0] + a[:, 1, 1] * load) / (a[:, 0, 0] + a[:, 0, 1] * load)
+
+    def up_to(segment: int) -> skrf.Network:
+        above = int(own.parent[segment])
+        a = np.tile(np.eye(2, dtype=complex), (len(frequency), 1, 1))
+        a[:, 1, 0] = hanging(above, without=segment)
+        joined = skrf.Network(frequency=frequency, s=skrf.network.a2s(a)) ** parts[segment]
+        return joined if above < 0 else up_to(above) ** joined
+
+    return stub, [(up_to(int(i)), hanging(int(i))) for i in own.receiver_segment]
 
 
 def _script_readings(
@@ -231,7 +277,7 @@ def _script_readings(
     start = int(times["vih", 0])
     falling = np.flatnonzero(np.diff(wave[start:]) < -5e-4)
     after = start + int(falling[0]) if len(falling) else len(wave) - 1
-    low, high = int(times["low", 0]), int(times["high", 0]) + 1
+    low, high = int(times["low", 0]), max(int(times["high", 0]), int(times["low", 0])) + 1
     return {
         "transition": (times["high", 0] - times["low", 0]) * step_s,
         "overshoot": float(wave.max() - 1),
@@ -247,8 +293,8 @@ def main() -> None:
     options.add_argument("--mix", action="store_true", help="daisy chains and stars as well")
     options.add_argument("--large", action="store_true", help="10,000 nets as well")
     options.add_argument("--nets", type=int, default=1000)
-    options.add_argument("--repeats", type=int, default=3)
-    options.add_argument("--sample", type=int, default=4, help="nets given to the script")
+    options.add_argument("--pairs", type=int, default=7)
+    options.add_argument("--sample", type=int, default=8, help="nets given to the script")
     chosen = options.parse_args()
     sizes = [chosen.nets, 10 * chosen.nets] if chosen.large else [chosen.nets]
     taken = []
@@ -256,22 +302,26 @@ def main() -> None:
         trees, corners = board(size, mix=chosen.mix), drives(size)
         levels = levels_of(0.3, 0.7, int(trees.receiver_offset[-1]))
         bit_s = np.random.default_rng(3).uniform(4e-9, 20e-9, size)
-        repeats = chosen.repeats if size == chosen.nets else 1
-        own = seconds(lambda t=trees, c=corners, v=levels, b=bit_s: engine(t, c, v, b), repeats)
-        bare = seconds(kernel(trees, corners, bit_s), repeats)
+        work = functools.partial(engine, trees, corners, levels, bit_s)
+        pairs = paired(work, kernel(work), chosen.pairs if size == chosen.nets else 1)
+        own = float(np.median(pairs["wall"][:, 0]))
         taken.append(own)
         evaluations = 2 * size * CANDIDATES
         print(f"{size} nets, {evaluations} evaluations, {len(levels.threshold_low)} receivers")
         print(f"  engine {own:.2f} s, {evaluations / own:,.0f} evaluations/s")
-        print(f"  kernel {bare:.2f} s: engine takes {own / bare:.2f} times as long")
-        if size == chosen.nets:
-            simple = board(size, mix=False)
-            start = time.perf_counter()
-            count = script(simple, corners[0], levels, bit_s, range(chosen.sample))
-            each = (time.perf_counter() - start) / count
+        for clock, both in pairs.items():
+            ratio = both[:, 0] / both[:, 1]
             print(
-                f"  script {each * 1e3:.2f} ms an evaluation: {each * evaluations / own:,.0f} times"
+                f"  {clock}: kernel {np.median(both[:, 1]):.2f} s, engine takes"
+                f" {np.median(ratio):.2f} times as long ({ratio.min():.2f} to {ratio.max():.2f})"
             )
+        if size == chosen.nets:
+            nets = np.linspace(0, size - 1, min(chosen.sample, size)).astype(int).tolist()
+            start = time.process_time()
+            count = script(trees, corners[0], levels, bit_s, nets)
+            each = (time.process_time() - start) / count
+            times = each * evaluations / np.median(pairs["processor"][:, 0])
+            print(f"  script {each * 1e3:.2f} ms an evaluation: {times:,.0f} times")
     if chosen.large:
         print(f"growth for ten times the nets: {taken[1] / taken[0]:.1f}")
     print(f"peak memory {resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024:.0f} MiB")
