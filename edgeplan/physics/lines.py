@@ -134,7 +134,7 @@ def decay(exponent: Array) -> Array:
 
 
 def reciprocal(values: Array) -> Array:
-    """Return 1/z of complex numbers as ``conj(z)/|z|^2``, several times faster than by a complex division.
+    """Return 1/z of complex numbers as ``conj(z)/|z|^2``, faster than a complex division.
 
     >>> print(reciprocal(np.array([3 + 4j])))
     [0.12-0.16j]

@@ -22,7 +22,7 @@ from edgeplan.physics.sources import (
 Array = NDArray[Any]
 
 ROWS = 2048
-CACHED = 65_536  # spectral values at a time, so that they stay in the cache until transformed
+CACHED = 32_768  # spectral values at a time, so that they stay in the cache until transformed
 CHUNK_MEMBERS = 40_000  # candidates whose trees are solved in one pass
 LINES = KnownLines()  # corners, ramps and repeated calls meet the same lines on the same grids
 
