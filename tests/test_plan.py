@@ -3,6 +3,8 @@
 import json
 import re
 import shutil
+import subprocess
+import sys
 from pathlib import Path
 
 import numpy as np
@@ -241,3 +243,25 @@ def test_more_setup_time_moves_the_setup_edge_only(copy):
         if check != "setup":
             same = (limits[0][check] or 0.0, limits[1][check] or 0.0)
             assert same[1] == pytest.approx(same[0], rel=1e-3)
+
+
+BROKEN = Path(__file__).parent / "boards" / "broken"
+
+
+@pytest.mark.parametrize("name", ["all_at_once", "empty_file", "not_utf8", "wrong_toml"])
+def test_a_broken_board_ends_in_2_with_every_fault_told_and_nothing_written(name, tmp_path):
+    asked = [
+        sys.executable,
+        "-m",
+        "edgeplan",
+        "plan",
+        BROKEN / name,
+        "--write",
+        f"csv={tmp_path / 'a.csv'}",
+    ]
+    run = subprocess.run(asked, capture_output=True, text=True, check=False)
+    assert run.returncode == 2
+    assert run.stdout == ""
+    assert "error:" in run.stderr
+    assert "Traceback" not in run.stderr
+    assert not list(tmp_path.iterdir())
