@@ -141,7 +141,7 @@ def first_readings(level: Array, threshold: Array, found: Edges) -> Array:
         local = first_reach(found.near, own)
         index[0, kind] = np.where(local < width, found.begin + local, samples)
         index[0, kind, found.long] = first_reach(long, own[found.long])
-    after = level.ravel()[_positions(rows, samples, index[0])]
+    after = level.ravel().take(_positions(rows, samples, index[0]))
     for reading, wanted in ((1, threshold), (2, threshold + guard)):
         steps = _leading(after < wanted)
         index[reading] = index[0] + steps
@@ -276,17 +276,18 @@ def cubic_time(level: Array, row: Array, index: Array, threshold: Array) -> Arra
     """
     samples = level.shape[1]
     inner = np.clip(index, 2, samples - 2)
-    flat, at = level.ravel(), row * samples + inner
-    y0, y1, y2, y3 = (flat[at + offset] for offset in (-2, -1, 0, 1))
+    flat, at = level.ravel(), row * samples + (inner - 2)
+    y0, y1, y2, y3 = (flat[offset:].take(at) for offset in range(4))
     cubic = (y3 - y0) / 6 + (y1 - y2) / 2
     square = (y0 + y2) / 2 - y1
     slope = y2 - y0 / 3 - y1 / 2 - y3 / 6
     rest = y1 - threshold
+    cubic_3, square_2 = 3 * cubic, 2 * square
     with np.errstate(divide="ignore", invalid="ignore"):
-        u = _unit(-rest / (y2 - y1))
+        u = _unit(rest / (y1 - y2))
         for _ in range(2):
             value = ((cubic * u + square) * u + slope) * u + rest
-            u = _unit(u - value / ((3 * cubic * u + 2 * square) * u + slope))
+            u = _unit(u - value / ((cubic_3 * u + square_2) * u + slope))
     time = np.where(index < 1, 0, inner - 1 + u)
     return np.where(index < samples, time, np.nan)
 
@@ -300,7 +301,7 @@ def straight_time(level: Array, row: Array, index: Array, threshold: Array) -> A
     samples = level.shape[1]
     inner = np.clip(index, 1, samples - 1)
     flat, at = level.ravel(), row * samples + inner
-    after, before = flat[at], flat[at - 1]
+    after, before = flat.take(at), flat.take(at - 1)
     with np.errstate(divide="ignore", invalid="ignore"):
         time = inner - (after - threshold) / (after - before)
     time = np.where(index < 1, 0, time)

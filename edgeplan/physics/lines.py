@@ -184,7 +184,11 @@ class KnownLines:
         if len(known) <= self.most:
             self.rows.update(known)
         pairs = [known[key] for key in keys]
-        return index, np.stack([g for g, _ in pairs]), np.stack([y for _, y in pairs])
+        shape = (len(pairs), s.shape[1])
+        gamma, admittance = (
+            np.concatenate(part).reshape(shape) for part in zip(*pairs, strict=True)
+        )
+        return index, gamma, admittance
 
 
 def _distinct(columns: tuple[Array, ...]) -> tuple[Array, Array]:

@@ -225,7 +225,7 @@ def solve(
         candidate=candidate,
         weights=weights.astype(axis.real.dtype),
         terms=terms.view(axis.real.dtype),
-        transfer=tree.transfer / rest_transfer[..., None].astype(axis.real.dtype),
+        transfer=tree.transfer * (1 / rest_transfer[..., None]).astype(axis.real.dtype),
         edges=_edges(ratios, axis, shape),
         edge_row=edge_row,
         receivers=np.asarray(trees.receiver_offset)[net][:, None] + receivers,
@@ -260,7 +260,7 @@ def _weights(
 def _edges(ratios: Array, axis: Array, shape: str) -> Array:
     """Spectrum of each edge, of so many steps, over s dt."""
     scaled = (ratios[:, None] * axis).astype(axis.dtype)
-    return np.asarray(EDGE_SHAPES[shape](scaled) / axis)
+    return np.asarray(EDGE_SHAPES[shape](scaled) * reciprocal(axis))
 
 
 def _fill(chunk: Chunk, waiting: _Rows) -> Iterator[Block]:
@@ -285,7 +285,7 @@ def spectra(chunk: Chunk, part: slice) -> Array:
     opens = np.ones(len(task), dtype=bool)  # E H is shared by a run of one net and one edge
     opens[1:] = (task[1:] != task[:-1]) | (edge[1:] != edge[:-1])
     shared = chunk.edges[edge[opens]][:, None] * chunk.transfer[task[opens]]
-    result = shared[np.cumsum(opens) - 1]
+    result = shared.take(np.cumsum(opens) - 1, axis=0)
     result *= reciprocal(_ratios(chunk, part))[:, None]
     return np.asarray(result.reshape(-1, result.shape[2]))
 

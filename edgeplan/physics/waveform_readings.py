@@ -23,7 +23,7 @@ Array = NDArray[Any]
 
 WHOLE_SPAN = 0.8  # of the levels that the allowed spread is a share of: 10 to 90 %
 SPREAD = 0.06  # of the transition; a straight edge has 0.025 between the two readings
-STRIP = 192  # rows whose differences stay in the cache
+STRIP = 32_768  # differences that stay in the cache
 FALLING = -5e-4  # slope per sample from which a row counts as falling
 
 
@@ -319,14 +319,16 @@ def _lowest_step(level: Array, found: Edges, start: Array, stop: Array) -> Array
 def _first_fall(level: Array, start: Array) -> Array:
     """Index of the first sample from start on that the next one falls short of, or n."""
     rows, samples = level.shape
-    falls = np.empty((rows, samples - 1), dtype=bool)
-    for first in range(0, rows, STRIP):
-        strip = level[first : first + STRIP]
-        np.less(strip[:, 1:] - strip[:, :-1], FALLING, out=falls[first : first + STRIP])
+    flat, fall = level.ravel(), np.empty(rows * samples, dtype=bool)
+    for first in range(0, rows * samples - 1, STRIP):
+        strip = flat[first : first + STRIP + 1]
+        np.less(strip[1:] - strip[:-1], FALLING, out=fall[first : first + len(strip) - 1])
+    falls = fall.reshape(level.shape)
+    falls[:, -1] = False  # the next sample is that of another row
     row = np.arange(rows)
     index = falls.argmax(axis=1)
     early = np.flatnonzero(falls[row, index] & (index < start))
-    column = np.arange(samples - 1)
+    column = np.arange(samples)
     index[early] = (falls[early] & (column >= start[early, None])).argmax(axis=1)
     there = falls[row, index] & (index >= start)
     return np.asarray(np.where(there, index, samples))
@@ -350,7 +352,7 @@ def _thresholds(
     distinct: list[Array] = []
     for name, value in wanted.items():
         own = value.astype(precision)
-        same = [k for k, other in enumerate(distinct) if np.array_equal(own, other)]
+        same = [k for k, other in enumerate(distinct) if (own == other).all()]
         kind[name] = same[0] if same else len(distinct)
         if not same:
             distinct.append(own)

@@ -132,9 +132,9 @@ def read(
             4 * window.delay_s[block.net] / block.step_s,
             directions,
         )
-        place = (block.receiver, block.candidate)
+        place = block.receiver * shape_out[1] + block.candidate
         for name, value in values.items():
-            out[name][place] = _in_seconds(name, value, block.step_s, block.start_s)
+            out[name].reshape(-1)[place] = _in_seconds(name, value, block.step_s, block.start_s)
     return Readings(**out)
 
 
