@@ -1,6 +1,7 @@
 """Waveforms and spectra of one net as drawn and as proposed, for pictures."""
 
-from typing import Any, Literal
+from dataclasses import replace
+from typing import Any, Literal, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +12,7 @@ from edgeplan.emission_lines import is_data
 from edgeplan.emission_target import Target
 from edgeplan.nets import Nets
 from edgeplan.physics import waveforms
+from edgeplan.physics.edge_factor import null_free_edge_factor
 from edgeplan.physics.radiation import level_dbuv_per_m
 from edgeplan.physics.spectra import corner_frequencies_hz
 from edgeplan.radiated import Passive, source_levels
@@ -51,19 +53,53 @@ def draw(block: Block, row: int, draft: Draft) -> Pictures:
     if draft.now.chosen[index] == draft.after.chosen[index]:
         changes = changes[:1]
     bench = draft.bench_after
-    traces, spectra = [], []
+    traces: list[Trace] = []
+    spectra: list[Spectrum] = []
+    passive = bench.radiation.passive(nets)
+    drawn = _source(nets, changes[0][1], passive, bench.tolerance)
     for when, state in changes:
         traces += _traces(nets, state, bench.tolerance, when)
-        passive = bench.radiation.passive(nets)
-        levels = source_levels(nets, state, passive, bench.tolerance)[0, 0]
-        if np.isfinite(levels).all() and passive.lines.exists[0].any():
-            spectra.append(_spectrum(nets, state, passive, levels, bench.radiation.target, when))
+        source = _source(nets, state, passive, bench.tolerance)
+        if np.isfinite(source.levels).all() and passive.lines.exists[0].any():
+            found = _spectrum(nets, state, passive, source.levels, bench.radiation.target, when)
+            spectra.append(found if when == "now" else _with_change(found, passive, drawn, source))
     supply = nets.swing_v["typical"][0]
     thresholds = {
         "VIL": float(nets.threshold_low["typical"][0] * supply),
         "VIH": float(nets.threshold_high["typical"][0] * supply),
     }
     return Pictures(waveforms=traces, spectra=spectra, thresholds_v=thresholds)
+
+
+class _Source(NamedTuple):
+    """Volts over D of one state at every line, and the share of its edge in them. (F,)"""
+
+    levels: Array
+    edge: Array
+
+
+def _source(nets: Nets, state: Candidates, passive: Passive, tolerance: float) -> _Source:
+    """Source levels of one state and its edge factor, fast corner, the faster edge."""
+    tables = [setting_table(nets, "trapezoid_s", "fast", d) for d in ("rising", "falling")]
+    ramp_s = np.fmin(*tables)[0, state.setting[0, 0]] * state.ramp_factor[0, 0]
+    return _Source(
+        levels=source_levels(nets, state, passive, tolerance)[0, 0],
+        edge=null_free_edge_factor(passive.lines.frequency_hz[0] * ramp_s),
+    )
+
+
+def _with_change(spectrum: Spectrum, passive: Passive, drawn: _Source, own: _Source) -> Spectrum:
+    """The spectrum with its change against the net as drawn, by edge and by current. [dB]"""
+    shown = passive.lines.exists[0] & (passive.over_budget[0] > 0)
+    absent = drawn.levels[shown] <= 1e-6 * drawn.levels.max()  # even lines of a square wave
+    with np.errstate(divide="ignore", invalid="ignore"):
+        whole = np.where(absent, 0.0, 20 * np.log10(own.levels / drawn.levels)[shown])
+        edge = np.where(absent, 0.0, 20 * np.log10(own.edge / drawn.edge)[shown])
+    return replace(
+        spectrum,
+        change_by_edge_db=[round(float(v), 3) for v in edge],
+        change_by_current_db=[round(float(v), 3) for v in whole - edge],
+    )
 
 
 def _traces(nets: Nets, state: Candidates, tolerance: float, when: When) -> list[Trace]:

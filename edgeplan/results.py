@@ -282,7 +282,11 @@ class Trace:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Spectrum:
-    """Emission of one net over frequency; a list entry per judged line. [Hz], [dBuV/m]"""
+    """Emission of one net over frequency; a list entry per judged line. [Hz], [dBuV/m]
+
+    The changes belong to the proposal: what its edge and what its current does to each line
+    against the net as drawn; empty where nothing changes. [dB]
+    """
 
     state: Literal["now", "after"]
     detector: str
@@ -293,6 +297,8 @@ class Spectrum:
     trace_dbuv_per_m: list[float]
     cable_dbuv_per_m: list[float]
     limit_dbuv_per_m: list[float]
+    change_by_edge_db: list[float] = field(default_factory=list)
+    change_by_current_db: list[float] = field(default_factory=list)
     limit_line_hz: list[float] = field(default_factory=list)
     limit_line_dbuv_per_m: list[float] = field(default_factory=list)
     corner_low_hz: float | None = None

@@ -265,3 +265,15 @@ def test_a_broken_board_ends_in_2_with_every_fault_told_and_nothing_written(name
     assert "error:" in run.stderr
     assert "Traceback" not in run.stderr
     assert not list(tmp_path.iterdir())
+
+
+def test_what_a_proposal_changes_is_split_into_edge_and_current():
+    """DISP_CLK gets a resistor: the same edge, so that all of the change is current."""
+    (resistor,) = plan.explain(EXAMPLES / "saltmarsh", "DISP_CLK").nets
+    now, after = resistor.pictures.spectra
+    assert not now.change_by_edge_db
+    assert set(after.change_by_edge_db) == {0.0}
+    for i, change in enumerate(after.change_by_current_db):
+        if now.trace_dbuv_per_m[i] > -90:
+            moved = after.cable_dbuv_per_m[i] - now.cable_dbuv_per_m[i]
+            assert change == pytest.approx(moved, abs=0.01)

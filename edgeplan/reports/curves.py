@@ -38,6 +38,21 @@ def spectra(net: NetResult, margin_db: float, worst: int) -> Iterator[str]:
         for index in _worst(spectrum, worst):
             yield _spectrum_line(spectrum, index, margin_db)
         yield from _corner_note(spectrum)
+        yield from _changes(spectrum, worst)
+
+
+def _changes(spectrum: Spectrum, worst: int) -> Iterator[str]:
+    """Tell what the proposal does to each line, and whether its edge or its current does it."""
+    if not spectrum.change_by_edge_db:
+        return
+    yield ""
+    yield "What the proposal changes, in dB: a slower edge, less current, both"
+    for index in _worst(spectrum, worst):
+        edge, current = spectrum.change_by_edge_db[index], spectrum.change_by_current_db[index]
+        if edge == current == 0:
+            continue
+        frequency = phrases.engineering(spectrum.frequency_hz[index], "Hz")
+        yield f"  {frequency:>10}  {edge + 0.0:+8.1f}{current + 0.0:+8.1f}{edge + current:+8.1f}"
 
 
 def _worst(spectrum: Spectrum, worst: int) -> list[int]:
