@@ -277,7 +277,8 @@ def _script_readings(
     start = int(times["vih", 0])
     falling = np.flatnonzero(np.diff(wave[start:]) < -5e-4)
     after = start + int(falling[0]) if len(falling) else len(wave) - 1
-    low, high = int(times["low", 0]), max(int(times["high", 0]), int(times["low", 0])) + 1
+    low = int(np.clip(times["low", 0], 0, len(wave) - 2))
+    high = int(np.clip(times["high", 0], low, len(wave) - 2)) + 1
     return {
         "transition": (times["high", 0] - times["low", 0]) * step_s,
         "overshoot": float(wave.max() - 1),
