@@ -78,7 +78,8 @@ def find_net(board: Board, name: str) -> str:
     folded = {n.casefold(): n for n in names}
     if name.casefold() in folded:
         return folded[name.casefold()]
-    close = get_close_matches(name, names, n=3) or names[:3]
+    close = get_close_matches(name, names, n=3)
+    lists = f"edgeplan plan BOARD lists all {len(names)} nets"
     raise InputError(
         [
             Problem(
@@ -87,7 +88,7 @@ def find_net(board: Board, name: str) -> str:
                 1,
                 1,
                 field="net",
-                hint=f"write {' or '.join(close)}",
+                hint=f"did you mean {' or '.join(close)}?" if close else lists,
             )
         ]
     )
@@ -399,6 +400,19 @@ def _assumptions(draft: Draft) -> list[Assumption]:
     if no_pad:
         text = f"settings without a pad capacitance have 0 pF: {', '.join(no_pad)}"
         found.append(Assumption(subject="drivers", text=text, provenance="assumed"))
+    bare = sorted(
+        {
+            f.interface.name
+            for f in draft.facts
+            if f.timing == "common-clock" and f.interface.clock_net and not f.interface.skew_s
+        }
+    )
+    if bare:
+        text = (
+            "the flight of its clock as drawn counts as part of the stated skew, which is 0, of "
+            f"interface {', '.join(bare)}; what a proposal moves the clock by counts on top"
+        )
+        found.append(Assumption(subject="timing", text=text, provenance="assumed"))
     found += [Assumption(subject="input", text=t, provenance="assumed") for t in board.notes]
     found += [
         Assumption(subject="not used", text=text, provenance="assumed")
