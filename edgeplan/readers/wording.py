@@ -34,6 +34,11 @@ _WANTED = {
     "date_parsing": ("a date", "write it without quotes: 2027-03-31"),
     "date_from_datetime_parsing": ("a date", "write it without quotes: 2027-03-31"),
 }
+_LIMIT_IDS = 'limits = ["..."]; edgeplan limits prints all ids'
+_ASKED_FOR = {  # by path: what to write where nothing stands
+    ("emission",): f"add a table [emission] with {_LIMIT_IDS}",
+    ("emission", "limits"): f"write {_LIMIT_IDS}",
+}
 
 
 def problems(error: ValidationError, document: Document, model: type[BaseModel]) -> list[Problem]:
@@ -78,12 +83,12 @@ class _Finding:
         kind = self.detail["type"]
         where = self.document.where(self.path)
         if kind in _COUNTS or (kind == "missing" and isinstance(self.detail["loc"][-1], int)):
-            return where.problem(f"the list has too {_COUNTS.get(kind, 'few')} entries")
+            hint = "" if self.document.value(self.path) else _ASKED_FOR.get(self.path, "")
+            return where.problem(f"the list has too {_COUNTS.get(kind, 'few')} entries", hint)
         if kind == "missing":
             key = str(self.detail["loc"][-1])
-            return where.problem(
-                f"{key!r} is missing", f"add {key} = {_example(schema, self, key)}"
-            )
+            hint = _ASKED_FOR.get((*self.path, key), f"add {key} = {_example(schema, self, key)}")
+            return where.problem(f"{key!r} is missing", hint)
         if kind == "extra_forbidden":
             keys = _properties(schema, self.path[:-1])
             return where.problem(

@@ -63,3 +63,22 @@ def test_a_share_that_looks_like_per_cent_is_told_how_to_write_it(tmp_path):
     (tmp_path / "nets.csv").write_bytes((SMALL / "nets.csv").read_bytes())
     with pytest.raises(InputError, match='write "30 %"'):
         read_board(tmp_path)
+
+
+@pytest.mark.parametrize(
+    ("old", "new"),
+    [
+        ('limits = ["cispr32-class-b-3m"]', "limits = []"),
+        ('limits = ["cispr32-class-b-3m"]', ""),
+        ('[emission]\nlimits = ["cispr32-class-b-3m"]', ""),
+    ],
+)
+def test_where_no_limit_is_named_the_hint_tells_where_the_ids_are(tmp_path, old, new):
+    text = (SMALL / "board.toml").read_text()
+    assert old in text
+    (tmp_path / "board.toml").write_text(text.replace(old, new, 1))
+    (tmp_path / "nets.csv").write_bytes((SMALL / "nets.csv").read_bytes())
+    with pytest.raises(InputError) as caught:
+        read_board(tmp_path)
+    (problem,) = caught.value.problems
+    assert problem.hint.endswith('limits = ["..."]; edgeplan limits prints all ids')
