@@ -8,6 +8,7 @@ from typing import Literal
 
 from edgeplan.names import instead
 from edgeplan.readers import tables
+from edgeplan.readers.cell_units import unit_problem
 from edgeplan.readers.files import Where
 from edgeplan.units import RESISTANCE, UnitError
 
@@ -229,8 +230,19 @@ class Placed:
         if self.column.units is RESISTANCE_UNITS and text.strip("0123456789.,eE+-"):
             value = _resistance(text)
         if value is None:
+            self._refuse_unit(text, table)
             value = tables.decimal(text, decimal_comma=table.decimal_comma) * self.factor
         return self._bounded(float(value), text)
+
+    def _refuse_unit(self, text: str, table: tables.Table) -> None:
+        """Refuse a unit in the cell: the header holds one, perhaps another."""
+        name, units = self.column.name, self.column.units
+        header = next((unit for unit in units if Decimal(units[unit]) == self.factor), None)
+        if header is None or text[-1:].isdigit():
+            return
+        found = unit_problem(text, name, units, header, decimal_comma=table.decimal_comma)
+        if found is not None:
+            raise UnitError(*found)
 
     def _bounded(self, value: float, text: str) -> float:
         """Refuse a number below the column's bound."""

@@ -6,7 +6,7 @@ from edgeplan.errors import Problem
 from edgeplan.names import instead
 from edgeplan.readers.net_kinds import is_supply, partner
 from edgeplan.readers.netlist import Entry, NetList
-from edgeplan.readers.references import Names
+from edgeplan.readers.references import Names, or_add
 
 ALIGNED = {
     "driver_pin": "driver",
@@ -101,11 +101,11 @@ def _far_net(entry: Entry, nets: NetList) -> Iterator[Problem]:
 
 
 def _counts(entry: Entry) -> Iterator[Problem]:
-    """Aligned cells hold as many names as the cell they belong to."""
+    """Aligned cells hold as many names as the cell they belong to; an empty cell is unknown."""
     for name, owner in ALIGNED.items():
         count = len(entry.values.get(name, ()))
         wanted = len(entry.values.get(owner, ()))
-        if count not in (0, wanted):
+        if count != wanted and count and wanted:
             message = f"{count} for {wanted} in {owner}"
             hint = f"names are aligned with those in {owner}; - stands for none"
             yield entry.where(name).problem(message, hint)
@@ -127,10 +127,7 @@ def _names(entry: Entry, what: str, known: Iterable[str]) -> Iterator[Problem]:
     value = entry.values.get(what, ())
     for name in (value,) if isinstance(value, str) else value:
         if name not in known:
-            hint = instead(name, known)
-            if "did you mean" not in hint:
-                hint += f"; each {what} has a [[{what}]] table in board.toml"
-            yield entry.where(what).problem(f"no {what} {name!r}", hint)
+            yield entry.where(what).problem(f"no {what} {name!r}", or_add(what, name, known))
 
 
 def _layers(entry: Entry, names: Names) -> Iterator[Problem]:

@@ -177,8 +177,22 @@ def _group_names(document: Document, names: Names) -> Iterator[Problem]:
         for path, value in found(document.data, ("group", EACH, key)):
             for name in value.split() if isinstance(value, str) else ():
                 if name not in known:
-                    hint = instead(name, known)
+                    hint = instead(name, known) if key == "layer" else or_add(key, name, known)
                     yield document.where(path).problem(f"no {key} {name!r}", hint)
+
+
+def or_add(what: str, name: str, known: Iterable[str]) -> str:
+    """Return the hint for a name that may be misspelled or not described yet.
+
+    Examples
+    --------
+    >>> or_add("driver", "d3", ["d3f", "d4f"])
+    'did you mean "d3f"? Or add a [[driver]] named "d3" to board.toml'
+    """
+    hint = instead(name, known)
+    start = f"{hint} Or" if hint.endswith("?") else f"{hint}; or"
+    article = "an" if what[0] in "aeiou" else "a"
+    return f'{start} add {article} [[{what}]] named "{name}" to board.toml'
 
 
 def _stated_settings(document: Document, names: Names) -> Iterator[Problem]:

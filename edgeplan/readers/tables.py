@@ -111,7 +111,7 @@ def _why_no_number(text: str) -> tuple[str, str]:
         return f"{text!r} is not a number a board can have", "leave the cell empty if unknown"
     start = _NUMBER.match(text)
     if start and text[start.end() :].strip().isalpha():
-        return f"{text!r} has a unit", f"write {start[0]}: the header holds the unit"
+        return f"{text!r} has a unit", "the header holds the unit: write the number in that unit"
     return f"{text!r} is not a number", "write digits with a decimal point, such as 12.5"
 
 

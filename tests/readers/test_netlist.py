@@ -124,3 +124,44 @@ def test_one_column_twice_is_told():
 def test_a_list_without_net_names_is_told():
     _, (problem,) = read("length_mm\n1\n")
     assert "there is no column 'net'" in problem.message
+
+
+@pytest.mark.parametrize(
+    ("header", "cell", "hint"),
+    [
+        # 1 inch is 25.4 mm, 1 mil is 25.4 um
+        ("length_mm", "1.8 inch", "write 45.72 (mm), or name the column length_inch"),
+        ("length_mil", "2.54mm", "write 100 (mil), or name the column length_mm"),
+        ("length_mm", "12 cm", "write 120 (mm)"),
+        ("width_mm", "180 µm", "write 0.18 (mm), or name the column width_um"),
+        ("length_mm", "30 mm", "write 30: the header holds the unit"),
+        ("clock_mhz", "0.1 GHz", "write 100 (MHz), or name the column clock_ghz"),
+        ("bus_capacitance_pf", "40 mF", "the header holds pF: write the number of pF"),
+        ("length_mm", "3 furlongs", "the header holds mm: write the number of mm"),
+    ],
+)
+def test_a_unit_in_the_cell_is_converted_to_that_of_the_header(header, cell, hint):
+    _, (problem,) = read(f"net,{header}\nA,{cell}\n")
+    assert problem.message == f"{cell!r} has a unit"
+    assert problem.hint == hint
+
+
+def test_a_converted_number_keeps_the_decimal_comma_of_the_file():
+    _, (problem,) = read("net;length_mm\nA;12,5\nB;1,8 inch\n")
+    assert problem.hint.startswith("write 45,72 (mm)")
+
+
+@pytest.mark.parametrize(
+    "row",
+    ["driver_pin,setting,bank\nA,1,B,x\n", "driver,driver_pin,setting,bank\nA,,1,B,x\n"],
+)
+def test_a_pin_without_its_driver_is_a_missing_driver_and_no_contradiction(row):
+    (net,), problems = complete(f"net,{row}")
+    assert problems == []
+    assert net.driver == ()
+
+
+def test_an_unknown_driver_may_be_misspelled_or_not_described_yet():
+    _, (problem,) = complete("net,driver\nA,d1x\n")
+    assert problem.message == "no driver 'd1x'"
+    assert problem.hint == 'did you mean "d1"? Or add a [[driver]] named "d1x" to board.toml'
