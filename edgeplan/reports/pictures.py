@@ -93,8 +93,11 @@ def _figure(net: NetResult, margin_db: float) -> "Figure":
     for column, state in enumerate(states):
         shared["sharey"] = axes = figure.add_subplot(grid[0, column], **shared)
         _waveforms(axes, state, pictures)
-        lower["sharey"] = axes = figure.add_subplot(grid[1, column], **lower)
-        _spectrum(axes, state, pictures, margin_db)
+        if any(spectrum.state == state for spectrum in pictures.spectra):
+            lower["sharey"] = axes = figure.add_subplot(grid[1, column], **lower)
+            _spectrum(axes, state, pictures, margin_db)
+        else:  # without scales, so it must not share those of the other state
+            _no_spectrum(figure.add_subplot(grid[1, column]), net, state)
     _windows(figure.add_subplot(grid[2, :]), net, states)
     return figure
 
@@ -148,6 +151,24 @@ def _spectrum(axes: "Axes", state: str, pictures: Pictures, margin_db: float) ->
     if frequencies_mhz:
         _decades(axes, min(frequencies_mhz), max(frequencies_mhz))
         axes.legend(loc="upper center", bbox_to_anchor=(0.5, -0.16), ncols=6, columnspacing=1.2)
+
+
+def _no_spectrum(axes: "Axes", net: NetResult, state: str) -> None:
+    """Say why there is no emission to draw, on axes without scales."""
+    candidate = net.candidate_now if state == "now" else net.proposal
+    reasons = dict.fromkeys(
+        check.undecided_because
+        for check in net.checks
+        if check.check == "emission" and check.candidate == candidate and not check.decided
+    )
+    because = "; ".join(reason for reason in reasons if reason)
+    if reasons:
+        words = f"emission is undecided: {because}" if because else "emission is undecided"
+    else:
+        words = "no emission line of this net is judged"
+    axes.set(title=f"emission, {state}", xticks=[], yticks=[])
+    text = "\n".join(phrases.wrap(phrases.inert(words), 60))
+    axes.text(0.5, 0.5, text, transform=axes.transAxes, ha="center", va="center")
 
 
 def _levels(pictures: Pictures, margin_db: float) -> tuple[float, float]:

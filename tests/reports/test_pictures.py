@@ -50,3 +50,29 @@ def test_matplotlib_is_loaded_only_to_draw():
     code = "import sys; import edgeplan.reports.pictures; print('matplotlib' in sys.modules)"
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, check=True)
     assert done.stdout.split() == [b"False"]
+
+
+def test_a_net_without_spectrum_says_why_on_an_axis_without_scales(record, sample):
+    net = record.nets[0]
+    waves = dataclasses.replace(net.pictures, spectra=[])
+    checks = [sample.undecided("emission", "smallest edge")]
+    net = dataclasses.replace(net, pictures=waves, checks=checks, candidate_now=0)
+    text = " ".join(ET.fromstring(drawn(record, net)).itertext())  # noqa: S314 - our own bytes
+    assert "emission is undecided: smallest edge" in text
+    assert "mathdefault" not in text
+    assert "frequency, MHz" not in text
+
+
+def test_a_spectrum_keeps_its_scales_beside_a_state_without_one(record):
+    net = record.nets[0]
+    only_after = [s for s in net.pictures.spectra if s.state == "after"]
+    pictures_after = dataclasses.replace(net.pictures, spectra=only_after)
+    text = " ".join(
+        ET.fromstring(drawn(record, dataclasses.replace(net, pictures=pictures_after))).itertext()  # noqa: S314
+    )
+    assert "frequency, MHz" in text
+    assert "450 MHz" in text
+
+
+def drawn(record, net):
+    return pictures.draw(dataclasses.replace(record, nets=[net]), ".svg")
