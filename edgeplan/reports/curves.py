@@ -8,6 +8,7 @@ from edgeplan.results import NetResult, Spectrum, Trace
 
 _BAR = 30  # columns of a bar
 _BAR_SPAN_DB = 30.0  # from the left end of a bar to its right end
+_FAR_BELOW_DB = 60.0  # a line further below its limit is absent, such as an even harmonic
 _PLOT_COLUMNS = 72
 _PLOT_ROWS = 12
 
@@ -30,15 +31,27 @@ def spectra(net: NetResult, margin_db: float, worst: int) -> Iterator[str]:
         Lines without a line feed.
     """
     for spectrum in net.pictures.spectra if net.pictures else ():
-        yield from ("", f"Spectrum {spectrum.state}, {spectrum.detector}, the {worst} worst lines")
+        shown = _worst(spectrum, worst)
+        yield from ("", f"Spectrum {spectrum.state}, {spectrum.detector}, {_count(len(shown))}")
         yield (
             "   frequency  harmonic      expected   up to   trace   cable   limit  budget    over"
             f"   over the budget by -{_BAR_SPAN_DB / 2:.0f} to +{_BAR_SPAN_DB / 2:.0f} dB"
         )
-        for index in _worst(spectrum, worst):
+        for index in shown:
             yield _spectrum_line(spectrum, index, margin_db)
         yield from _corner_note(spectrum)
         yield from _changes(spectrum, worst)
+
+
+def _count(lines: int) -> str:
+    """Tell how many lines follow.
+
+    >>> _count(12), _count(0)
+    ('the 12 worst lines', 'no line within 60 dB of its limit')
+    """
+    if lines == 0:
+        return f"no line within {_FAR_BELOW_DB:.0f} dB of its limit"
+    return f"the {lines} worst lines" if lines > 1 else "the worst line"
 
 
 def _changes(spectrum: Spectrum, worst: int) -> Iterator[str]:
@@ -56,10 +69,11 @@ def _changes(spectrum: Spectrum, worst: int) -> Iterator[str]:
 
 
 def _worst(spectrum: Spectrum, worst: int) -> list[int]:
-    """Return the lines that come closest to the limit, by frequency."""
+    """Return the lines that come closest to the limit, by frequency; absent ones left out."""
     levels = zip(spectrum.expected_dbuv_per_m, spectrum.limit_dbuv_per_m, strict=True)
     excess = [level - limit for level, limit in levels]
-    order = sorted(range(len(excess)), key=lambda index: -excess[index])
+    present = (index for index, over in enumerate(excess) if over >= -_FAR_BELOW_DB)
+    order = sorted(present, key=lambda index: -excess[index])
     return sorted(order[:worst])
 
 

@@ -81,10 +81,46 @@ def tightest(net: NetResult, candidate: int) -> Check | None:
     return min(checks, key=lambda check: check.margin_share or 0.0, default=None)
 
 
+def nearest_flip(net: NetResult, candidate: int) -> Check | None:
+    """Return the check that makes a candidate borderline: least margin over its model's error.
+
+    Parameters
+    ----------
+    net : NetResult
+        A judged net.
+    candidate : int
+        Number of the candidate.
+
+    Returns
+    -------
+    Check or None
+        None where no check of this candidate has a margin and an error.
+    """
+    checks = [
+        (margin / error, check)
+        for check in net.checks
+        if check.candidate == candidate and check.decided
+        if (margin := check.margin) is not None and (error := _error(check)) > 0
+    ]
+    return min(checks, key=lambda pair: pair[0], default=(0.0, None))[1]
+
+
+def _error(check: Check) -> float:
+    """Error on the side that could change the outcome, as a size."""
+    if check.error is None:
+        return 0.0
+    return -check.error.low if (check.margin or 0.0) < 0 else check.error.high
+
+
 def _margin(net: NetResult) -> str:
     """Tightest margin of the proposal, and the verdict after it where that is not ``inside``."""
-    check = tightest(net, net.proposal)
+    check = nearest_flip(net, net.proposal) if net.borderline_after else None
+    check = check or tightest(net, net.proposal)
     words = phrases.UNKNOWN if check is None else phrases.margin(check)
+    if net.verdict_after == "undecided":
+        # what is known so far must not read as the margin of the net
+        known = "" if check is None else f" ({words} known)"
+        return phrases.UNKNOWN + known
     changed = net.proposal != net.candidate_now or net.verdict_after != net.verdict
     if changed and net.verdict_after != "inside":
         words = f"{net.verdict_after}; {words}"
