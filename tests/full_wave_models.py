@@ -1,7 +1,9 @@
 """What the emission models say for each row of the full-wave tables in tests/reference.
 
-The references' lines have a vertical wire at each end, which real traces have not; the model is
-given their length as one height more of line (both ends together), at the trace's own place.
+The references' lines have a vertical wire at each end, which real traces have not. Over a plane the
+model is given them as one height more of line, both together, spread along the trace. On
+boards it is given the line as the reference has it, by port admittances: the grid and the end
+wires are part of it, and no field was looked at to find it.
 """
 
 import csv
@@ -50,21 +52,36 @@ def length_m(table: Table) -> Array:
     return np.asarray(table["end_m"] - table["start_m"])
 
 
+def line_m(table: Table) -> Array:
+    """Length of each line with its end wires, ``(N,)``."""
+    return np.asarray(table.get("port_length_m", length_m(table) + table["height_m"]))
+
+
+def line_ohm(table: Table) -> Array:
+    """Impedance of each line, ``(N,)``."""
+    return np.asarray(table.get("port_ohm", table["line_ohm"]))
+
+
 def electrical(table: Table) -> tuple[Array, Array]:
     """Phase along each whole line and reflection of its load, ``(N,)``."""
     wave_per_m = 2 * np.pi * table["frequency_hz"] / SPEED_M_PER_S
     load_ohm = table["load_real_ohm"] + 1j * table["load_imag_ohm"]
-    reflection = (load_ohm - table["line_ohm"]) / (load_ohm + table["line_ohm"])
-    return wave_per_m * (length_m(table) + table["height_m"]), reflection
+    reflection = (load_ohm - line_ohm(table)) / (load_ohm + line_ohm(table))
+    return wave_per_m * line_m(table), reflection
+
+
+def as_nominal_lines(table: Table) -> Table:
+    """The same with each line as a wire over a plane, one height longer than drawn."""
+    return {key: column for key, column in table.items() if not key.startswith("port_")}
 
 
 def forward_ampere(table: Table) -> Array:
     """Forward wave at the source for an EMF of 1 V, ``(N,)`` [A]."""
     phase, reflection = electrical(table)
-    source_ohm, line_ohm = table["source_ohm"], table["line_ohm"]
-    at_source = (source_ohm - line_ohm) / (source_ohm + line_ohm)
+    source_ohm, wave_ohm = table["source_ohm"], line_ohm(table)
+    at_source = (source_ohm - wave_ohm) / (source_ohm + wave_ohm)
     rounds = 1 - at_source * reflection * np.exp(-2j * phase)
-    return np.asarray(np.abs(1 / (source_ohm + line_ohm) / rounds))
+    return np.asarray(np.abs(1 / (source_ohm + wave_ohm) / rounds))
 
 
 def over_plane_v(table: Table) -> Array:
@@ -94,7 +111,7 @@ def nets(table: Table, cables: tuple[Cable, ...]) -> RadiationInputs:
         height_m=column(table["height_m"]),
         permittivity=one,
         permittivity_effective=one,
-        impedance_ohm=column(table["line_ohm"]),
+        impedance_ohm=column(line_ohm(table)),
         side_offset_m=column(table["side_offset_m"]),
         board_length_m=column(table["board_length_m"]),
         board_width_m=column(table["board_width_m"]),
@@ -142,15 +159,13 @@ def cable_at_known_end_v(table: Table) -> Array:
     return forward_ampere(table) * field[:, 0]
 
 
-def up_to_v(table: Table, each_cable: Cable) -> Array:
-    """Trace and cables together, distance times field, ``(N,)``; all cables alike."""
-    total = np.empty(len(table["cables"]))
+def cables_v(table: Table, each_cable: Cable) -> Array:
+    """Envelope of all of each row's cables, alike, distance times field, ``(N,)``."""
+    field = np.empty(len(table["cables"]))
     for count in np.unique(table["cables"]):
         rows = table["cables"] == count
-        part = take(table, rows)
-        cables = (each_cable,) * int(count)
-        total[rows] = np.hypot(trace_v(part), cable_v(part, cables))
-    return total
+        field[rows] = cable_v(take(table, rows), (each_cable,) * int(count))
+    return field
 
 
 def on_site_v_per_m(table: Table, field_v: Array) -> Array:

@@ -12,12 +12,13 @@ import importlib.metadata
 import io
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import replace
+from functools import lru_cache
 from pathlib import Path
 from typing import NamedTuple
 
 import numpy as np
 import wire_cases as cases
-from wire_boards import Board, Model, Trace, board_model, trace_over_ground
+from wire_boards import Board, Mesh, Model, Trace, board_model, trace_over_ground
 from wire_cases import Row
 from wire_code import SPEED_OF_LIGHT_M_PER_S, Array, Scan, Solution, far_field, scanned_field
 
@@ -77,29 +78,45 @@ def site_solution(board: Board, cables: Cables, frequency_hz: float) -> Solution
 
 
 def one_cable_rows() -> Iterator[Row]:
-    """Largest field over the length of one straight cable in free space."""
-    for name, board in cases.BOARDS.items():
-        board = replace(board, exits_m=board.exits_m[:1])
+    """Largest field over the length of one straight cable in free space.
+
+    The length is searched with the coarse mesh, the field computed with the fine one.
+    """
+    for name, whole in cases.BOARDS.items():
+        coarse = replace(whole, exits_m=whole.exits_m[:1])
+        board = cases.fine(coarse)
         for frequency_hz in cases.ONE_CABLE_HZ:
             lengths_m = cases.cable_lengths_m(frequency_hz)
-            solved = [
-                free_solution(board, [cases.straight_cable(board, length_m)], frequency_hz)
-                for length_m in lengths_m
-            ]
-            for row, fields in _per_load(name, frequency_hz, solved):
-                at_m = {"at_cable_m": lengths_m[int(np.argmax(fields))]}
-                yield row | {"cables": 1, "field_v": max(fields)} | at_m
+            searched = [one_cable(coarse, length_m, frequency_hz) for length_m in lengths_m]
+            for row, fields in _per_load(name, coarse, frequency_hz, searched):
+                at_m = float(lengths_m[int(np.argmax(fields))])
+                solved = [one_cable(board, at_m, frequency_hz)]
+                better = _per_load(name, board, frequency_hz, solved)
+                found = next(pair for pair in better if pair[0]["load"] == row["load"])
+                levels = {"coarse_v_per_height": max(fields) / coarse.trace.height_m}
+                levels |= {"field_v": found[1][0], "at_cable_m": at_m}
+                yield found[0] | {"cables": 1} | levels
+
+
+@lru_cache(maxsize=8)  # loads mostly share their longest field
+def one_cable(board: Board, length_m: float, frequency_hz: float) -> Solution:
+    """A board with its straight cable of that length."""
+    return free_solution(board, [cases.straight_cable(board, length_m)], frequency_hz)
 
 
 def _per_load(
-    name: str, frequency_hz: float, solved: Sequence[Solution], in_cables: Sequence[complex] = ()
+    name: str,
+    board: Board,
+    frequency_hz: float,
+    solved: Sequence[Solution],
+    in_cables: Sequence[complex] = (),
 ) -> Iterator[tuple[Row, list[float]]]:
     """Columns of a board, its load and its cables, with the largest field of each solution."""
     for load_name in cases.LOADS:
         source, load = cases.load_ohm(frequency_hz, load_name)
         ends = cases.end_columns(frequency_hz, load_name, source, load)
         fields = [largest(one, source, load, np.asarray(in_cables)) for one in solved]
-        yield cases.board_columns(name) | ends, fields
+        yield cases.board_columns(name, board) | ends, fields
 
 
 def several_cable_rows() -> Iterator[Row]:
@@ -111,7 +128,7 @@ def several_cable_rows() -> Iterator[Row]:
                 rng = np.random.default_rng(7)
                 layouts = [cases.free_layout(board, rng) for _ in range(cases.FREE_LAYOUTS)]
                 solved = [free_solution(board, layout, frequency_hz) for layout in layouts]
-                for row, fields in _per_load(name, frequency_hz, solved):
+                for row, fields in _per_load(name, cases.BOARDS[name], frequency_hz, solved):
                     middle = {"median_v": float(np.median(fields))}
                     yield row | {"cables": count, "field_v": max(fields)} | middle
 
@@ -134,7 +151,7 @@ def site_solutions(
 def site_rows() -> Iterator[Row]:
     """Highest reading of each layout on a measuring site, 1 to 3 cables."""
     for name, count, frequency_hz, solved in site_solutions(cases.SITE_HZ, (1, 2, 3)):
-        for row, fields in _per_load(name, frequency_hz, solved, [0j] * count):
+        for row, fields in _per_load(name, cases.BOARDS[name], frequency_hz, solved, [0j] * count):
             layouts = {f"layout_{i}_v_per_m": field for i, field in enumerate(fields, 1)}
             yield row | {"cables": count, "field_v_per_m": max(fields)} | layouts
 
@@ -146,7 +163,9 @@ def filter_rows() -> Iterator[Row]:
         for where in ("none", "one", "all")[: count + 1]:
             for filter_ohm in cases.FILTERS_OHM if where != "none" else (0j,):
                 feet = [filter_ohm] + [filter_ohm if where == "all" else 0j] * (count - 1)
-                fields[where, filter_ohm] = list(_per_load(name, frequency_hz, solved, feet))
+                fields[where, filter_ohm] = list(
+                    _per_load(name, cases.BOARDS[name], frequency_hz, solved, feet)
+                )
         bare = [max(readings) for _, readings in fields.pop(("none", 0j))]
         for (where, filter_ohm), rows in fields.items():
             parts = {"cables": count, "where": where}
@@ -173,15 +192,38 @@ def trace_refined() -> list[float]:
     return changes
 
 
+def one_cable_refined() -> list[float]:
+    """Change of the level with one cable when the fine mesh's columns stand closer."""
+    changes = []
+    for name in ("small", "middle"):
+        board = cases.fine(cases.BOARDS[name])
+        closer = replace(board.mesh, columns_m=board.mesh.columns_m * 0.75)
+        for frequency_hz in (110e6, 430e6):
+            changes += _changes(board, closer, frequency_hz, _free_with_one)
+    return changes
+
+
 def free_refined() -> list[float]:
     """Change of the level with one cable when all segments of board and trace are halved."""
-    boards = [cases.BOARDS[name] for name in ("small", "middle")]
-    return [
-        change
-        for board in boards
-        for frequency_hz in (110e6, 430e6)
-        for change in _halved(board, frequency_hz, _free_with_one)
-    ]
+    changes = []
+    for name in ("middle", "wide"):
+        board = cases.BOARDS[name]
+        for frequency_hz in (110e6, 430e6):
+            changes += _changes(board, halved(board.mesh), frequency_hz, _free_with_one)
+    return changes
+
+
+def halved(mesh: Mesh) -> Mesh:
+    """Twice as many lines over the same places; the trace's segments as short as it is thick."""
+    return replace(
+        mesh,
+        rows_m=mesh.rows_m / 2,
+        columns_m=mesh.columns_m / 2,
+        beside_m=mesh.beside_m / 2,
+        beside=2 * mesh.beside,
+        ends_m=mesh.ends_m / 2,
+        per_height=4,
+    )
 
 
 def site_refined() -> list[float]:
@@ -190,7 +232,7 @@ def site_refined() -> list[float]:
     return [
         change
         for frequency_hz in (50e6, 200e6, 730e6)
-        for change in _halved(board, frequency_hz, _site_with_three)
+        for change in _changes(board, halved(board.mesh), frequency_hz, _site_with_three)
     ]
 
 
@@ -205,11 +247,11 @@ def _site_with_three(board: Board, frequency_hz: float) -> Solution:
     return site_solution(board, layout, frequency_hz)
 
 
-def _halved(
-    board: Board, frequency_hz: float, solve: Callable[[Board, float], Solution]
+def _changes(
+    board: Board, mesh: Mesh, frequency_hz: float, solve: Callable[[Board, float], Solution]
 ) -> list[float]:
-    """Change of all loads' levels, in dB, from the board as it is to halved segments."""
-    rough, better = (solve(one, frequency_hz) for one in (board, replace(board, refine=2)))
+    """Change of all loads' levels, in dB, from the board as it is to another mesh."""
+    rough, better = (solve(one, frequency_hz) for one in (board, replace(board, mesh=mesh)))
     feet = np.zeros(len(rough.admittance_s) - 2)
     changes = []
     for name in cases.LOADS:
@@ -232,9 +274,15 @@ class Table(NamedTuple):
     about: str
 
 
-_BOARD_MODEL = """Board: wire grid, pitch 3 trace heights (9 or 15 mm), one height beside the trace,
-wire radius = spacing / 2 pi; trace: wire of radius height / 10, two segments per height,
-with a vertical wire at each end; cables: radius 1 mm, segments up to 1/20 wavelength."""
+_WIRES = """wire radius = spacing / 2 pi; trace: wire of radius height / 10 with a vertical wire
+at each end; cables: radius 1 mm, segments growing up to 1/20 wavelength. line_ohm: of the wire
+over a plane; port_ohm, port_length_m: of the line as this reference has it (grid, end wires),
+by its port admittances at 100 MHz."""
+_COARSE = f"""Board: wire grid, pitch 1.5 trace heights (15 mm), half a height beside the trace;
+{_WIRES}"""
+_FINE = f"""Board: wire grid, rows 1.5 trace heights apart (4.5 or 7.5 mm), half a height beside the
+trace, columns one height apart;
+{_WIRES}"""
 _SITE = """Perfect floor, board 0.8 m over it, receiver 3 m from the board's middle, near field;
 heights 1 to 4 m in steps of 0.2 m, azimuths every 22.5 (to 150 MHz), 11.25 (to 400 MHz), 5.6
 degrees; the larger of the horizontal and the vertical part. Twelve random layouts: cables
@@ -249,16 +297,17 @@ component, largest over directions (2 degrees by 4 degrees).""",
     ),
     "one_cable": Table(
         one_cable_rows,
-        free_refined,
-        f"""{_BOARD_MODEL}
+        one_cable_refined,
+        f"""{_FINE}
 One straight cable along x from the end x = length, in free space. field_v: distance times the
 larger component, largest over directions (5 degrees) and cable lengths up to 2 m, no further
-apart than 0.04 wavelengths over the last 1.5 wavelengths; at_cable_m: where.""",
+apart than 0.04 wavelengths over the last 1.5 wavelengths; at_cable_m: where, by the mesh of the
+other tables, which gives coarse_v_per_height [V/m] with a trace twice as high.""",
     ),
     "two_cables": Table(
         several_cable_rows,
         free_refined,
-        f"""{_BOARD_MODEL}
+        f"""{_COARSE}
 Two and three cables in free space, straight, 0.5 to 2 m, 16 random layouts. field_v: distance
 times the larger component, largest over directions (5 degrees) and layouts; median_v: of the
 layouts. The sum of all layouts is not covered: the highest of 16 lies below it.""",
@@ -266,7 +315,7 @@ layouts. The sum of all layouts is not covered: the highest of 16 lies below it.
     "filter": Table(
         filter_rows,
         site_refined,
-        f"""{_BOARD_MODEL}
+        f"""{_COARSE}
 {_SITE}
 An impedance in the first segment of one cable or of all. field_v_per_m: highest reading of the
 layouts; bare_v_per_m: the same without it.""",
@@ -274,7 +323,7 @@ layouts; bare_v_per_m: the same without it.""",
     "site": Table(
         site_rows,
         site_refined,
-        f"""{_BOARD_MODEL}
+        f"""{_COARSE}
 {_SITE}
 layout_N_v_per_m: highest reading of one layout; field_v_per_m: of all.""",
     ),

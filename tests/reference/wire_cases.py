@@ -4,11 +4,13 @@ No board here served to find a constant of the models (those were 100 x 60, 150 
 200 x 120 and 80 x 160 mm).
 """
 
+from dataclasses import replace
+from functools import cache
 from typing import Any
 
 import numpy as np
-from wire_boards import Board, Trace
-from wire_code import SPEED_OF_LIGHT_M_PER_S, Array
+from wire_boards import Board, Mesh, Trace, board_model
+from wire_code import SPEED_OF_LIGHT_M_PER_S, Array, far_field
 
 Row = dict[str, Any]
 
@@ -26,6 +28,7 @@ ONE_CABLE_HZ = (70e6, 110e6, 180e6, 280e6, 430e6, 650e6, 950e6)
 SEVERAL_CABLES_HZ = (60e6, 100e6, 180e6, 300e6, 550e6, 900e6)
 SITE_HZ = (30e6, 50e6, 80e6, 120e6, 200e6, 320e6, 500e6, 730e6, 1000e6)
 FILTER_HZ = SITE_HZ[::2]
+LINE_HZ = 100e6  # where the traces' line constants are read
 FILTERS_OHM = (250 + 0j, 1000 + 0j, 500 + 500j)
 
 SHORTEST_M, LONGEST_M = 0.5, 2.0  # cables in free space
@@ -34,32 +37,61 @@ SITE_CABLE_M = 1.5  # none is longer along its way
 TABLE_M = 0.8  # height of the board over the floor
 FREE_LAYOUTS, SITE_LAYOUTS = 16, 12
 
-_SMALL = {"length_m": 0.07, "width_m": 0.05, "pitch_m": 0.009, "exits_m": ((0.07, 0.025),)}
+_SMALL = {"length_m": 0.07, "width_m": 0.05, "exits_m": ((0.07, 0.025),)}
 _MIDDLE = {
     "length_m": 0.13,
     "width_m": 0.09,
-    "pitch_m": 0.015,
     "exits_m": ((0.13, 0.04), (0.0, 0.05), (0.075, 0.09)),
 }
 _LONG = {
     "length_m": 0.18,
     "width_m": 0.06,
-    "pitch_m": 0.015,
     "exits_m": ((0.18, 0.028), (0.0, 0.028), (0.09, 0.0)),
 }
 _WIDE = {
     "length_m": 0.09,
     "width_m": 0.14,
-    "pitch_m": 0.015,
     "exits_m": ((0.09, 0.08), (0.0, 0.06), (0.045, 0.14)),
 }
 
 
+def coarse_mesh(pitch_m: float) -> Mesh:
+    """Mesh for many cables, under a trace two thirds of the pitch high."""
+    return Mesh(
+        rows_m=pitch_m,
+        columns_m=pitch_m,
+        beside_m=pitch_m / 3,
+        beside=2,
+        ends_m=pitch_m / 3,
+        per_height=3,
+        first_m=pitch_m / 2,
+    )
+
+
+def fine_mesh(pitch_m: float) -> Mesh:
+    """Three times as many segments, under a trace a third of that pitch high."""
+    return Mesh(
+        rows_m=pitch_m / 2,
+        columns_m=pitch_m / 3,
+        beside_m=pitch_m / 6,
+        beside=3,
+        ends_m=pitch_m / 3,
+        per_height=2,
+        first_m=pitch_m / 4,
+    )
+
+
 def _board(size: Row, start_m: float, end_m: float, across_m: float) -> Board:
-    """Board of that size with one trace, a third of the pitch above it."""
-    height_m = size["pitch_m"] / 3
-    trace = Trace(start_m=start_m, end_m=end_m, height_m=height_m, across_m=across_m)
-    return Board(trace=trace, **size)
+    """Board of that size with one trace, two thirds of the pitch above it."""
+    pitch_m = 0.009 if size is _SMALL else 0.015
+    trace = Trace(start_m=start_m, end_m=end_m, height_m=pitch_m / 1.5, across_m=across_m)
+    return Board(trace=trace, mesh=coarse_mesh(pitch_m), **size)
+
+
+def fine(board: Board) -> Board:
+    """The same board with the finer mesh and the trace half as high over it."""
+    trace = replace(board.trace, height_m=board.trace.height_m / 2)
+    return replace(board, trace=trace, mesh=fine_mesh(board.mesh.rows_m))
 
 
 BOARDS = {
@@ -90,9 +122,13 @@ def end_columns(frequency_hz: float, name: str, source: float, load: complex) ->
     }
 
 
-def board_columns(name: str) -> Row:
-    """Size of a board and place of its trace."""
-    board, trace = BOARDS[name], BOARDS[name].trace
+@cache
+def board_columns(name: str, board: Board) -> Row:
+    """Size of a board, place of its trace, and the trace as a line by its ports, without cables."""
+    trace = board.trace
+    model = board_model(board, [], board.length_m)
+    solved = far_field(model.wires, LINE_HZ, model.ports, (3, 4), floor=False)
+    port_ohm, port_length_m = solved.line(LINE_HZ)
     return {
         "board": name,
         "board_length_m": board.length_m,
@@ -102,6 +138,8 @@ def board_columns(name: str) -> Row:
         "side_offset_m": trace.across_m - board.width_m / 2,
         "height_m": trace.height_m,
         "line_ohm": trace.line_ohm(),
+        "port_ohm": port_ohm,
+        "port_length_m": port_length_m,
     }
 
 

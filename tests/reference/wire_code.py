@@ -52,6 +52,16 @@ class Solution:
         volts = np.linalg.solve(matrix, np.asarray(source_v, complex))
         return np.tensordot(volts, self.fields, axes=(0, 0))
 
+    def line(self, frequency_hz: float) -> tuple[float, float]:
+        """Impedance [ohm] and length in air [m] of a line between the first two ports.
+
+        Of a line far below a half wavelength; its symmetric part.
+        """
+        (near, across), (_, far) = self.admittance_s[:2, :2]
+        wave_per_m = 2 * np.pi * frequency_hz / SPEED_OF_LIGHT_M_PER_S
+        angle = np.arccos(np.abs(((near + far) / 2 / across).real))
+        return float(np.abs(1 / np.sqrt(near * far - across**2))), float(angle / wave_per_m)
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Scan:
