@@ -1,7 +1,7 @@
 """All checks of all candidates of a block of nets; the one place that calls the engines."""
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
@@ -17,15 +17,22 @@ from edgeplan.received import Received, Seen, receive
 Array = NDArray[Any]
 
 StrobeFlights = Mapping[str, Mapping[tuple[str, str], float]]
+ClockParts = Mapping[str, tuple[str, frozenset[str]]]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Bench:
-    """What every evaluation of one run shares."""
+    """What every evaluation of one run shares.
+
+    ``strobe`` holds the flights of clocks and strobes as chosen, ``strobe_drawn`` as drawn;
+    ``clock_parts`` the part that drives each of them and those that receive it.
+    """
 
     tolerance: float
     radiation: Radiation
     strobe: StrobeFlights
+    strobe_drawn: StrobeFlights = field(default_factory=dict)
+    clock_parts: ClockParts = field(default_factory=dict)
 
     def with_strobe(self, strobe: StrobeFlights) -> "Bench":
         """The same bench with other strobe flights."""
@@ -101,6 +108,8 @@ def evaluate(nets: Nets, candidates: Candidates, bench: Bench) -> Evaluation:
         candidates=candidates,
         received=received,
         strobe=bench.strobe,
+        strobe_drawn=bench.strobe_drawn,
+        clock_parts=bench.clock_parts,
         tolerance=bench.tolerance,
     )
     tables = [

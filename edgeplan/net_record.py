@@ -93,7 +93,9 @@ def write(draft: NetDraft) -> NetResult:
     checks = _checks(draft.now, facts)
     index_now = {c.check: i for i, c in enumerate(checks)}
     index_after = index_now
-    if draft.after.candidate != draft.now.candidate:
+    if draft.after.candidate == draft.now.candidate:
+        checks = _worse(checks, _checks(draft.after, facts))
+    else:
         offset = len(checks)
         more = _checks(draft.after, facts)
         index_after = {c.check: offset + i for i, c in enumerate(more)}
@@ -140,6 +142,17 @@ def write(draft: NetDraft) -> NetResult:
         notes=[*facts.path.notes, *draft.remarks],
         pictures=draft.pictures,
     )
+
+
+def _worse(now: list[Check], after: list[Check]) -> list[Check]:
+    """Of a net that stays as drawn, each check where it is worse: its clock may have moved."""
+    later = {c.check: c for c in after}
+    return [min((c, later.get(c.check, c)), key=_margin_of) for c in now]
+
+
+def _margin_of(check: Check) -> float:
+    """Margin of a check, the smallest of all where it is not decided."""
+    return float("-inf") if check.margin is None else check.margin
 
 
 def _proposal(words_of_change: str, after: str, now: str) -> str:

@@ -2,6 +2,7 @@
 
 from collections import Counter
 from collections.abc import Callable
+from dataclasses import replace
 from functools import partial
 from pathlib import Path
 from typing import Any
@@ -14,7 +15,7 @@ from edgeplan.board import Board
 from edgeplan.candidates import AS_DRAWN, Candidates, drawn_ohm
 from edgeplan.choice import per_net
 from edgeplan.draft import Draft, State
-from edgeplan.evaluate import Bench, Evaluation, evaluate, strobe_flights
+from edgeplan.evaluate import Bench, Evaluation, StrobeFlights, evaluate, strobe_flights
 from edgeplan.nets import NetFacts, Nets, resolve
 from edgeplan.radiated import radiation_of
 from edgeplan.readers import read_board
@@ -24,6 +25,7 @@ from edgeplan.windows import StateWindow, solve
 
 Array = NDArray[Any]
 
+TIMED_BY_CLOCK = ("common-clock", "source-synchronous")
 ROUNDS = 8  # of choosing again after an edge fell outside its own window
 
 
@@ -106,7 +108,10 @@ def _run(
     )
     blocks = scoring.blocks_of(facts, board, drawn_only=command == "check")
     nothing = np.zeros(len(facts), dtype=int)
-    drawn_bench = bench.with_strobe(_flights(blocks, facts, nothing, bench))
+    flights = _flights(blocks, facts, nothing, bench)
+    drawn_bench = replace(
+        bench, strobe=flights, strobe_drawn=flights, clock_parts=_clock_parts(facts)
+    )
     now = _state(blocks, nothing, drawn_bench, jobs, progress)
     if command == "check":
         scores = _gathered(blocks, facts, drawn_bench, jobs, progress)
@@ -139,28 +144,47 @@ def _gathered(
     return scoring.gather(blocks, scoring.score_blocks(blocks, bench, jobs, progress), len(facts))
 
 
-def _strobes(facts: list[NetFacts]) -> set[str]:
-    """Clock nets that source-synchronous data are timed against."""
+def _clocks(facts: list[NetFacts]) -> set[str]:
+    """Clocks and strobes that data nets are timed against."""
     return {
-        f.interface.clock_net
+        f.interface.clock_net for f in facts if f.timing in TIMED_BY_CLOCK and f.interface.clock_net
+    }
+
+
+def _clock_parts(facts: list[NetFacts]) -> dict[str, tuple[str, frozenset[str]]]:
+    """Part that drives each clock, and the parts that receive it."""
+    names = _clocks(facts)
+    return {
+        f.net.net: (
+            f.net.driver_pin[0].partition(".")[0] if f.net.driver_pin else "",
+            frozenset(pin.partition(".")[0] for pin in f.net.receiver_pin),
+        )
         for f in facts
-        if f.timing == "source-synchronous" and f.interface.clock_net
+        if f.net.net in names
     }
 
 
 def _flights(
     blocks: list[Block], facts: list[NetFacts], chosen: Array, bench: Bench
-) -> dict[str, Any]:
-    """Flights of all strobes with their chosen candidates."""
-    names = _strobes(facts)
-    flights: dict[str, Any] = {}
+) -> StrobeFlights:
+    """Flights of all clocks and strobes with their candidates, to a tenth of a picosecond."""
+    names = _clocks(facts)
+    flights: dict[str, dict[tuple[str, str], float]] = {}
     for block in blocks:
         own = [i for i, f in enumerate(block.nets.facts) if f.net.net in names]
         if own:
             nets = block.nets.take(own)
             state = block.candidates.take(own).state(chosen[block.index[own]])
-            flights.update(strobe_flights(nets, state, bench.tolerance))
+            for name, found in strobe_flights(nets, state, bench.tolerance).items():
+                flights[name] = {key: round(value, 13) for key, value in found.items()}
     return flights
+
+
+def _same(one: StrobeFlights, other: StrobeFlights) -> bool:
+    """Whether two sets of flights agree; what is not known agrees with itself."""
+    return one.keys() == other.keys() and all(
+        np.array_equal(list(one[n].values()), list(other[n].values()), equal_nan=True) for n in one
+    )
 
 
 def _choose(
@@ -171,32 +195,49 @@ def _choose(
     jobs: int,
     progress: Progress | None,
 ) -> tuple[Scores, State, Bench]:
-    """Choose, and choose again until strobes stand still and every edge lies in its own window."""
-    scores = _gathered(blocks, facts, bench, jobs, progress)
+    """Choose, and choose again until clocks stand still and every edge lies in its own window."""
+    scored = scoring.score_blocks(blocks, bench, jobs, progress)
+    scores = scoring.gather(blocks, scored, len(facts))
     allowed = scores.candidates.exists.copy()
     common = Counter(v for v in (drawn_ohm(f) for f in facts) if v > 0)
-    state: State | None = drawn
+    state, stale = drawn, False
     for _ in range(ROUNDS):
         chosen = _chosen(facts, scores, allowed, common)
-        flights = _flights(blocks, facts, chosen, bench)
-        if flights != bench.strobe:
-            bench = bench.with_strobe(flights)
-            scores = _gathered(blocks, facts, bench, jobs, progress)
+        flights = _flights(blocks, facts, _fitted(scores, chosen), bench)
+        if not _same(flights, bench.strobe):
+            bench, stale = bench.with_strobe(flights), True
+            scored = _rescored(blocks, scored, bench, jobs, progress)
+            scores = scoring.gather(blocks, scored, len(facts))
             chosen = _chosen(facts, scores, allowed, common)
-            state = None
-        state = _state(blocks, chosen, bench, jobs, progress, known=state)
+        state = _state(blocks, chosen, bench, jobs, progress, known=state, stale=stale)
+        flights = _flights(blocks, facts, _fitted(scores, chosen), bench)
+        stale = not _same(flights, bench.strobe)
         lucky = [
             i
             for i, k in enumerate(chosen)
             if scores.passes[i, k] and not state.window[i].holds_present_edge
         ]
-        if not lucky:
+        if not lucky and not stale:
             break
         allowed[lucky, chosen[lucky]] = False
         scores.passes[lucky, chosen[lucky]] = False
-        allowed[lucky, 0] = True
-    assert state is not None  # noqa: S101 - at least one round ran
+        allowed[lucky, AS_DRAWN] = True
     return scores, state, bench
+
+
+def _fitted(scores: Scores, chosen: Array) -> Array:
+    """Candidates that count as fitted: a least-excess proposal waits for its remedy. (N,)"""
+    return np.where(scores.passes[np.arange(len(chosen)), chosen], chosen, AS_DRAWN)
+
+
+def _rescored(
+    blocks: list[Block], scored: list[Scores], bench: Bench, jobs: int, progress: Progress | None
+) -> list[Scores]:
+    """Scores again of the blocks that are timed against a clock; the others stay."""
+    timed = [k for k, block in enumerate(blocks) if block.nets.facts[0].timing in TIMED_BY_CLOCK]
+    again = scoring.score_blocks([blocks[k] for k in timed], bench, jobs, progress)
+    fresh = dict(zip(timed, again, strict=True))
+    return [fresh.get(k, old) for k, old in enumerate(scored)]
 
 
 def _chosen(facts: list[NetFacts], scores: Scores, allowed: Array, common: Counter[float]) -> Array:
@@ -205,13 +246,18 @@ def _chosen(facts: list[NetFacts], scores: Scores, allowed: Array, common: Count
     An undecided net keeps what is drawn, unless its bank or array moves it.
     """
     open_net = scores.undecided[:, :1]
-    usable = allowed & (scores.passes | ~scores.undecided | open_net)
     drawn = np.arange(scores.passes.shape[1])[None, :] == AS_DRAWN
-    stay = np.where(open_net & ~scores.passes & drawn, -per_net.FAIL, 0.0)
+    stay = np.where(open_net & ~scores.passes & drawn, -4 * per_net.FAIL, 0.0)
 
     def best(counted: Counter[float]) -> Array:
         cost = per_net.scores(
-            scores.candidates, scores.passes, scores.works, scores.share, usable, counted
+            scores.candidates,
+            scores.passes,
+            scores.works,
+            scores.undecided,
+            scores.share,
+            allowed,
+            counted,
         )
         return per_net.choose(facts, scores.candidates, cost + stay)
 
@@ -226,13 +272,19 @@ def _state(
     jobs: int,
     progress: Progress | None,
     known: State | None = None,
+    *,
+    stale: bool = False,
 ) -> State:
-    """Checks and windows of one candidate per net; what did not change is kept."""
+    """Checks and windows of one candidate per net; what did not change is kept.
+
+    ``stale`` says that clocks moved since: what is timed against one is solved again.
+    """
     evaluations = dict(known.evaluation) if known else {}
     windows = dict(known.window) if known else {}
     work = []
     for block in blocks:
-        changed = [known is None or known.chosen[i] != chosen[i] for i in block.index]
+        timed = stale and block.nets.facts[0].timing in TIMED_BY_CLOCK
+        changed = [known is None or timed or known.chosen[i] != chosen[i] for i in block.index]
         fresh = np.flatnonzero(changed)
         if fresh.size:
             state = block.candidates.take(fresh).state(chosen[block.index[fresh]])

@@ -1,7 +1,7 @@
 """What every receiver sees at the corners that hurt, for all candidates of a block of nets."""
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
@@ -69,6 +69,8 @@ class Seen:
     received: tuple[Received, ...]
     strobe: Mapping[str, Mapping[tuple[str, str], float]]
     tolerance: float
+    strobe_drawn: Mapping[str, Mapping[tuple[str, str], float]] = field(default_factory=dict)
+    clock_parts: Mapping[str, tuple[str, frozenset[str]]] = field(default_factory=dict)
 
     @property
     def shape(self) -> tuple[int, int]:

@@ -20,11 +20,12 @@ Array = NDArray[Any]
 
 # Shares in one of these steps count as equal, so that the common value can decide: next to
 # nothing, little, and then fifths. Failing candidates are told apart in fiftieths.
-SHARE_STEPS = np.array([0.0, 0.03, 0.2, 0.4, 0.6, 0.8])
+SHARE_STEPS = np.array([0.0, 0.015, 0.2, 0.4, 0.6, 0.8])
 EXCESS_STEP = 0.02
 # Weights keep the order of preference: a failing net outweighs every cost, a dearer kind of
 # change outweighs any number of cheaper ones on one net, and a share outweighs the value's rank.
 FAIL = 1e12
+WAITS = 1e11
 COST = np.array([1e9, 1e8, 1e7, 1e6])
 SHARE = 1e3
 
@@ -89,6 +90,7 @@ def scores(
     candidates: Candidates,
     passes: Array,
     works: Array,
+    undecided: Array,
     share: Array,
     allowed: Array,
     common: Counter[float],
@@ -102,6 +104,8 @@ def scores(
     passes, works, allowed : numpy.ndarray
         Whether a candidate passes every check, whether it holds every check that wants a
         faster edge, and whether it may be chosen. (N, C)
+    undecided : numpy.ndarray
+        Whether nothing fails but a check is open. (N, C)
     share : numpy.ndarray
         Smallest share of its checks; -inf counts as the worst. (N, C)
     common : Counter
@@ -110,7 +114,8 @@ def scores(
     Returns
     -------
     numpy.ndarray
-        (N, C). A passing candidate is ranked by cost, then share. Of failing ones those that
+        (N, C). A passing candidate is ranked by cost, then share; so is one that only waits
+        for a value, behind every passing one. Of failing ones those that
         still meet their timing come first, then share, then cost: the least excess of a
         board that works, since a level can still be mended elsewhere and a missed setup not.
     """
@@ -123,8 +128,10 @@ def scores(
     ).reshape(candidates.series_ohm.shape)
     tie = _smaller_part(candidates) - np.minimum(rank, 400)
     passing = change - SHARE * steps + tie
-    failing = FAIL * np.where(works, 1, 2) - 1e9 * excess + 1e-3 * change + 1e-3 * tie
-    return np.where(candidates.exists & allowed, np.where(passes, passing, failing), np.inf)
+    failing = FAIL * np.where(works, 2, 4) - 1e9 * excess + 1e-3 * change + 1e-3 * tie
+    waiting = WAITS + passing
+    score = np.where(passes, passing, np.where(undecided, waiting, failing))
+    return np.where(candidates.exists & allowed, score, np.inf)
 
 
 def _smaller_part(candidates: Candidates) -> Array:

@@ -7,7 +7,7 @@ from dataclasses import replace
 from edgeplan.board import Board
 from edgeplan.candidates import list_drawn
 from edgeplan.drives import RAISED_COSINE_SHARE, Quantity, SettingCorners
-from edgeplan.evaluate import Bench, strobe_flights
+from edgeplan.evaluate import Bench, Evaluation, evaluate, strobe_flights
 from edgeplan.nets import NetFacts, build
 from edgeplan.texts import text_time_s
 from edgeplan.windows import StateWindow, solve
@@ -43,9 +43,12 @@ def minimum_edges(facts: Sequence[NetFacts], board: Board, bench: Bench) -> list
     for members in groups.values():
         nets = build([assumed[i] for i in members], board)
         windows = solve(nets, list_drawn(nets), bench)
-        for i, window in zip(members, windows, strict=True):
+        drawn = evaluate(nets, list_drawn(nets), bench)
+        for row, (i, window) in enumerate(zip(members, windows, strict=True)):
             longest = facts[i].settings[facts[i].setting].ramp_s["rising"].slow
-            found[i] = _sentence(window, longest * RAISED_COSINE_SHARE["10-90"])
+            found[i] = _sentence(
+                window, longest * RAISED_COSINE_SHARE["10-90"], _failing(drawn, row)
+            )
     return found
 
 
@@ -79,10 +82,16 @@ def _flat(quantity: Quantity) -> Quantity:
     return replace(quantity, typical=quantity.slow, fast=quantity.slow)
 
 
-def _sentence(window: StateWindow, longest_s: float) -> str:
+def _failing(drawn: Evaluation, row: int) -> str:
+    """Checks that fail even with the maximum edge, in words."""
+    names = [table.check for table in drawn.tables if table.fails[row, 0]]
+    return f": with the maximum edge it fails {', '.join(names)}" if names else ""
+
+
+def _sentence(window: StateWindow, longest_s: float, failing: str) -> str:
     """From which minimum edge on the net is inside."""
     if not window.known or not window.slowest.factor >= 1 or not window.fastest.factor <= 1:
-        return "no minimum edge would bring it inside as drawn"
+        return f"no minimum edge would bring it inside as drawn{failing}"
     if window.fastest.any:
         return "inside for any minimum edge"
     edge_s = window.fastest.factor * longest_s

@@ -8,11 +8,12 @@ r"""Common clock: driver and receiver share one clock.
 
 F is the flight time: the crossing at the receiver less the crossing of the driver's own
 test load, same driver and corner, at the setting that the clock-to-output is stated for.
+The skew covers the clock as drawn; a proposal that moves the clock counts on top.
 """
 
 from edgeplan.checks import CheckTable, Worst
 from edgeplan.received import Seen
-from edgeplan.timing import _settling, _stated, _transition
+from edgeplan.timing import _clock_shift, _settling, _stated, _transition
 
 
 def checks(seen: Seen) -> list[CheckTable]:
@@ -42,7 +43,8 @@ def _setup(seen: Seen) -> CheckTable:
         + _stated.per_net(facts, _stated.allowance_s)
     )
     for r in seen.at("slow"):
-        needed = outside + r.last_s - r.reference_s + r.interference_s
+        later = _clock_shift.penalties_s(seen, r.corner)[0]
+        needed = outside + later + r.last_s - r.reference_s + r.interference_s
         worst.add(seen.nets.first_receiver, needed, period, period, r.condition, error=r.error_s)
     _stated.require(
         worst, facts, ("rate", "direction", "setup", "maximum clock-to-output", "test load")
@@ -64,7 +66,7 @@ def _hold(seen: Seen) -> CheckTable:
         worst.add(
             seen.nets.first_receiver,
             earliest + r.first_s - r.reference_s,
-            needed,
+            needed + _clock_shift.penalties_s(seen, r.corner)[1],
             period,
             r.condition,
             larger_is_better=True,

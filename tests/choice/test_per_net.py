@@ -53,7 +53,7 @@ def choose_one(row, passes=None, works=None, share=None, common=None):
     passes = yes if passes is None else np.array([passes])
     works = yes if works is None else np.array([works])
     share = np.full(shape, 0.5) if share is None else np.array([share])
-    score = per_net.scores(listed, passes, works, share, yes, Counter(common or {}))
+    score = per_net.scores(listed, passes, works, ~yes, share, yes, Counter(common or {}))
     return int(per_net.choose(facts(count=1), listed, score)[0])
 
 
@@ -105,10 +105,10 @@ def test_what_does_not_exist_or_is_not_allowed_is_never_chosen():
     listed = tables([[("A", 0.0, []), ("B", 0.0, ["setting"])]])
     yes, share = np.ones((1, 2), dtype=bool), np.full((1, 2), 0.5)
     allowed = np.array([[False, True]])
-    score = per_net.scores(listed, yes, yes, share, allowed, Counter())
+    score = per_net.scores(listed, yes, yes, ~yes, share, allowed, Counter())
     assert np.isinf(score[0, 0])
     assert per_net.choose(facts(count=1), listed, score).tolist() == [1]
-    none = per_net.scores(listed, yes, yes, share, ~yes, Counter())
+    none = per_net.scores(listed, yes, yes, ~yes, share, ~yes, Counter())
     assert per_net.choose(facts(count=1), listed, none).tolist() == [0]
 
 
@@ -183,3 +183,11 @@ def test_the_choice_is_as_good_as_going_through_every_combination():
         chosen = per_net.choose(nets, listed, score)
         assert score[np.arange(len(nets)), chosen].sum() == best
         compared += 1
+
+
+def test_a_candidate_that_only_waits_stands_between_passing_and_failing_ones():
+    listed = tables([[("A", 0.0, []), ("B", 0.0, ["setting"]), ("C", 0.0, ["setting"])]])
+    yes = np.ones((1, 3), dtype=bool)
+    passes, waits = np.array([[False, False, True]]), np.array([[False, True, False]])
+    score = per_net.scores(listed, passes, yes, waits, np.zeros((1, 3)), yes, Counter())
+    assert score[0, 2] < score[0, 1] < score[0, 0]

@@ -73,7 +73,9 @@ def test_a_net_that_nothing_hurts_is_inside_for_any_minimum():
 def test_a_net_that_its_maximum_already_fails_is_not_mended_by_any_minimum():
     limit = {"time": 1e-9, "levels": "10-90"}
     b = the_board({"max": LONGEST_S}, receiver=[receiver(longest_transition=limit)])
-    assert sentence(b) == "no minimum edge would bring it inside as drawn"
+    assert sentence(b) == (
+        "no minimum edge would bring it inside as drawn: with the maximum edge it fails transition"
+    )
 
 
 @pytest.mark.parametrize("edge_s", [exactly(1e-9), {"min": 1e-9}, 1e-9])
