@@ -35,7 +35,7 @@ _WANTED = {
     "date_from_datetime_parsing": ("a date", "write it without quotes: 2027-03-31"),
 }
 _LIMIT_IDS = 'limits = ["..."]; edgeplan limits prints all ids'
-_ASKED_FOR = {  # by path: what to write where nothing stands
+_ASKED_FOR: dict[tuple[str | int, ...], str] = {  # by path: what to write where nothing stands
     ("emission",): f"add a table [emission] with {_LIMIT_IDS}",
     ("emission", "limits"): f"write {_LIMIT_IDS}",
 }
