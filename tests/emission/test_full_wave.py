@@ -1,6 +1,8 @@
 """Emission models against a general-purpose wire code: a few runs here, larger tables beside."""
 
+import re
 from dataclasses import replace
+from pathlib import Path
 
 import full_wave
 import full_wave_errors as errors
@@ -212,3 +214,21 @@ def test_a_filter_in_one_of_three_cables_is_worth_next_to_nothing_above_resonanc
     one = (table["cables"] == 3) & (table["where"] == "one") & (table["frequency_hz"] > 150e6)
     worth = models.excess_db(table["bare_v_per_m"], table["field_v_per_m"])[one]
     assert abs(np.median(worth)) < 1.0
+
+
+PAGE = Path(__file__).parents[2] / "docs" / "models" / "emission_errors.md"
+
+
+def test_the_page_of_errors_prints_what_the_tables_give():
+    computed = [
+        (excess.size, *np.round([excess.mean(), excess.std(), excess.min(), excess.max()], 1))
+        for excess in errors.all_sets().values()
+    ]
+    row = re.compile(r"^\|[^|]+" + r"\| ([-+\d.]+) " * 5 + r"\|$", re.MULTILINE)
+    printed = row.findall(PAGE.read_text(encoding="utf-8").replace("\N{MINUS SIGN}", "-"))
+    assert len(printed) == 13
+    for cells in printed:
+        distances = [
+            np.abs(np.subtract(numbers, [float(x) for x in cells])) for numbers in computed
+        ]
+        assert min(distance.max() for distance in distances) < 0.11
