@@ -71,7 +71,8 @@ class Nets:
 
     ``trees`` and the level arrays exist per corner.  ``receiver_net`` maps receivers
     to nets; ``first_receiver`` are the offsets of each net's receivers. ``kept`` holds what
-    was worked out once for exactly these nets and does not depend on any candidate.
+    was worked out once for exactly these nets and does not depend on any candidate; arrays in
+    it have an entry per net.
     """
 
     facts: tuple[NetFacts, ...]
@@ -113,6 +114,7 @@ class Nets:
             longest_transition_s=self.longest_transition_s[rows],
             overshoot_limit={c: v[rows] for c, v in self.overshoot_limit.items()},
             bit_s=self.bit_s[index],
+            kept={k: v[index] for k, v in self.kept.items() if isinstance(v, np.ndarray)},
         )
 
 

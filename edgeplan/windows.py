@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from edgeplan.candidates import Candidates, drive, setting_table
 from edgeplan.checks import CheckTable
-from edgeplan.drives import RAISED_COSINE_SHARE
+from edgeplan.drives import DIRECTIONS, RAISED_COSINE_SHARE
 from edgeplan.evaluate import Bench, Evaluation, evaluate
 from edgeplan.nets import Nets
 from edgeplan.physics import waveforms
@@ -423,12 +423,14 @@ def launched_edge_s(nets: Nets, candidates: Candidates, corner: str = "typical")
     one labels, then the fast one. [s]
     """
     found = np.full(candidates.setting.shape, np.nan)
+    alike = all(s.symmetric for f in nets.facts for s in f.settings)
+    directions = DIRECTIONS[:1] if alike else DIRECTIONS
     order = [corner] if corner != "typical" else ["typical", "slow", "fast"]
     for name in order:
         if not np.isnan(found).any():
             break
         edges = np.full(found.shape, np.nan)
-        for direction in ("rising", "falling"):
+        for direction in directions:
             source = drive(nets, candidates, name, direction, 0.0)
             edges = np.fmax(edges, waveforms.incident_edge_s(nets.trees[name], source))
         found = np.where(np.isnan(found), edges, found)
