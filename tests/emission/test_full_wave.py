@@ -195,6 +195,13 @@ def test_the_expected_level_of_the_site_is_not_low_in_the_mean(site):
     assert 0 < expected.mean() < cable.MODEL.error_db
 
 
+def test_every_run_prints_the_error_of_the_expected_level_on_the_site(site):
+    expected = errors.site_excess_db(site, cable.MODEL.offset_db)
+    mean, deviation = f"{expected.mean():.0f}", f"{expected.std():.0f}"
+    told = f"{expected.size} such points: expected reads {mean} dB high"
+    assert f"{told}, standard deviation {deviation} dB" in cable.MODEL.source
+
+
 @pytest.mark.parametrize("count", [2, 3])
 def test_several_cables_exceed_their_worst_case_rarely(count):
     table = models.take(several := models.read_table("two_cables"), several["cables"] == count)
