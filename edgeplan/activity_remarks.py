@@ -156,7 +156,7 @@ _KINDS: dict[str, Callable[[NetFacts], bool]] = {
     "bursts are credited as stated": lambda f: f.net.burst_length_s is not None,
     "a stated triangular sweep of the clock is credited": lambda f: spread_of(f) is not None,
     "a stated sweep of the clock is not credited": (
-        lambda f: any(s.spread for s in f.sources) and spread_of(f) is None
+        lambda f: any(s.spread for s in f.sources) and not (is_data(f) or spread_of(f))
     ),
     "emission takes raised-cosine edges as stated": (
         lambda f: f.settings[f.setting].edge_shape != "trapezoid"

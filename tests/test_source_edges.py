@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 from build import board, clock, driver, exactly, interface, net, nets_of, setting
+from simulated_activity import sampled_bits
 
 from edgeplan.candidates import list_drawn
 from edgeplan.emission_lines import lines_of
@@ -131,21 +132,10 @@ def test_data_slower_than_the_bandwidth_have_no_single_lines():
     assert not single.any()
 
 
-def simulated_bits(rise, fall, skew, count=2**16, samples=64):
-    """One-sided power of each line of random bits sampled with straight ramps, and its turns."""
-    rng = np.random.default_rng(74)
-    bits = rng.integers(0, 2, count)
-    at = np.arange(samples)
-    shapes = {
-        (0, 0): np.zeros(samples),
-        (1, 1): np.ones(samples),
-        (0, 1): np.clip((at - 16 + rise / 2) / rise, 0, 1),
-        (1, 0): 1 - np.clip((at - 16 - skew + fall / 2) / fall, 0, 1),
-    }
-    pairs = zip(np.roll(bits, 1), bits, strict=True)
-    wave = np.concatenate([shapes[int(a), int(b)] for a, b in pairs])
-    lines = 2 * np.abs(np.fft.rfft(wave)) / wave.size
-    return np.arange(lines.size) / count, lines
+def simulated_bits(rise, fall, skew):
+    """Lines of random bits."""
+    bits = np.random.default_rng(74).integers(0, 2, 2**16)
+    return sampled_bits(bits, rise, fall, skew)
 
 
 @pytest.mark.parametrize(("rise", "fall"), [(8, 8), (8, 20), (24, 12)])
