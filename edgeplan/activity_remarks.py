@@ -121,13 +121,14 @@ def _why_none(facts: NetFacts) -> str:
 
 
 def _shown_lines(clock_hz: float, target: Target) -> Array:
-    """A few odd harmonics of a clock over the judged range. [Hz]"""
+    """A few harmonics of a clock over the judged range, odd ones where there are any. [Hz]"""
     first, last = np.ceil(target.lowest_hz / clock_hz), np.floor(target.covered_to_hz / clock_hz)
     if last < first:
         return np.zeros(0)
     wanted = np.geomspace(max(first, 1), last, SHOWN_LINES)
     odd = 2 * np.round((wanted - 1) / 2) + 1
-    return np.asarray(np.unique(odd[(odd >= first) & (odd <= last)]) * clock_hz)
+    odd = np.where(odd > last, odd - 2, np.where(odd < first, odd + 2, odd))
+    return np.asarray(np.unique(np.clip(odd, first, last)) * clock_hz)
 
 
 def _edge_shape(facts: NetFacts, _: Target) -> str:
