@@ -96,11 +96,20 @@ class Cable(Record):
     provenance: Provenance = "datasheet"
 
 
+class SpreadClock(Record):
+    """A sweep of a clock's frequency on purpose; the width is the whole of it."""
+
+    width: Share = Field(gt=0, le=0.1)
+    rate_hz: Frequency = Field(alias="rate", gt=0)
+    profile: Literal["triangle", "other"]
+
+
 class ClockSource(Record):
     """Nets whose activity comes from one source and adds in amplitude."""
 
     name: str
     nets: list[str]
+    spread: SpreadClock | None = None
 
 
 class BoardFacts(Record):
@@ -198,6 +207,8 @@ class Interface(Record):
     shortest_pulse_s: Time | None = Field(alias="shortest_pulse", default=None, gt=0)
     duty: Share = Field(default=0.5, gt=0, lt=1)
     duty_tolerance: Share = Field(default=0.0, ge=0, lt=0.5)
+    edge_skew_s: Time = Field(alias="edge_skew", default=0.0, ge=0)
+    may_spread: bool = True
     duty_distortion: Share | None = Field(default=None, gt=0, lt=0.5)
     noise_v: Voltage | None = Field(alias="noise", default=None, gt=0)
     jitter_limit_s: Time | None = Field(alias="jitter_limit", default=None, gt=0)
@@ -216,6 +227,7 @@ class Setting(Record):
     edge_up_s: Range[Time] | None = Field(alias="edge_up", default=None)
     edge_down_s: Range[Time] | None = Field(alias="edge_down", default=None)
     edge_levels: Literal["10-90", "20-80", "30-70", "0-100"] = "10-90"
+    edge_shape: Literal["trapezoid", "raised-cosine"] = "trapezoid"
     capacitance_f: Capacitance | Range[Capacitance] | None = Field(
         alias="capacitance", default=None
     )
@@ -282,6 +294,9 @@ class Group(Record):
     activity: Activity | None = None
     clock_hz: Frequency | None = Field(alias="clock", default=None, gt=0)
     data_bps: Rate | None = Field(alias="data", default=None, gt=0)
+    pattern_bits: int | None = Field(default=None, ge=2)
+    burst_length_s: Time | None = Field(alias="burst_length", default=None, gt=0)
+    burst_period_s: Time | None = Field(alias="burst_period", default=None, gt=0)
     width_m: Length | None = Field(alias="width", default=None, gt=0)
     kind: Literal["digital", "differential", "analog", "power"] | None = None
     site: SiteKind | None = None
@@ -322,6 +337,9 @@ class Net(Record):
     activity: Activity | None = None
     clock_hz: float | None = None
     data_bps: float | None = None
+    pattern_bits: int | None = None
+    burst_length_s: float | None = None
+    burst_period_s: float | None = None
     driver: tuple[str, ...] = ()
     driver_pin: tuple[str, ...] = ()
     setting: tuple[str, ...] = ()

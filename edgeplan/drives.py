@@ -34,7 +34,8 @@ class SettingCorners:
     """One setting: resistance, edges and pad capacitance at every corner and direction.
 
     ``ramp_s`` is the 0-100 % raised cosine of the waveforms, ``trapezoid_s`` the 0-100 %
-    straight ramp of the spectrum; both come from the same stated edge.
+    straight ramp of the spectrum; both come from the same stated edge. ``edge_shape`` says
+    which of the two the spectrum is that of.
     """
 
     setting: str
@@ -42,15 +43,24 @@ class SettingCorners:
     ramp_s: Mapping[str, Quantity]
     trapezoid_s: Mapping[str, Quantity]
     pad_f: Quantity
+    edge_shape: str = "trapezoid"
     source: str = ""
     missing: tuple[str, ...] = field(default=())
 
     @property
+    def equal_edges(self) -> bool:
+        """Whether rising and falling take equally long."""
+        return _alike(self.ramp_s["rising"], self.ramp_s["falling"])
+
+    @property
+    def equal_resistance(self) -> bool:
+        """Whether the output drives high as strongly as low."""
+        return _alike(self.resistance_ohm["rising"], self.resistance_ohm["falling"])
+
+    @property
     def symmetric(self) -> bool:
         """Whether rising and falling are mirror images."""
-        return all(
-            _alike(both["rising"], both["falling"]) for both in (self.resistance_ohm, self.ramp_s)
-        )
+        return self.equal_resistance and self.equal_edges
 
 
 def _alike(first: Quantity, second: Quantity) -> bool:
@@ -150,6 +160,7 @@ def setting_corners(setting: Setting) -> SettingCorners:
         ramp_s={d: _scaled(q, raised) for d, q in edge.items()},
         trapezoid_s={d: _scaled(q, straight) for d, q in edge.items()},
         pad_f=pads,
+        edge_shape=setting.edge_shape,
         source=setting.source,
         missing=(
             *_missing("resistance", resistance),

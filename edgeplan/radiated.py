@@ -22,11 +22,11 @@ from edgeplan.emission_lines import EmissionLines, lines_of
 from edgeplan.emission_target import Target, target_of
 from edgeplan.net_fields import fields_per_volt
 from edgeplan.nets import Nets
-from edgeplan.physics.edge_factor import null_free_edge_factor
 from edgeplan.physics.floor_reflection import near_field_factor, site_factor
 from edgeplan.physics.network import response
 from edgeplan.physics.sources import source_terms, source_weights, stub_chain
 from edgeplan.results import Missing
+from edgeplan.source_edges import edge_shares
 
 Array = NDArray[Any]
 
@@ -188,33 +188,32 @@ def source_levels(nets: Nets, candidates: Candidates, passive: Passive, toleranc
         levels = _one_direction(nets, candidates, passive, tolerance, direction)
         found = levels if found is None else np.maximum(found, levels)
     assert found is not None  # noqa: S101 - there is always an edge
-    return found
+    with np.errstate(invalid="ignore"):
+        return np.asarray(found * edge_shares(nets, candidates, passive.lines))
 
 
 def _edges(nets: Nets) -> Sequence[str]:
-    """Edges to judge: one where rising and falling are alike."""
+    """Output states to judge: one where driving high and low are alike."""
     if all(f.timing == "open-drain" for f in nets.facts):
         return ("falling",)
-    alike = all(s.symmetric for f in nets.facts for s in f.settings)
+    alike = all(s.equal_resistance for f in nets.facts for s in f.settings)
     return DIRECTIONS[:1] if alike else DIRECTIONS
 
 
 def _one_direction(
     nets: Nets, candidates: Candidates, passive: Passive, tolerance: float, direction: str
 ) -> Array:
-    """Source amplitude times edge factor over |D|. (N, C, F)"""
+    """Source amplitude with edges of no length over |D|. (N, C, F)"""
     at = np.arange(len(nets))[:, None], candidates.setting
     resistance = setting_table(nets, "resistance_ohm", "fast", direction)[at]
     pad = setting_table(nets, "pad_f", "fast", None)[at]
-    ramp = setting_table(nets, "trapezoid_s", "fast", direction)[at] * candidates.ramp_factor
     series = candidates.series_ohm * (1 - tolerance)
     weights = source_weights(resistance, series, pad).astype(np.complex64)
     ratio = np.abs(weights @ passive.terms)
-    edge = null_free_edge_factor(passive.lines.frequency_hz[:, None, :] * ramp[:, :, None])
     swing = nets.swing_v["fast"][:, None, None]
     source = swing * passive.lines.per_swing[:, None, :]
     with np.errstate(invalid="ignore"):
-        return np.asarray(source * edge / ratio)
+        return np.asarray(source / ratio)
 
 
 def _worst_line(per_volt: Array, levels: Array) -> tuple[Array, Array]:
@@ -369,7 +368,8 @@ def _against_budget(
     for k, limit in enumerate(entries):
         stated = np.isfinite(limit.level_dbuv_per_m) & lines.exists
         budget_db = limit.level_dbuv_per_m - target.margin_db
-        detector = 10 ** (lines.detector_db(limit.detector, limit.bandwidth_hz) / 20)
+        read_db = lines.detector_db(limit.detector, limit.bandwidth_hz, limit.limit_id)
+        detector = 10 ** (read_db / 20)
         received = detector * site_factor(lines.frequency_hz, limit.distance_m)
         received = received / (np.sqrt(2) * limit.distance_m)
         trace = fields.trace * near_field_factor(lines.frequency_hz, limit.distance_m) * received

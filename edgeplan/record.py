@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from edgeplan import __version__, levels, net_record, pictures_of, unused
+from edgeplan import __version__, activity_remarks, levels, net_record, pictures_of, unused
 from edgeplan.board import Board
 from edgeplan.candidates import Candidates, drawn_ohm
 from edgeplan.caution import CAUTION
@@ -170,7 +170,7 @@ def _judged(draft: Draft) -> list[NetResult]:
     """Every net that was simulated."""
     sentences = settles.minimum_edges(draft.facts, draft.board, draft.bench_now)
     advice = _remedies(draft)
-    highest_hz = draft.bench_now.radiation.target.highest_hz
+    target = draft.bench_now.radiation.target
     found = []
     for block in draft.blocks:
         states = {
@@ -197,7 +197,10 @@ def _judged(draft: Draft) -> list[NetResult]:
                         every=every if shown else None,
                         every_row=row,
                         row=i,
-                        remarks=tuple(remarks(facts, highest_hz)),
+                        remarks=(
+                            *remarks(facts, target.highest_hz),
+                            *activity_remarks.remarks(facts, target),
+                        ),
                         pictures=pictures_of.draw(block, row, draft) if shown else None,
                     )
                 )
@@ -392,6 +395,10 @@ def _assumptions(draft: Draft) -> list[Assumption]:
     target = draft.bench_now.radiation.target
     if target.not_covered:
         found.append(Assumption(subject="emission", text=target.not_covered, provenance="assumed"))
+    found += [
+        Assumption(subject="activity", text=text, provenance="bound")
+        for text in activity_remarks.assumptions(draft.facts)
+    ]
     centred = sum(f.net.side_distance_m is None for f in draft.facts)
     if centred:
         text = f"{centred} nets state no distance to the board's side and count as centred"

@@ -15,6 +15,20 @@ BROKEN = BOARDS / "broken"
 
 # folder: (file, row, column, words of the message or its hint) of every problem in it
 FAULTS = {
+    "activity": [
+        ("board.toml", 37, 11, "'0 %' has to be above 0"),
+        ("board.toml", 37, 43, "'sine' is none of triangle, other"),
+        ("board.toml", 42, 1, 'add profile = "triangle"'),
+        ("board.toml", 42, 11, "'30 %' has to be at most 0.1"),
+        ("board.toml", 46, 1, "1 has to be at least 2"),
+        ("board.toml", 47, 1, "'-2 ms' has to be above 0"),
+        ("board.toml", 52, 1, "a pattern's length with activity 'clock'"),
+        ("nets.csv", 2, 20, "0 has to be above 0"),
+        ("nets.csv", 2, 22, "add burst_length, or leave out both"),
+        ("nets.csv", 3, 20, "a burst of 0.03 s is longer than its period, 0.02 s"),
+        ("nets.csv", 4, 20, "7.5 is not a whole number of bits, 2 or more"),
+        ("nets.csv", 4, 24, "add burst_period, or leave out both"),
+    ],
     "column_without_unit": [("nets.csv", 1, 108, "rename it to width_mm or width_um")],
     "dangling": [
         ("board.toml", 17, 1, "no net 'CLX'"),
