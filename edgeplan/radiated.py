@@ -6,6 +6,7 @@ a candidate costs one division and one multiplication per line.
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import partial
 from typing import Any
 
 import numpy as np
@@ -27,6 +28,7 @@ from edgeplan.physics.floor_reflection import near_field_factor, site_factor
 from edgeplan.physics.network import response
 from edgeplan.physics.sources import source_terms, source_weights, stub_chain
 from edgeplan.results import Missing
+from edgeplan.transfers import Replaced, gaps, of_net, replaced, sum_error_db
 
 Array = NDArray[Any]
 
@@ -40,7 +42,8 @@ class Passive:
     ``over_budget`` is level over budget per volt; ``filtered`` the same with a good
     filter on all cables (where nothing is declared about them). ``to_level`` turns a
     level over budget into a field; ``entry`` says which line and detector binds; ``unreached``
-    whose stated table, per net, does not reach every judged line.
+    whose stated table, per net, does not reach every judged line; ``measured`` what transfers
+    replace, by part, and ``unmeasured`` why one of them leaves a net open.
     """
 
     lines: EmissionLines
@@ -55,6 +58,8 @@ class Passive:
     entry: Array
     entries: tuple[tuple[str, str, float], ...]
     unreached: tuple[str, ...]
+    measured: dict[str, Replaced]
+    unmeasured: tuple[tuple[str, Missing] | None, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -147,7 +152,9 @@ def radiation_of(board: Board) -> Radiation:
             for c in declared
             if _undeclared(c)
         ]
-    notes += [f"cable {c.name}: its shield is not credited" for c in declared or () if c.shielded]
+    notes += [_shield_note(c) for c in declared or () if c.shielded]
+    if _all_measured(board):
+        notes = []
     return Radiation(
         board=board,
         target=target_of(board),
@@ -155,6 +162,22 @@ def radiation_of(board: Board) -> Radiation:
         cable_state=state,
         notes=tuple(notes),
     )
+
+
+def _shield_note(cable: Cable) -> str:
+    """What a shield is credited: nothing, or what its cable states as attenuation."""
+    if cable.attenuation_db is None:
+        return f"cable {cable.name}: its shield is not credited"
+    return (
+        f"cable {cable.name}: shield and filter are credited by the stated attenuation alone "
+        f"({cable.provenance}{': ' * bool(cable.source)}{cable.source})"
+    )
+
+
+def _all_measured(board: Board) -> bool:
+    """Whether a measured transfer is in the place of the cables for every judged net."""
+    judged = [n.net for n in board.nets if n.kind == "digital"]
+    return bool(judged) and all(of_net(board, name, "cable") for name in judged)
 
 
 def _undeclared(cable: Cable) -> bool:
@@ -250,7 +273,12 @@ def _table(
         name: at_line * getattr(passive, name)[rows, line]
         for name in ("trace", "cable_expected", "cable_up_to")
     }
-    error = _error_db(parts["trace"], parts["cable_expected"])
+    error = sum_error_db(
+        passive.measured,
+        {"trace": parts["trace"], "cable": parts["cable_expected"]},
+        {"trace": trace_part.MODEL.error_db, "cable": cable_part.MODEL.error_db},
+        _error_db(parts["trace"], parts["cable_expected"]),
+    )
     because, missing = _reasons(nets, passive, open_cables, levels)
     return CheckTable(
         check="emission",
@@ -295,6 +323,8 @@ def _reasons(
         if not np.isfinite(passive.lines.toggle_hz[i]):
             because[i] = "neither clock_mhz nor data_mbps is given"
             missing[i] = Missing(value="clock_mhz or data_mbps", of=f"net {f.net.net}")
+        elif (gap := passive.unmeasured[i]) is not None:
+            because[i], missing[i] = gap
         elif np.isnan(passive.trace[i]).all():
             because[i] = (
                 "what the net radiates is not known: no surface layer, or a line without height"
@@ -340,7 +370,8 @@ def _passive(radiation: Radiation, nets: Nets) -> Passive:
     trace = trace * _enclosure(radiation.board, lines.frequency_hz)
     expected = up_to * 10 ** (cable_part.MODEL.offset_db / 20)
     judged = up_to if radiation.target.statistic == "worst-case" else expected
-    fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to)
+    measured = replaced(radiation.board, nets.facts, lines.frequency_hz)
+    fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to, measured=measured)
     return _against_budget(radiation, lines, terms, fields)
 
 
@@ -352,6 +383,7 @@ class _Fields:
     judged: Array
     expected: Array
     up_to: Array
+    measured: dict[str, Replaced]
 
 
 def _against_budget(
@@ -372,17 +404,23 @@ def _against_budget(
         detector = 10 ** (lines.detector_db(limit.detector, limit.bandwidth_hz) / 20)
         received = detector * site_factor(lines.frequency_hz, limit.distance_m)
         received = received / (np.sqrt(2) * limit.distance_m)
-        trace = fields.trace * near_field_factor(lines.frequency_hz, limit.distance_m) * received
+        near = near_field_factor(lines.frequency_hz, limit.distance_m)
+        instead = {
+            part: partial(own.instead, detector=detector, distance_m=limit.distance_m)
+            for part, own in fields.measured.items()
+        }
+        trace = instead["trace"](fields.trace * near * received)
+        judged = instead["cable"](fields.judged * received)
         budget = 10 ** (budget_db / 20) * 1e-6
-        over = np.hypot(trace, fields.judged * received) / budget
+        over = np.hypot(trace, judged) / budget
         take = stated & ~(over <= best)
         best = np.where(take, over, best)
-        with_filter = np.hypot(trace, fields.judged * received * credit) / budget
+        with_filter = np.hypot(trace, instead["cable"](fields.judged * received * credit)) / budget
         for name, value in (
             ("trace", trace),
-            ("expected", fields.expected * received),
-            ("up_to", fields.up_to * received),
-            ("judged", fields.judged * received),
+            ("expected", instead["cable"](fields.expected * received)),
+            ("up_to", instead["cable"](fields.up_to * received)),
+            ("judged", judged),
             ("budget", budget_db),
             ("filtered", with_filter),
         ):
@@ -401,6 +439,8 @@ def _against_budget(
         entry=entry,
         entries=tuple((e.limit_id, e.detector, e.distance_m) for e in entries),
         unreached=_unreached(radiation, lines),
+        measured=fields.measured,
+        unmeasured=tuple(gaps(fields.measured, lines, target)),
     )
 
 

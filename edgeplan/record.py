@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from edgeplan import __version__, levels, net_record, pictures_of, unused
+from edgeplan import __version__, levels, net_record, pictures_of, transfers, unused
 from edgeplan.board import Board
 from edgeplan.candidates import Candidates, drawn_ohm
 from edgeplan.caution import CAUTION
@@ -148,22 +148,41 @@ def _states(facts: tuple[NetFacts, ...]) -> list[str]:
 
 
 def _models(draft: Draft) -> list[ModelNote]:
-    """Models that the levels of this board rest on."""
-    used = ["trace"]
-    if draft.bench_now.radiation.cable_state != NONE:
+    """Models that the levels of this board rest on, and what was measured in their place."""
+    measured = {part: _measured_nets(draft, part) for part in transfers.PARTS}
+    modelled = {part: sum(map(len, own)) < len(draft.facts) for part, own in measured.items()}
+    used = ["trace"] if modelled["trace"] or not draft.facts else []
+    if draft.bench_now.radiation.cable_state != NONE and (modelled["cable"] or not draft.facts):
         used.append("cable")
-    if any(kind_of(f) == INNER for f in draft.facts):
+    if any(modelled.values()) and any(kind_of(f) == INNER for f in draft.facts):
         used.append("inner_layer")
     models = [mechanism_of(name).MODEL for name in used]
+    notes = [(m, m.error_db, m.source) for m in models]
+    for part, own in measured.items():
+        for read, nets in zip(draft.board.transfers, own, strict=True):
+            if nets:
+                stated = read.stated
+                source = (
+                    f"{stated.file} in place of the {part} of {len(nets)} nets; "
+                    f"{stated.provenance}: {stated.source}"
+                )
+                model = mechanism_of("measured_transfer").MODEL
+                notes.append((model, stated.error_db, source))
     return [
         ModelNote(
             model=model.name.replace("_", " "),
             version=model.version,
-            error_db=Spread(low=-model.error_db, high=model.error_db),
-            source=model.source,
+            error_db=Spread(low=-error_db, high=error_db),
+            source=source,
         )
-        for model in models
+        for model, error_db, source in notes
     ]
+
+
+def _measured_nets(draft: Draft, part: str) -> list[list[str]]:
+    """Names of the nets of which each transfer of the board replaces a part."""
+    own = {f.net.net: transfers.of_net(draft.board, f.net.net, part) for f in draft.facts}
+    return [[name for name, used in own.items() if used is each] for each in draft.board.transfers]
 
 
 def _judged(draft: Draft) -> list[NetResult]:
@@ -243,6 +262,11 @@ def _net_states(block: Block, state: State, bench: Bench) -> list[net_record.Net
                 },
                 entries=passive.entries,
                 out_of_reach_hz=beyond[row],
+                measured={
+                    part: transfer.stated
+                    for part, replaced in passive.measured.items()
+                    if (transfer := replaced.transfers[row]) is not None
+                },
             )
         )
     return found
