@@ -2,7 +2,6 @@
 
 from collections.abc import Sequence
 from dataclasses import replace
-from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -20,7 +19,6 @@ from edgeplan.physics.network import Trees, response
 from edgeplan.physics.radiation import finite_board_factor
 from edgeplan.physics.routed_imbalance import CommonModeVolts, common_mode_per_volt
 from edgeplan.physics.routed_radiation import Layout, routed_field_per_volt
-from edgeplan.physics.stripline_leakage import stitching_distance_m
 from edgeplan.physics.tree_currents import end_states
 from edgeplan.stack import Line, surface_line
 
@@ -42,39 +40,33 @@ def kind_of(facts: NetFacts) -> str:
     return STRAIGHT if facts.path.main_line.surface else INNER
 
 
-def remarks(facts: NetFacts, highest_hz: float) -> list[str]:
-    """What was assumed about where a net runs, and what of it is not judged.
+def remarks(facts: NetFacts) -> list[str]:
+    """What was assumed about where a net runs.
 
     Parameters
     ----------
     facts : NetFacts
         One net.
-    highest_hz : float
-        Highest judged frequency. [Hz]
 
     Returns
     -------
     list of str
-        Sentences for the report; empty for a surface net over one plane.
+        Sentences for the report; empty for a surface net.
     """
     found = []
     if kind_of(facts) == INNER:
         piece = inner_layer.BREAKOUT_M * 1e3
         found.append(f"runs between planes: {piece:g} mm of surface at each end is assumed")
+    pairs = {" and ".join(p.line.planes) for p in facts.path.pieces if len(p.line.planes) > 1}
+    if pairs:
+        found.append(
+            f"planes {', '.join(sorted(pairs))} count as joined all along the net; what a cavity "
+            "between them radiates is not judged"
+        )
     if facts.path.is_placed and facts.path.stub_m > 0 and not has_placed_stub(facts):
         found.append(
             "the line before its resistor has no position in routes.csv and counts for timing only"
         )
-    lines = [piece.line for piece in facts.path.pieces]
-    for near, far in pairwise(lines):
-        if near.planes and far.planes and not set(near.planes) & set(far.planes):
-            permittivity = max(near.permittivity, far.permittivity)
-            within = float(stitching_distance_m(highest_hz, permittivity)) * 1e3
-            found.append(
-                f"its return changes from plane {near.planes[0]} to {far.planes[0]}: what that "
-                f"radiates is not judged; join the planes within {within:.1f} mm of the via"
-            )
-            break
     return found
 
 

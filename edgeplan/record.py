@@ -48,6 +48,7 @@ from edgeplan.results import (
     Window,
     WindowEnd,
 )
+from edgeplan.return_planes import PlaneFinding, plane_findings
 from edgeplan.scoring import Block
 from edgeplan.windows import launched_edge_s
 
@@ -97,7 +98,8 @@ def find_net(board: Board, name: str) -> str:
 def results(draft: Draft) -> Results:
     """Write the whole record down."""
     board = draft.board
-    judged = _judged(draft)
+    planes = _plane_findings(draft)
+    judged = _judged(draft, planes)
     nets = sorted(
         [*judged, *(_blocked(b) for b in draft.blocked)], key=lambda n: natural_key(n.net)
     )
@@ -127,7 +129,7 @@ def results(draft: Draft) -> Results:
         not_judged=sorted(not_judged, key=lambda n: natural_key(n.net)),
         board_emission=BoardEmission(),
         choice=_choice(draft),
-        findings=_findings(draft.command, nets),
+        findings=_findings(draft.command, nets, planes),
         totals=_totals([n.verdict for n in nets], len(not_judged)),
         totals_after=_totals([n.verdict_after for n in nets], len(not_judged)),
         fill_in=_fill_in(nets),
@@ -185,11 +187,17 @@ def _measured_nets(draft: Draft, part: str) -> list[list[str]]:
     return [[name for name, used in own.items() if used is each] for each in draft.board.transfers]
 
 
-def _judged(draft: Draft) -> list[NetResult]:
+def _plane_findings(draft: Draft) -> dict[str, list[PlaneFinding]]:
+    """What each net does to its return planes beyond the models; nets without are left out."""
+    highest_hz = draft.bench_now.radiation.target.highest_hz
+    found = {f.net.net: plane_findings(draft.board, f, highest_hz) for f in draft.facts}
+    return {name: own for name, own in found.items() if own}
+
+
+def _judged(draft: Draft, planes: dict[str, list[PlaneFinding]]) -> list[NetResult]:
     """Every net that was simulated."""
     sentences = settles.minimum_edges(draft.facts, draft.board, draft.bench_now)
     advice = _remedies(draft)
-    highest_hz = draft.bench_now.radiation.target.highest_hz
     found = []
     for block in draft.blocks:
         states = {
@@ -216,7 +224,7 @@ def _judged(draft: Draft) -> list[NetResult]:
                         every=every if shown else None,
                         every_row=row,
                         row=i,
-                        remarks=tuple(remarks(facts, highest_hz)),
+                        remarks=(*remarks(facts), *(f.text for f in planes.get(facts.net.net, ()))),
                         pictures=pictures_of.draw(block, row, draft) if shown else None,
                     )
                 )
@@ -375,24 +383,34 @@ def _totals(found: list[str], not_judged: int) -> dict[str, int]:
     return totals | {"not judged": not_judged}
 
 
-def _findings(command: str, nets: list[NetResult]) -> list[Finding]:
-    """One finding per net that is not (or cannot be) inside."""
+def _findings(
+    command: str, nets: list[NetResult], planes: dict[str, list[PlaneFinding]]
+) -> list[Finding]:
+    """One finding per net that is not (or cannot be) inside, then those about return planes."""
     found = []
     for net in nets:
         verdict = net.verdict if command == "check" else net.verdict_after
         if verdict not in RULES:
             continue
-        rule = RULES[verdict]
         reason = "; ".join(net.undecided_because) if verdict == "undecided" else net.what_binds
-        found.append(
-            Finding(
-                rule=rule,
-                net=net.net,
-                message=f"{net.net}: {verdict}: {reason}",
-                fingerprint=hashlib.sha256(f"{rule}\n{net.net}".encode()).hexdigest()[:16],
-            )
-        )
+        found.append(_finding(RULES[verdict], net.net, f"{verdict}: {reason}"))
+    found += [
+        _finding(own.rule, net.net, own.text, own.where)
+        for net in nets
+        for own in planes.get(net.net, ())
+    ]
     return found
+
+
+def _finding(rule: str, net: str, text: str, where: str = "") -> Finding:
+    """A finding with the fingerprint of its rule, its net and, where it has one, its place."""
+    mark = f"{rule}\n{net}" + f"\n{where}" * bool(where)
+    return Finding(
+        rule=rule,
+        net=net,
+        message=f"{net}: {text}",
+        fingerprint=hashlib.sha256(mark.encode()).hexdigest()[:16],
+    )
 
 
 def _fill_in(nets: list[NetResult]) -> list[FillIn]:
