@@ -156,3 +156,26 @@ def fields_of(rows, routes):
     nets = nets_of(the_board)
     frequency_hz = np.repeat(FREQUENCY_HZ, len(rows), axis=0)
     return nets, fields_per_volt(the_board, CABLES, nets, frequency_hz)
+
+
+@pytest.mark.parametrize("side_m", [0.003, 0.01])
+def test_a_route_near_a_side_drives_the_cables_harder_by_its_coordinates(side_m):
+    """Re arcosh((2 y + 2jt)/W) over Re arcosh(2jt/W), y from the centre line of 80 mm of plane."""
+    one = (Cable(length_m=1.5),)
+    cable = [{"name": "mains", "length_m": 1.5, "attenuation_db": 0.0, "side": "right"}]
+    found = []
+    for y in (0.04, side_m):
+        made = board(net(length_m=LENGTH_M), routes=placed((0.02, y), (0.08, y)), cable=cable)
+        nets = nets_of(made)
+        found.append(fields_per_volt(made, one, nets, FREQUENCY_HZ))
+    height = nets.facts[0].path.main_line.height_m
+    share = [np.arccosh((2 * y + 2j * height) / 0.08).real for y in (0.0, 0.04 - side_m)]
+    np.testing.assert_allclose(found[1][1] / found[0][1], share[1] / share[0], rtol=1e-6)
+    np.testing.assert_allclose(found[1][0], found[0][0])
+
+
+def test_a_stated_side_distance_does_not_move_a_net_that_has_coordinates():
+    route = placed((0.02, 0.04), (0.08, 0.04))
+    _, (_, middle) = fields(net(length_m=LENGTH_M), routes=route)
+    _, (_, stated) = fields(net(length_m=LENGTH_M, side_distance_m=0.001), routes=route)
+    np.testing.assert_array_equal(middle, stated)

@@ -5,17 +5,19 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from build import board, clock, driver, nets_of, receiver, setting
+from build import bench_of, board, clock, driver, nets_of, receiver, setting
 
-from edgeplan import plan, transfers
+from edgeplan import plan, transfers, verdicts
 from edgeplan.board import MeasuredTransfer, Transfer
 from edgeplan.candidates import list_drawn
 from edgeplan.emission import cable as cable_part
+from edgeplan.evaluate import evaluate
 from edgeplan.net_fields import fields_per_volt
 from edgeplan.nets import build, resolve
 from edgeplan.physics.floor_reflection import near_field_factor, site_factor
 from edgeplan.radiated import radiation_of
 from edgeplan.readers import read_board
+from edgeplan.windows import solve
 
 STARTER = Path(__file__).parents[1] / "examples" / "starter"
 FLAT = ((30e6, -40.0), (1e9, -40.0))
@@ -124,6 +126,30 @@ def test_an_antenna_factor_is_added_to_receiver_volts():
     volts = measured(rows=tuple((f, -52.0) for f, _ in FLAT))
     both = volts.model_copy(update={"antenna_factor": ((20e6, 12.0), (2e9, 12.0))})
     assert judge(the_board(both)).value[0, 0] == pytest.approx(83.36, abs=0.02)
+
+
+@pytest.mark.parametrize(
+    ("margin_db", "error_db", "borderline"),
+    [
+        (1.5, 2.0, True),
+        (1.5, 1.0, False),
+        (-1.5, 2.0, True),
+        (-1.5, 1.0, False),
+    ],
+)
+def test_the_stated_error_decides_what_is_borderline(margin_db, error_db, borderline):
+    level = -40.0 + 40.0 - 6.0 - 83.36 - margin_db
+    rows = tuple((f, level) for f, _ in FLAT)
+    b = the_board(measured(rows=rows, error_db=error_db))
+    nets, bench = nets_of(b), bench_of(b)
+    listed = list_drawn(nets)
+    (window,) = solve(nets, listed, bench)
+    found = evaluate(nets, listed, bench)
+    emission = next(t for t in found.tables if t.check == "emission")
+    assert emission.margin[0, 0] == pytest.approx(margin_db, abs=0.05)
+    judged = verdicts.judge(found, 0, 0, window, can_pass=True)
+    assert judged.verdict == ("inside" if margin_db > 0 else "too fast")
+    assert judged.borderline == borderline
 
 
 def model_tables(folder):
