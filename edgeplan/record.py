@@ -164,8 +164,9 @@ def _models(draft: Draft) -> list[ModelNote]:
         for read, nets in zip(draft.board.transfers, own, strict=True):
             if nets:
                 stated = read.stated
+                count = f"{len(nets)} net{'s' if len(nets) != 1 else ''}"
                 source = (
-                    f"{stated.file} in place of the {part} of {len(nets)} nets; "
+                    f"{stated.file} in place of the {part} of {count}; "
                     f"{stated.provenance}: {stated.source}"
                 )
                 model = mechanism_of("measured_transfer").MODEL
