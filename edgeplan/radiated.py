@@ -6,7 +6,6 @@ a candidate costs one division and one multiplication per line.
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from functools import partial
 from typing import Any
 
 import numpy as np
@@ -21,6 +20,7 @@ from edgeplan.emission import trace as trace_part
 from edgeplan.emission.mechanism import Cable as RadiatingCable
 from edgeplan.emission_lines import EmissionLines, lines_of
 from edgeplan.emission_target import Target, target_of
+from edgeplan.limits import DetectorLine
 from edgeplan.net_fields import fields_per_volt
 from edgeplan.nets import Nets
 from edgeplan.physics.edge_factor import null_free_edge_factor
@@ -393,37 +393,20 @@ def _against_budget(
     target = radiation.target
     shape = lines.frequency_hz.shape
     best = np.zeros(shape)
-    names = ("trace", "expected", "up_to", "judged", "budget", "filtered")
+    names = ("trace", "expected", "up_to", "judged", "filtered", "budget")
     found = {name: np.zeros(shape) for name in names}
     entry = np.zeros(shape, dtype=int)
     entries = target.at(lines.frequency_hz)
-    credit = 10 ** (-cable_part.undeclared_filter_db(lines.frequency_hz) / 20)
     for k, limit in enumerate(entries):
         stated = np.isfinite(limit.level_dbuv_per_m) & lines.exists
         budget_db = limit.level_dbuv_per_m - target.margin_db
-        detector = 10 ** (lines.detector_db(limit.detector, limit.bandwidth_hz) / 20)
-        received = detector * site_factor(lines.frequency_hz, limit.distance_m)
-        received = received / (np.sqrt(2) * limit.distance_m)
-        near = near_field_factor(lines.frequency_hz, limit.distance_m)
-        instead = {
-            part: partial(own.instead, detector=detector, distance_m=limit.distance_m)
-            for part, own in fields.measured.items()
-        }
-        trace = instead["trace"](fields.trace * near * received)
-        judged = instead["cable"](fields.judged * received)
         budget = 10 ** (budget_db / 20) * 1e-6
-        over = np.hypot(trace, judged) / budget
-        take = stated & ~(over <= best)
+        level = _received(fields, lines, limit)
+        over = np.hypot(level["trace"], level["judged"]) / budget
+        take = stated & ~(over <= best) & ~np.isnan(best)  # what is not known stays so
         best = np.where(take, over, best)
-        with_filter = np.hypot(trace, instead["cable"](fields.judged * received * credit)) / budget
-        for name, value in (
-            ("trace", trace),
-            ("expected", instead["cable"](fields.expected * received)),
-            ("up_to", instead["cable"](fields.up_to * received)),
-            ("judged", judged),
-            ("budget", budget_db),
-            ("filtered", with_filter),
-        ):
+        level["filtered"] = np.hypot(level["trace"], level["filtered"]) / budget
+        for name, value in (level | {"budget": budget_db}).items():
             found[name] = np.where(take, value, found[name])
         entry = np.where(take, k, entry)
     return Passive(
@@ -442,6 +425,26 @@ def _against_budget(
         measured=fields.measured,
         unmeasured=tuple(gaps(fields.measured, lines, target)),
     )
+
+
+def _received(fields: _Fields, lines: EmissionLines, limit: DetectorLine) -> dict[str, Array]:
+    """What the receiver of a limit line shows of each part per volt of source, rms. (N, F)"""
+    frequency_hz, distance_m = lines.frequency_hz, limit.distance_m
+    detector = 10 ** (lines.detector_db(limit.detector, limit.bandwidth_hz) / 20)
+    shown = detector * site_factor(frequency_hz, distance_m) / (np.sqrt(2) * distance_m)
+    credit = 10 ** (-cable_part.undeclared_filter_db(frequency_hz) / 20)
+    trace = fields.trace * near_field_factor(frequency_hz, distance_m) * shown
+    cable = {
+        "expected": fields.expected * shown,
+        "up_to": fields.up_to * shown,
+        "judged": fields.judged * shown,
+        "filtered": fields.judged * shown * credit,
+    }
+    measured = fields.measured
+    return {"trace": measured["trace"].instead(trace, detector, distance_m)} | {
+        name: measured["cable"].instead(level, detector, distance_m)
+        for name, level in cable.items()
+    }
 
 
 def _network(nets: Nets, frequency_hz: Array) -> Array:

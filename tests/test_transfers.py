@@ -99,11 +99,24 @@ def test_where_the_table_ends_the_net_is_open_and_asks_for_rows():
     assert found.missing[0].of == "transfer scan.csv"
 
 
-def test_another_distance_is_never_converted():
-    found = judge(the_board(measured(distance_m=10.0)))
-    assert found.open[0, 0]
-    assert "measured at 10 m" in found.because[0]
-    assert found.missing[0].value == "measurement at 3 m"
+@pytest.mark.parametrize(
+    "limits",
+    [
+        ["cispr32-class-b-3m"],
+        ["cispr32-class-b-3m", "cispr32-class-b-10m"],
+        ["cispr32-class-b-10m", "cispr32-class-b-3m"],
+    ],
+)
+@pytest.mark.parametrize("distance_m", [10.0, 3.0])
+def test_another_distance_is_never_converted(limits, distance_m):
+    """A line at the transfer's own distance does not hide one at another."""
+    found = judge(the_board(measured(distance_m=distance_m), emission={"limits": limits}))
+    other = {f"cispr32-class-b-{d:g}m" for d in (3.0, 10.0) if d != distance_m} & {*limits}
+    assert found.open[0, 0] == bool(other)
+    if other:
+        wanted_m = 13.0 - distance_m
+        assert f"measured at {distance_m:g} m" in found.because[0]
+        assert found.missing[0].value == f"measurement at {wanted_m:g} m"
 
 
 def test_a_transfer_serves_the_nets_it_names_and_the_last_one_wins():
