@@ -112,6 +112,27 @@ class ClockSource(Record):
     spread: SpreadClock | None = None
 
 
+class Transfer(Record):
+    """A measured transfer in the place of a mechanism, and who measured it how."""
+
+    file: str
+    replaces: Literal["trace", "cable"]
+    nets: list[str] = Field(default=["*"], min_length=1)
+    distance_m: Length = Field(alias="distance", gt=0)
+    antenna_factor: str | None = None
+    error_db: Decibel = Field(alias="error", default=4.0, ge=0)
+    source: str
+    provenance: Provenance = "measured"
+
+
+class MeasuredTransfer(Record):
+    """A transfer with its tables as read: pairs of frequency [Hz] and level [dB]."""
+
+    stated: Transfer
+    rows: tuple[tuple[float, float], ...]
+    antenna_factor: tuple[tuple[float, float], ...] = ()
+
+
 class BoardFacts(Record):
     """What is true of the whole board."""
 
@@ -382,6 +403,7 @@ class BoardFile(Record):
 
     stack: list[Layer] = Field(min_length=1)
     cable: list[Cable] | None = None
+    transfer: list[Transfer] = Field(default_factory=list)
     clock_source: list[ClockSource] = Field(default_factory=list)
     board: BoardFacts
     emission: EmissionTarget
@@ -412,5 +434,6 @@ class Board(Record):
     nets: tuple[Net, ...]
     routes: tuple[RouteSegment, ...] = ()
     user_limits: tuple[Any, ...] = ()
+    transfers: tuple[MeasuredTransfer, ...] = ()
     inputs: tuple[InputFile, ...] = ()
     notes: tuple[Annotated[str, Field(description="printed under assumptions")], ...] = ()

@@ -8,12 +8,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from edgeplan import verdicts, words
-from edgeplan.board import Board
+from edgeplan.board import Board, Transfer
 from edgeplan.candidates import COST_NAMES, Candidates
 from edgeplan.checks import CheckTable, condition_words
 from edgeplan.drives import CORNERS
 from edgeplan.emission import cable as cable_part
 from edgeplan.emission import trace as trace_part
+from edgeplan.emission.measured_transfer import MODEL as MEASURED_MODEL
 from edgeplan.emission.mechanism import Mechanism
 from edgeplan.evaluate import Evaluation
 from edgeplan.nets import NetFacts
@@ -58,6 +59,7 @@ class NetState:
     edges_s: dict[str, float]
     entries: tuple[tuple[str, str, float], ...]
     out_of_reach_hz: tuple[float, ...]
+    measured: dict[str, Transfer]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -259,7 +261,7 @@ def _check(
         )
         if decided and isfinite(table.error_low[row, column])
         else None,
-        provenance=_provenance(table, facts, state.setting),
+        provenance=_provenance(table, facts, state),
         undecided_because="" if decided else table.because[row] or "no number",
         limit_edge_s=_number(state.window.limit_edge_s.get(table.check, np.nan)),
         **extra,
@@ -275,9 +277,9 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
     trace = float(level_dbuv_per_m(table.extra["trace"][row, column]))
     expected = float(level_dbuv_per_m(table.extra["cable_expected"][row, column]))
     up_to = float(level_dbuv_per_m(table.extra["cable_up_to"][row, column]))
-    parts = [_part(trace_part.MODEL, trace, trace)]
+    parts = [_part(trace_part.MODEL, trace, trace, state.measured.get("trace"))]
     if isfinite(expected):
-        parts.append(_part(cable_part.MODEL, expected, up_to))
+        parts.append(_part(cable_part.MODEL, expected, up_to, state.measured.get("cable")))
     return {
         "frequency_hz": _number(table.extra["frequency_hz"][row, column]),
         "order": round(order) if abs(order - round(order)) < 1e-6 else None,
@@ -286,23 +288,27 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
     }
 
 
-def _part(model: Mechanism, expected: float, up_to: float) -> EmissionPart:
-    """One mechanism's levels with its stated error."""
+def _part(
+    model: Mechanism, expected: float, up_to: float, measured: Transfer | None
+) -> EmissionPart:
+    """One mechanism's levels with the stated error of its model, or of what was measured."""
+    error_db = model.error_db if measured is None else measured.error_db
     return EmissionPart(
         mechanism=model.name,
-        model=model.name,
+        model=model.name if measured is None else MEASURED_MODEL.name.replace("_", " "),
         expected_dbuv_per_m=expected,
         up_to_dbuv_per_m=up_to,
-        error_db=Spread(low=-model.error_db, high=model.error_db),
+        error_db=Spread(low=-error_db, high=error_db),
     )
 
 
-def _provenance(table: CheckTable, facts: NetFacts, setting: int) -> list[str]:
+def _provenance(table: CheckTable, facts: NetFacts, state: NetState) -> list[str]:
     """Where the numbers of a check came from, each once."""
-    corners = facts.settings[setting]
+    corners = facts.settings[state.setting]
     found = [corners.resistance_ohm["rising"].provenance, corners.ramp_s["rising"].provenance]
     if table.check == "emission":
         found.append("assumed" if facts.net.side_distance_m is None else "datasheet")
+        found += [transfer.provenance for transfer in state.measured.values()]
     if facts.path.main_line.provenance == "stated":
         found.append("datasheet")
     return sorted(set(found))

@@ -20,6 +20,7 @@ from edgeplan.emission import trace as trace_part
 from edgeplan.emission.mechanism import Cable as RadiatingCable
 from edgeplan.emission_lines import EmissionLines, lines_of
 from edgeplan.emission_target import Target, target_of
+from edgeplan.limits import DetectorLine
 from edgeplan.net_fields import fields_per_volt
 from edgeplan.nets import Nets
 from edgeplan.physics.floor_reflection import near_field_factor, site_factor
@@ -27,6 +28,7 @@ from edgeplan.physics.network import response
 from edgeplan.physics.sources import source_terms, source_weights, stub_chain
 from edgeplan.results import Missing
 from edgeplan.source_edges import edge_shares
+from edgeplan.transfers import Replaced, gaps, of_net, replaced, sum_error_db
 
 Array = NDArray[Any]
 
@@ -40,7 +42,8 @@ class Passive:
     ``over_budget`` is level over budget per volt; ``filtered`` the same with a good
     filter on all cables (where nothing is declared about them). ``to_level`` turns a
     level over budget into a field; ``entry`` says which line and detector binds; ``unreached``
-    whose stated table, per net, does not reach every judged line.
+    whose stated table, per net, does not reach every judged line; ``measured`` what transfers
+    replace, by part, and ``unmeasured`` why one of them leaves a net open.
     """
 
     lines: EmissionLines
@@ -55,6 +58,8 @@ class Passive:
     entry: Array
     entries: tuple[tuple[str, str, float], ...]
     unreached: tuple[str, ...]
+    measured: dict[str, Replaced]
+    unmeasured: tuple[tuple[str, Missing] | None, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -147,7 +152,9 @@ def radiation_of(board: Board) -> Radiation:
             for c in declared
             if _undeclared(c)
         ]
-    notes += [f"cable {c.name}: its shield is not credited" for c in declared or () if c.shielded]
+    notes += [_shield_note(c) for c in declared or () if c.shielded]
+    if _all_measured(board):
+        notes = []
     return Radiation(
         board=board,
         target=target_of(board),
@@ -155,6 +162,22 @@ def radiation_of(board: Board) -> Radiation:
         cable_state=state,
         notes=tuple(notes),
     )
+
+
+def _shield_note(cable: Cable) -> str:
+    """What a shield is credited: nothing, or what its cable states as attenuation."""
+    if cable.attenuation_db is None:
+        return f"cable {cable.name}: its shield is not credited"
+    return (
+        f"cable {cable.name}: shield and filter are credited by the stated attenuation alone "
+        f"({cable.provenance}{': ' * bool(cable.source)}{cable.source})"
+    )
+
+
+def _all_measured(board: Board) -> bool:
+    """Whether a measured transfer is in the place of the cables for every judged net."""
+    judged = [n.net for n in board.nets if n.kind == "digital"]
+    return bool(judged) and all(of_net(board, name, "cable") for name in judged)
 
 
 def _undeclared(cable: Cable) -> bool:
@@ -249,7 +272,12 @@ def _table(
         name: at_line * getattr(passive, name)[rows, line]
         for name in ("trace", "cable_expected", "cable_up_to")
     }
-    error = _error_db(parts["trace"], parts["cable_expected"])
+    error = sum_error_db(
+        passive.measured,
+        {"trace": parts["trace"], "cable": parts["cable_expected"]},
+        {"trace": trace_part.MODEL.error_db, "cable": cable_part.MODEL.error_db},
+        _error_db(parts["trace"], parts["cable_expected"]),
+    )
     because, missing = _reasons(nets, passive, open_cables, levels)
     return CheckTable(
         check="emission",
@@ -294,6 +322,8 @@ def _reasons(
         if not np.isfinite(passive.lines.toggle_hz[i]):
             because[i] = "neither clock_mhz nor data_mbps is given"
             missing[i] = Missing(value="clock_mhz or data_mbps", of=f"net {f.net.net}")
+        elif (gap := passive.unmeasured[i]) is not None:
+            because[i], missing[i] = gap
         elif np.isnan(passive.trace[i]).all():
             because[i] = (
                 "what the net radiates is not known: no surface layer, or a line without height"
@@ -339,7 +369,8 @@ def _passive(radiation: Radiation, nets: Nets) -> Passive:
     trace = trace * _enclosure(radiation.board, lines.frequency_hz)
     expected = up_to * 10 ** (cable_part.MODEL.offset_db / 20)
     judged = up_to if radiation.target.statistic == "worst-case" else expected
-    fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to)
+    measured = replaced(radiation.board, nets.facts, lines.frequency_hz)
+    fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to, measured=measured)
     return _against_budget(radiation, lines, terms, fields)
 
 
@@ -351,6 +382,7 @@ class _Fields:
     judged: Array
     expected: Array
     up_to: Array
+    measured: dict[str, Replaced]
 
 
 def _against_budget(
@@ -360,32 +392,20 @@ def _against_budget(
     target = radiation.target
     shape = lines.frequency_hz.shape
     best = np.zeros(shape)
-    names = ("trace", "expected", "up_to", "judged", "budget", "filtered")
+    names = ("trace", "expected", "up_to", "judged", "filtered", "budget")
     found = {name: np.zeros(shape) for name in names}
     entry = np.zeros(shape, dtype=int)
     entries = target.at(lines.frequency_hz)
-    credit = 10 ** (-cable_part.undeclared_filter_db(lines.frequency_hz) / 20)
     for k, limit in enumerate(entries):
         stated = np.isfinite(limit.level_dbuv_per_m) & lines.exists
         budget_db = limit.level_dbuv_per_m - target.margin_db
-        read_db = lines.detector_db(limit.detector, limit.bandwidth_hz, limit.limit_id)
-        detector = 10 ** (read_db / 20)
-        received = detector * site_factor(lines.frequency_hz, limit.distance_m)
-        received = received / (np.sqrt(2) * limit.distance_m)
-        trace = fields.trace * near_field_factor(lines.frequency_hz, limit.distance_m) * received
         budget = 10 ** (budget_db / 20) * 1e-6
-        over = np.hypot(trace, fields.judged * received) / budget
-        take = stated & ~(over <= best)
+        level = _received(fields, lines, limit)
+        over = np.hypot(level["trace"], level["judged"]) / budget
+        take = stated & ~(over <= best) & ~np.isnan(best)  # what is not known stays so
         best = np.where(take, over, best)
-        with_filter = np.hypot(trace, fields.judged * received * credit) / budget
-        for name, value in (
-            ("trace", trace),
-            ("expected", fields.expected * received),
-            ("up_to", fields.up_to * received),
-            ("judged", fields.judged * received),
-            ("budget", budget_db),
-            ("filtered", with_filter),
-        ):
+        level["filtered"] = np.hypot(level["trace"], level["filtered"]) / budget
+        for name, value in (level | {"budget": budget_db}).items():
             found[name] = np.where(take, value, found[name])
         entry = np.where(take, k, entry)
     return Passive(
@@ -401,7 +421,30 @@ def _against_budget(
         entry=entry,
         entries=tuple((e.limit_id, e.detector, e.distance_m) for e in entries),
         unreached=_unreached(radiation, lines),
+        measured=fields.measured,
+        unmeasured=tuple(gaps(fields.measured, lines, target)),
     )
+
+
+def _received(fields: _Fields, lines: EmissionLines, limit: DetectorLine) -> dict[str, Array]:
+    """What the receiver of a limit line shows of each part per volt of source, rms. (N, F)"""
+    frequency_hz, distance_m = lines.frequency_hz, limit.distance_m
+    read_db = lines.detector_db(limit.detector, limit.bandwidth_hz, limit.limit_id)
+    detector = 10 ** (read_db / 20)
+    shown = detector * site_factor(frequency_hz, distance_m) / (np.sqrt(2) * distance_m)
+    credit = 10 ** (-cable_part.undeclared_filter_db(frequency_hz) / 20)
+    trace = fields.trace * near_field_factor(frequency_hz, distance_m) * shown
+    cable = {
+        "expected": fields.expected * shown,
+        "up_to": fields.up_to * shown,
+        "judged": fields.judged * shown,
+        "filtered": fields.judged * shown * credit,
+    }
+    measured = fields.measured
+    return {"trace": measured["trace"].instead(trace, detector, distance_m)} | {
+        name: measured["cable"].instead(level, detector, distance_m)
+        for name, level in cable.items()
+    }
 
 
 def _network(nets: Nets, frequency_hz: Array) -> Array:

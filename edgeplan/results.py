@@ -10,6 +10,10 @@ Verdict = Literal["inside", "too fast", "too slow", "no window", "undecided", "n
 Corner = Literal["slow", "typical", "fast"]
 
 SCHEMA = "edgeplan/results/1"
+# Rules whose findings are listed and do not make the exit code 1: what they name is not judged.
+PLANE_CHANGES = "return-plane-changes"
+INNER_OUT_OF_RANGE = "inner-layer-out-of-range"
+BEYOND_MODEL = (PLANE_CHANGES, INNER_OUT_OF_RANGE)
 VERDICTS: tuple[Verdict, ...] = (
     "inside",
     "too fast",
@@ -431,7 +435,7 @@ class Choice:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Finding:
-    """One violated rule on one net."""
+    """One violated rule on one net; those of `BEYOND_MODEL` do not change the exit code."""
 
     rule: str
     net: str

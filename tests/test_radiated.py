@@ -271,8 +271,19 @@ def test_an_empty_list_of_cables_is_no_declaration_without_saying_so():
 
 
 def test_a_shield_is_not_credited_and_that_is_said():
-    shielded = ONE_CABLE[0] | {"shielded": True}
+    shielded = {"name": "mains", "length_m": 1.5, "shielded": True, "series_impedance_ohm": 500.0}
     assert "its shield is not credited" in radiation_of(the_board(cable=[shielded])).notes[0]
+    bare = shielded | {"shielded": False}
+    shield, none = (passive_of(the_board(cable=[c])) for c in (shielded, bare))
+    np.testing.assert_array_equal(shield.cable_expected, none.cable_expected)
+
+
+def test_a_shield_that_states_its_attenuation_is_credited_that_and_says_where_it_is_from():
+    shielded = ONE_CABLE[0] | {"shielded": True, "provenance": "measured", "source": "own clamp"}
+    (note,) = radiation_of(the_board(cable=[shielded])).notes
+    assert "by the stated attenuation alone (measured: own clamp)" in note
+    both = (passive_of(the_board(cable=[c])) for c in (shielded, ONE_CABLE[0]))
+    np.testing.assert_array_equal(*(p.cable_expected for p in both))
 
 
 def test_an_attenuation_table_is_not_extrapolated_and_the_net_says_which_cable():

@@ -9,7 +9,9 @@ from edgeplan import levels
 from edgeplan.board import Board, BoardFile, Columns, Group, RouteSegment
 from edgeplan.errors import InputError, Problem
 from edgeplan.readers import (
+    frequency_tables,
     limit_table,
+    measured,
     net_checks,
     netlist,
     references,
@@ -53,8 +55,12 @@ def read_board(path: Path) -> Board:
     nets, notes = _nets(folder, document)
     segments = _routes(folder, document, nets)
     limits = _limits(folder, document) if document else []
+    transfers = []
     if document:
         _models(folder, document)
+        folder.problems += frequency_tables.problems(document)
+        own = {line.id: line for line in limits}
+        transfers = measured.read(folder, document, file, own)
     if folder.problems or file is None or nets is None:
         raise InputError(folder.problems)
     return Board(
@@ -62,6 +68,7 @@ def read_board(path: Path) -> Board:
         nets=tuple(entry.net(nets.file) for entry in nets.entries.values()),
         routes=tuple(segments),
         user_limits=tuple(limits),
+        transfers=tuple(transfers),
         inputs=tuple(folder.inputs[name] for name in sorted(folder.inputs)),
         notes=tuple(notes),
     )
