@@ -275,9 +275,10 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
     trace = float(level_dbuv_per_m(table.extra["trace"][row, column]))
     expected = float(level_dbuv_per_m(table.extra["cable_expected"][row, column]))
     up_to = float(level_dbuv_per_m(table.extra["cable_up_to"][row, column]))
-    parts = [_part(trace_part.MODEL, trace, trace)]
+    cable_error_db = float(table.extra["cable_error_db"][row, column])
+    parts = [_part(trace_part.MODEL, trace, trace, trace_part.MODEL.error_db)]
     if isfinite(expected):
-        parts.append(_part(cable_part.MODEL, expected, up_to))
+        parts.append(_part(cable_part.MODEL, expected, up_to, cable_error_db))
     return {
         "frequency_hz": _number(table.extra["frequency_hz"][row, column]),
         "order": round(order) if abs(order - round(order)) < 1e-6 else None,
@@ -286,14 +287,14 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
     }
 
 
-def _part(model: Mechanism, expected: float, up_to: float) -> EmissionPart:
-    """One mechanism's levels with its stated error."""
+def _part(model: Mechanism, expected: float, up_to: float, error_db: float) -> EmissionPart:
+    """One mechanism's levels with its stated error there."""
     return EmissionPart(
         mechanism=model.name,
         model=model.name,
         expected_dbuv_per_m=expected,
         up_to_dbuv_per_m=up_to,
-        error_db=Spread(low=-model.error_db, high=model.error_db),
+        error_db=Spread(low=-error_db, high=error_db),
     )
 
 
