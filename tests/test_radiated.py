@@ -267,7 +267,7 @@ def test_undeclared_cables_that_make_the_difference_leave_the_net_open_with_what
     ("statistic", "length_m", "ohm"),
     [
         ("expected", 0.06, 30.0),
-        ("expected", 0.09, 60.0),
+        ("expected", 0.075, 60.0),
         ("worst-case", 0.03, 30.0),
         ("worst-case", 0.03, 60.0),
     ],
