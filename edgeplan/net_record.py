@@ -277,9 +277,13 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
     trace = float(level_dbuv_per_m(table.extra["trace"][row, column]))
     expected = float(level_dbuv_per_m(table.extra["cable_expected"][row, column]))
     up_to = float(level_dbuv_per_m(table.extra["cable_up_to"][row, column]))
-    parts = [_part(trace_part.MODEL, trace, trace, state.measured.get("trace"))]
+    cable_error_db = float(table.extra["cable_error_db"][row, column])
+    trace_error_db = float(table.extra["trace_error_db"][row, column])
+    measured = state.measured
+    parts = [_part(trace_part.MODEL, trace, trace, trace_error_db, measured.get("trace"))]
     if isfinite(expected):
-        parts.append(_part(cable_part.MODEL, expected, up_to, state.measured.get("cable")))
+        cable = _part(cable_part.MODEL, expected, up_to, cable_error_db, measured.get("cable"))
+        parts.append(cable)
     return {
         "frequency_hz": _number(table.extra["frequency_hz"][row, column]),
         "order": round(order) if abs(order - round(order)) < 1e-6 else None,
@@ -289,10 +293,9 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
 
 
 def _part(
-    model: Mechanism, expected: float, up_to: float, measured: Transfer | None
+    model: Mechanism, expected: float, up_to: float, error_db: float, measured: Transfer | None
 ) -> EmissionPart:
-    """One mechanism's levels with the stated error of its model, or of what was measured."""
-    error_db = model.error_db if measured is None else measured.error_db
+    """One mechanism's levels with the stated error of its model there, or of what was measured."""
     return EmissionPart(
         mechanism=model.name,
         model=model.name if measured is None else MEASURED_MODEL.name.replace("_", " "),

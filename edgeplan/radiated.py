@@ -28,7 +28,7 @@ from edgeplan.physics.network import response
 from edgeplan.physics.sources import source_terms, source_weights, stub_chain
 from edgeplan.results import Missing
 from edgeplan.source_edges import edge_shares
-from edgeplan.transfers import Replaced, gaps, of_net, replaced, sum_error_db
+from edgeplan.transfers import Replaced, gaps, of_net, replaced
 
 Array = NDArray[Any]
 
@@ -54,6 +54,7 @@ class Passive:
     cable_expected: Array
     cable_up_to: Array
     cable_judged: Array
+    cable_error_db: Array
     budget_dbuv_per_m: Array
     entry: Array
     entries: tuple[tuple[str, str, float], ...]
@@ -71,6 +72,11 @@ class Radiation:
     cables: tuple[Cable, ...]
     cable_state: str
     notes: tuple[str, ...] = ()
+
+    @property
+    def cable_count(self) -> int | None:
+        """Number of declared cables; None where nothing is declared."""
+        return None if self.cable_state == UNKNOWN and not self.cables else len(self.cables)
 
     def passive(self, nets: Nets) -> Passive:
         """Passive quantities of a block, worked out once.
@@ -272,12 +278,13 @@ def _table(
         name: at_line * getattr(passive, name)[rows, line]
         for name in ("trace", "cable_expected", "cable_up_to")
     }
-    error = sum_error_db(
-        passive.measured,
-        {"trace": parts["trace"], "cable": parts["cable_expected"]},
-        {"trace": trace_part.MODEL.error_db, "cable": cable_part.MODEL.error_db},
-        _error_db(parts["trace"], parts["cable_expected"]),
-    )
+    errors = {
+        "trace_error_db": np.full(over.shape, trace_part.MODEL.error_db),
+        "cable_error_db": passive.cable_error_db[rows, line],
+    }
+    for name, part in passive.measured.items():
+        errors[f"{name}_error_db"] = part.error_or(errors[f"{name}_error_db"])
+    error = _error_db(parts["trace"], parts["cable_expected"], **errors)
     because, missing = _reasons(nets, passive, open_cables, levels)
     return CheckTable(
         check="emission",
@@ -297,19 +304,18 @@ def _table(
             "frequency_hz": passive.lines.frequency_hz[rows, line],
             "order": passive.lines.order[rows, line],
             "entry": passive.entry[rows, line],
+            **errors,
             **parts,
         },
     )
 
 
-def _error_db(trace: Array, cable: Array) -> Array:
+def _error_db(trace: Array, cable: Array, trace_error_db: Array, cable_error_db: Array) -> Array:
     """Stated error of the sum: that of each part by its share of the power. [dB]"""
     power = trace**2 + cable**2
     with np.errstate(invalid="ignore", divide="ignore"):
-        mixed = (
-            trace**2 * trace_part.MODEL.error_db + cable**2 * cable_part.MODEL.error_db
-        ) / power
-    return np.asarray(np.nan_to_num(mixed, nan=cable_part.MODEL.error_db))
+        mixed = (trace**2 * trace_error_db + cable**2 * cable_error_db) / power
+    return np.where(np.isnan(mixed), np.maximum(trace_error_db, cable_error_db), mixed)
 
 
 def _reasons(
@@ -367,7 +373,8 @@ def _passive(radiation: Radiation, nets: Nets) -> Passive:
     cables = _cables(radiation, lines.frequency_hz)
     trace, up_to = fields_per_volt(radiation.board, cables, nets, lines.frequency_hz)
     trace = trace * _enclosure(radiation.board, lines.frequency_hz)
-    expected = up_to * 10 ** (cable_part.MODEL.offset_db / 20)
+    offset_db = cable_part.expected_offset_db(lines.frequency_hz, radiation.cable_count)
+    expected = up_to * 10 ** (offset_db / 20)
     judged = up_to if radiation.target.statistic == "worst-case" else expected
     measured = replaced(radiation.board, nets.facts, lines.frequency_hz)
     fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to, measured=measured)
@@ -417,6 +424,7 @@ def _against_budget(
         cable_expected=found["expected"],
         cable_up_to=found["up_to"],
         cable_judged=found["judged"],
+        cable_error_db=cable_part.error_db(lines.frequency_hz, radiation.cable_count),
         budget_dbuv_per_m=found["budget"],
         entry=entry,
         entries=tuple((e.limit_id, e.detector, e.distance_m) for e in entries),
@@ -463,7 +471,7 @@ def _network(nets: Nets, frequency_hz: Array) -> Array:
 
 def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...] | None:
     """Cables with their attenuation at the judged lines; None where nothing is declared."""
-    if radiation.cable_state == UNKNOWN and not radiation.cables:
+    if radiation.cable_count is None:
         return None
     return tuple(
         RadiatingCable(

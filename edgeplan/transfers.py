@@ -70,6 +70,10 @@ class Replaced:
         """Stated error, NaN where the model stays, (N,). [dB]"""
         return np.array([np.nan if t is None else t.stated.error_db for t in self.transfers])
 
+    def error_or(self, model_db: Array) -> Array:
+        """Stated error of the transfer, or the model's where there is none, (N, C). [dB]"""
+        return np.where(self.is_measured[:, None], self.error_db[:, None], model_db)
+
     def at_distance(self, distance_m: float) -> Array:
         """Whether each net's transfer was measured at a distance, (N,)."""
         own = np.array([np.nan if t is None else t.stated.distance_m for t in self.transfers])
@@ -190,39 +194,3 @@ def _elsewhere(measured: MeasuredTransfer | None, distance_m: float) -> tuple[st
         f"the {distance_m:g} m of the limit"
     )
     return because, Missing(value=f"measurement at {distance_m:g} m", of=own)
-
-
-def sum_error_db(
-    found: dict[str, Replaced], levels: dict[str, Array], model_db: dict[str, float], error: Array
-) -> Array:
-    """Stated error of the sum where a part is measured: each part by its share of the power.
-
-    Parameters
-    ----------
-    found : dict
-        From `replaced`.
-    levels : dict
-        Level of each part at the worst line, (N, C). [V/m]
-    model_db : dict
-        Error of each part's model. [dB]
-    error : numpy.ndarray
-        Error of the sum by the models, (N, C). [dB]
-
-    Returns
-    -------
-    numpy.ndarray
-        The same, with the stated error of the transfers in its place, (N, C). [dB]
-    """
-    measured = np.any([part.is_measured for part in found.values()], axis=0)
-    if not measured.any():
-        return error
-    own = {
-        name: np.where(part.is_measured, part.error_db, model_db[name])[:, None]
-        for name, part in found.items()
-    }
-    power = sum(levels[name] ** 2 for name in PARTS)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        mixed = sum(levels[name] ** 2 * own[name] for name in PARTS) / power
-    largest = np.maximum(own["trace"], own["cable"])
-    mixed = np.where(np.isfinite(mixed), mixed, largest)
-    return np.where(measured[:, None], mixed, error)

@@ -74,7 +74,15 @@ def levels_by_hand(attenuation_db=4.0):
     cable = _cable_by_hand(f, main, gamma, reflection) * 10 ** (-attenuation_db / 20)
     site = site_factor(f, 3.0) / (np.sqrt(2) * 3.0)
     near = near_field_factor(f, 3.0)
-    return f, forward * trace * near * site, forward * cable * site * 10 ** (-5.5 / 20)
+    expected = 10 ** (-envelope_over_expected_db(f) / 20)
+    return f, forward * trace * near * site, forward * cable * site * expected
+
+
+def envelope_over_expected_db(frequency_hz):
+    """One cable, from the page of the cable's model: 2 dB at 40, 3 at 110, 6 at 450 MHz."""
+    rows = np.log([40e6, 110e6, 450e6])
+    below = np.interp(np.log(frequency_hz), rows, [2.0, 3.0, 6.0])
+    return np.where(frequency_hz > 1e9, 0.0, below)
 
 
 def _cable_by_hand(f, main, gamma, reflection):
@@ -136,17 +144,38 @@ def test_every_odd_harmonic_agrees_part_by_part_and_even_ones_are_absent():
     np.testing.assert_array_equal(levels[1::2], 0.0)
 
 
-def test_the_upper_level_is_5_5_db_above_the_expected_one():
+def test_the_upper_level_is_above_the_expected_one_by_what_the_page_says_for_one_cable():
     found = judge(the_board())
     ratio = found.extra["cable_up_to"] / found.extra["cable_expected"]
-    assert 20 * np.log10(ratio[0, 0]) == pytest.approx(5.5, abs=1e-3)
+    above = envelope_over_expected_db(found.extra["frequency_hz"][0, 0])
+    assert 20 * np.log10(ratio[0, 0]) == pytest.approx(above, abs=1e-3)
+
+
+def test_several_or_undeclared_cables_have_an_expected_level_of_their_own():
+    # 5 dB below the envelope at 110 MHz
+    several = [ONE_CABLE[0], ONE_CABLE[0] | {"name": "another"}]
+    clocks = clock(clock_hz=110e6, length_m=LENGTH_M)
+    for cables in (several, None):
+        passive = passive_of(the_board(clocks, cable=cables))
+        at = int(np.argmin(np.abs(passive.lines.frequency_hz[0] - 110e6)))
+        ratio = passive.cable_up_to[0, at] / passive.cable_expected[0, at]
+        assert 20 * np.log10(ratio) == pytest.approx(5.0, abs=0.01)
+
+
+def test_the_error_of_the_sum_is_that_of_its_parts_at_that_frequency():
+    found = judge(the_board())
+    trace, cable = (found.extra[name][0, 0] ** 2 for name in ("trace", "cable_expected"))
+    frequency_hz = found.extra["frequency_hz"][0, 0]
+    of_cable = np.interp(np.log(frequency_hz), np.log([40e6, 110e6, 450e6]), [8.0, 6.0, 5.0])
+    stated = (1.8 * trace + of_cable * cable) / (trace + cable)
+    assert found.error_high[0, 0] == pytest.approx(stated, rel=1e-4)
 
 
 def test_the_worst_case_statistic_judges_the_upper_level():
     target = {"limits": ["cispr32-class-b-3m"], "statistic": "worst-case"}
     expected, worst = judge(the_board()), judge(the_board(emission=target))
-    # The cable rules this net, so that nearly the whole 5.5 dB is lost.
-    assert 5.0 < expected.margin[0, 0] - worst.margin[0, 0] <= 5.5
+    # The cable rules this net, so that at least what lies between the two at 40 MHz is lost.
+    assert 2.0 < expected.margin[0, 0] - worst.margin[0, 0] <= 6.0
 
 
 def test_a_share_is_what_the_margin_leaves_of_the_field():
@@ -238,7 +267,7 @@ def test_undeclared_cables_that_make_the_difference_leave_the_net_open_with_what
     ("statistic", "length_m", "ohm"),
     [
         ("expected", 0.06, 30.0),
-        ("expected", 0.09, 60.0),
+        ("expected", 0.075, 60.0),
         ("worst-case", 0.03, 30.0),
         ("worst-case", 0.03, 60.0),
     ],

@@ -12,7 +12,6 @@ MODEL = Mechanism(
     name="measured_transfer",
     version=1,
     error_db=4.0,
-    offset_db=0.0,
     source="a transfer the user measured, straight in the logarithm of frequency between its"
     " rows; the error is that of one place of the cables, one orientation and one receiver",
 )
