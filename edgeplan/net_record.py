@@ -15,6 +15,7 @@ from edgeplan.drives import CORNERS
 from edgeplan.emission import cable as cable_part
 from edgeplan.emission import trace as trace_part
 from edgeplan.emission.mechanism import Mechanism
+from edgeplan.emission_lines import is_data
 from edgeplan.evaluate import Evaluation
 from edgeplan.nets import NetFacts
 from edgeplan.physics.radiation import level_dbuv_per_m
@@ -231,7 +232,7 @@ def _check(
     pins = facts.net.receiver_pin
     place = pins[receiver] if receiver < len(pins) else ""
     is_emission = table.check == "emission"
-    extra = _emission_extra(table, row, column, state) if is_emission else {}
+    extra = _emission_extra(table, row, column, state, facts) if is_emission else {}
     if is_emission and decided:
         beyond = state.out_of_reach_hz
         extra["out_of_reach_hz"] = list(beyond)
@@ -266,8 +267,10 @@ def _check(
     )
 
 
-def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -> dict[str, Any]:
-    """Frequency, harmonic number, detector and parts of an emission level."""
+def _emission_extra(
+    table: CheckTable, row: int, column: int, state: NetState, facts: NetFacts
+) -> dict[str, Any]:
+    """Frequency, harmonic number (data have none), detector and parts of an emission level."""
     if not table.decided[row, column] and not isfinite(table.extra["trace"][row, column]):
         return {}
     order = float(table.extra["order"][row, column])
@@ -280,7 +283,7 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
         parts.append(_part(cable_part.MODEL, expected, up_to))
     return {
         "frequency_hz": _number(table.extra["frequency_hz"][row, column]),
-        "order": round(order) if abs(order - round(order)) < 1e-6 else None,
+        "order": None if is_data(facts) or abs(order - round(order)) > 1e-6 else round(order),
         "detector": state.entries[entry][1] if state.entries else "",
         "parts": [p for p in parts if isfinite(p.expected_dbuv_per_m)],
     }

@@ -15,7 +15,7 @@ from edgeplan.physics import waveforms
 from edgeplan.physics.edge_factor import null_free_edge_factor
 from edgeplan.physics.radiation import level_dbuv_per_m
 from edgeplan.physics.spectra import corner_frequencies_hz
-from edgeplan.radiated import Passive, source_levels
+from edgeplan.radiated import Passive, edge_levels
 from edgeplan.results import Pictures, Spectrum, Trace
 from edgeplan.scoring import Block
 
@@ -79,13 +79,22 @@ class _Source(NamedTuple):
 
 
 def _source(nets: Nets, state: Candidates, passive: Passive, tolerance: float) -> _Source:
-    """Source levels of one state and its edge factor, fast corner, the faster edge."""
-    tables = [setting_table(nets, "trapezoid_s", "fast", d) for d in ("rising", "falling")]
-    ramp_s = np.fmin(*tables)[0, state.setting[0, 0]] * state.ramp_factor[0, 0]
+    """Source levels of one state, fast corner, and the factor of the edge that makes them."""
+    found = edge_levels(nets, state, passive, tolerance)
+    levels = np.array([by_edge[0, 0] for by_edge in found.values()])
+    ramps_s = [_ramp_s(nets, state, direction) for direction in found]
+    factors = null_free_edge_factor(passive.lines.frequency_hz[0] * np.array(ramps_s)[:, None])
+    stronger = np.argmax(levels, axis=0)[None]
     return _Source(
-        levels=source_levels(nets, state, passive, tolerance)[0, 0],
-        edge=null_free_edge_factor(passive.lines.frequency_hz[0] * ramp_s),
+        levels=np.take_along_axis(levels, stronger, axis=0)[0],
+        edge=np.take_along_axis(factors, stronger, axis=0)[0],
     )
+
+
+def _ramp_s(nets: Nets, state: Candidates, direction: str) -> float:
+    """Ramp of one edge at the fast corner. [s]"""
+    table = setting_table(nets, "trapezoid_s", "fast", direction)
+    return float(table[0, state.setting[0, 0]] * state.ramp_factor[0, 0])
 
 
 def _with_change(spectrum: Spectrum, passive: Passive, drawn: _Source, own: _Source) -> Spectrum:
@@ -150,8 +159,7 @@ def _spectrum(
     """Levels of every judged line against its limit."""
     facts, lines = nets.facts[0], passive.lines
     shown = lines.exists[0] & (passive.over_budget[0] > 0)
-    ramp = setting_table(nets, "trapezoid_s", "fast", "falling")
-    ramp_s = float(ramp[0, state.setting[0, 0]] * state.ramp_factor[0, 0])
+    ramp_s = min(_ramp_s(nets, state, direction) for direction in ("rising", "falling"))
     low, high = corner_frequencies_hz(facts.interface.duty, ramp_s, 1 / lines.toggle_hz[0])
     trace = levels * passive.trace[0]
     expected = levels * passive.cable_expected[0]

@@ -5,7 +5,8 @@ a candidate costs one division and one multiplication per line.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from functools import reduce
 from typing import Any
 
 import numpy as np
@@ -59,13 +60,17 @@ class Passive:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Radiation:
-    """Emission target of a board and its cables; judges candidates."""
+    """Emission target of a board and its cables; judges candidates.
+
+    ``more_cable_db`` is taken off every cable beside what it states. [dB]
+    """
 
     board: Board
     target: Target
     cables: tuple[Cable, ...]
     cable_state: str
     notes: tuple[str, ...] = ()
+    more_cable_db: float = 0.0
 
     def passive(self, nets: Nets) -> Passive:
         """Passive quantities of a block, worked out once.
@@ -183,12 +188,26 @@ def source_levels(nets: Nets, candidates: Candidates, passive: Passive, toleranc
     numpy.ndarray
         Times a passive field per volt it is that field, (N, C, F). [V]
     """
-    found: Array | None = None
-    for direction in _edges(nets):
-        levels = _one_direction(nets, candidates, passive, tolerance, direction)
-        found = levels if found is None else np.maximum(found, levels)
-    assert found is not None  # noqa: S101 - there is always an edge
-    return found
+    found = edge_levels(nets, candidates, passive, tolerance)
+    return reduce(np.maximum, found.values())
+
+
+def edge_levels(
+    nets: Nets, candidates: Candidates, passive: Passive, tolerance: float
+) -> dict[str, Array]:
+    """Volts of source spectrum over D by edge; one edge where rising and falling are alike.
+
+    Parameters
+    ----------
+    nets, candidates, passive, tolerance
+        As for `source_levels`.
+
+    Returns
+    -------
+    dict of str to numpy.ndarray
+        ``rising`` or ``falling`` to (N, C, F). [V]
+    """
+    return {d: _one_direction(nets, candidates, passive, tolerance, d) for d in _edges(nets)}
 
 
 def _edges(nets: Nets) -> Sequence[str]:
@@ -418,14 +437,15 @@ def _network(nets: Nets, frequency_hz: Array) -> Array:
     return terms
 
 
-def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...] | None:
-    """Cables with their attenuation at the judged lines; None where nothing is declared."""
+def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...]:
+    """Cables with their attenuation at the judged lines; assumed ones if nothing is declared."""
+    more_db = radiation.more_cable_db
     if radiation.cable_state == UNKNOWN and not radiation.cables:
-        return None
+        return tuple(replace(c, attenuation_db=more_db) for c in cable_part.UNDECLARED)
     return tuple(
         RadiatingCable(
             length_m=c.length_m,
-            attenuation_db=_attenuation_db(c, frequency_hz),
+            attenuation_db=_attenuation_db(c, frequency_hz) + more_db,
             floating=bool(c.floating),
         )
         for c in radiation.cables

@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from edgeplan import __version__, levels, net_record, pictures_of, unused
+from edgeplan import __version__, emission_at_line, levels, net_record, pictures_of, unused
 from edgeplan.board import Board
 from edgeplan.candidates import Candidates, drawn_ohm
 from edgeplan.caution import CAUTION
@@ -181,27 +181,28 @@ def _judged(draft: Draft) -> list[NetResult]:
         for row, i in enumerate(map(int, block.index)):
             facts = draft.facts[i]
             shown = bool(draft.only) and facts.net.net == draft.only
-            found.append(
-                net_record.write(
-                    net_record.NetDraft(
-                        facts=facts,
-                        board=draft.board,
-                        now=states["now"][row],
-                        after=states["after"][row],
-                        can_pass_now=bool(draft.can_pass[i]),
-                        remedies=tuple(advice.get(i, ())),
-                        settles=sentences[i],
-                        candidates=draft.scores.candidates,
-                        passes=draft.scores.passes,
-                        share=draft.scores.share,
-                        every=every if shown else None,
-                        every_row=row,
-                        row=i,
-                        remarks=tuple(remarks(facts, highest_hz)),
-                        pictures=pictures_of.draw(block, row, draft) if shown else None,
-                    )
+            written = net_record.write(
+                net_record.NetDraft(
+                    facts=facts,
+                    board=draft.board,
+                    now=states["now"][row],
+                    after=states["after"][row],
+                    can_pass_now=bool(draft.can_pass[i]),
+                    remedies=tuple(advice.get(i, ())),
+                    settles=sentences[i],
+                    candidates=draft.scores.candidates,
+                    passes=draft.scores.passes,
+                    share=draft.scores.share,
+                    every=every if shown else None,
+                    every_row=row,
+                    row=i,
+                    remarks=tuple(remarks(facts, highest_hz)),
+                    pictures=pictures_of.draw(block, row, draft) if shown else None,
                 )
             )
+            if shown:
+                written = emission_at_line.added(written, block, row, draft)
+            found.append(written)
     return found
 
 
