@@ -43,11 +43,13 @@ def level(entry: EmissionAtLine) -> str:
         A sentence.
     """
     low, high = entry.low_dbuv_per_m, entry.high_dbuv_per_m
-    band = "" if low is None or high is None else f", {low:.1f} to {high:.1f} with its error"
+    known = low is not None and high is not None
+    band = f", {_decibels(low or 0)} to {_decibels(high or 0)} with its error" if known else ""
     excess = entry.level_dbuv_per_m - entry.budget_dbuv_per_m
     return (
-        f"level {entry.level_dbuv_per_m:.1f} dBµV/m{band}; budget {entry.budget_dbuv_per_m:.1f}, "
-        f"limit {entry.limit_dbuv_per_m:.1f}: {_against_budget(-excess)}"
+        f"level {_decibels(entry.level_dbuv_per_m)} dBµV/m{band}; "
+        f"budget {_decibels(entry.budget_dbuv_per_m)}, limit {_decibels(entry.limit_dbuv_per_m)}: "
+        f"{_against_budget(-excess)}"
     )
 
 
@@ -67,9 +69,9 @@ def mechanisms(entry: EmissionAtLine) -> list[list[str]]:
     return [
         [
             part.mechanism,
-            f"{part.expected_dbuv_per_m:.1f}",
-            f"{part.up_to_dbuv_per_m:.1f}",
-            f"{part.low_dbuv_per_m:.1f} to {part.high_dbuv_per_m:.1f}",
+            _decibels(part.expected_dbuv_per_m),
+            _decibels(part.up_to_dbuv_per_m),
+            f"{_decibels(part.low_dbuv_per_m)} to {_decibels(part.high_dbuv_per_m)}",
             f"{part.power_share * 100:.0f} %",
         ]
         for part in entry.mechanisms
@@ -116,20 +118,30 @@ def _row(change: WhatIf, entry: EmissionAtLine) -> list[str]:
         return [change.text, phrases.UNKNOWN, phrases.UNKNOWN, "not known", ""]
     return [
         change.text,
-        f"{after:.1f}",
-        f"{moved + 0.0:+.1f}",
+        _decibels(after),
+        f"{round(moved, 1):+.1f}" if abs(moved) >= 0.05 else "0.0",
         _against_budget(entry.budget_dbuv_per_m - after),
         _binds(change, entry),
     ]
 
 
+def _decibels(level: float) -> str:
+    """Write a level to a tenth, without a sign before zero.
+
+    >>> _decibels(-0.04), _decibels(-5.46)
+    ('0.0', '-5.5')
+    """
+    return f"{round(level, 1) + 0.0:.1f}"
+
+
 def _against_budget(margin_db: float) -> str:
     """Tell how far a level is from its budget.
 
-    >>> _against_budget(-11.94), _against_budget(0.46)
-    ('over by 11.9', 'under by 0.5')
+    >>> _against_budget(-11.94), _against_budget(0.46), _against_budget(-0.02)
+    ('over by 11.9', 'under by 0.5', 'over by < 0.1')
     """
-    return f"{'over' if margin_db < 0 else 'under'} by {abs(margin_db):.1f}"
+    size = f"{abs(margin_db):.1f}" if abs(margin_db) >= 0.05 else "< 0.1"
+    return f"{'over' if margin_db < 0 else 'under'} by {size}"
 
 
 def _binds(change: WhatIf, entry: EmissionAtLine) -> str:
