@@ -257,7 +257,7 @@ def _aligned(cells: Sequence[Sequence[str]], width: int) -> Iterator[str]:
     """Yield a table whose first column wraps and whose others stand right."""
     safe = [[phrases.inert(cell) for cell in line] for line in cells]
     sizes = [max(map(phrases.display_width, column)) for column in zip(*safe, strict=True)]
-    first = max(20, min(sizes[0], width - sum(sizes[1:]) - 2 * len(sizes)))
+    first = min(sizes[0], max(20, width - sum(sizes[1:]) - 2 * len(sizes)))
     for name, *numbers in safe:
         *above, last = phrases.wrap(name, first)
         yield from (f"  {text}" for text in above)
