@@ -29,8 +29,10 @@ def main() -> None:
         )
     if arguments.draw:
         import full_wave_pictures
+        import model_pictures
 
-        full_wave_pictures.draw_all(Path(__file__).parents[2] / "docs" / "models")
+        for pictures in (full_wave_pictures, model_pictures):
+            pictures.draw_all(Path(__file__).parents[2] / "docs" / "models")
 
 
 if __name__ == "__main__":
