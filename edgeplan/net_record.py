@@ -13,10 +13,12 @@ from edgeplan.candidates import COST_NAMES, Candidates
 from edgeplan.checks import CheckTable, condition_words
 from edgeplan.drives import CORNERS
 from edgeplan.emission import cable as cable_part
+from edgeplan.emission import inner_layer as inner_part
 from edgeplan.emission import trace as trace_part
 from edgeplan.emission.mechanism import Mechanism
 from edgeplan.emission_lines import is_data
 from edgeplan.evaluate import Evaluation
+from edgeplan.net_fields import INNER, kind_of
 from edgeplan.nets import NetFacts
 from edgeplan.physics.radiation import level_dbuv_per_m
 from edgeplan.results import (
@@ -278,9 +280,10 @@ def _emission_extra(
     trace = float(level_dbuv_per_m(table.extra["trace"][row, column]))
     expected = float(level_dbuv_per_m(table.extra["cable_expected"][row, column]))
     up_to = float(level_dbuv_per_m(table.extra["cable_up_to"][row, column]))
-    parts = [_part(trace_part.MODEL, trace, trace)]
+    own = inner_part.MODEL if kind_of(facts) == INNER else trace_part.MODEL
+    parts = [_part("trace", own, trace, trace)]
     if isfinite(expected):
-        parts.append(_part(cable_part.MODEL, expected, up_to))
+        parts.append(_part("cable", cable_part.MODEL, expected, up_to))
     return {
         "frequency_hz": _number(table.extra["frequency_hz"][row, column]),
         "order": None if is_data(facts) or abs(order - round(order)) > 1e-6 else round(order),
@@ -289,11 +292,11 @@ def _emission_extra(
     }
 
 
-def _part(model: Mechanism, expected: float, up_to: float) -> EmissionPart:
-    """One mechanism's levels with its stated error."""
+def _part(mechanism: str, model: Mechanism, expected: float, up_to: float) -> EmissionPart:
+    """One mechanism's levels with the stated error of the model they come from."""
     return EmissionPart(
-        mechanism=model.name,
-        model=model.name,
+        mechanism=mechanism,
+        model=model.name.replace("_", " "),
         expected_dbuv_per_m=expected,
         up_to_dbuv_per_m=up_to,
         error_db=Spread(low=-model.error_db, high=model.error_db),

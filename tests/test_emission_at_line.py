@@ -101,9 +101,9 @@ def explained(folder):
     """Write a board with one net and explain it."""
 
     @cache
-    def explain(cables=FOUR_DB, inner=INNER, facts="", statistic="expected", **cells):
+    def explain(cables=FOUR_DB, inner=INNER, facts="", statistic="expected", tables="", **cells):
         text = BOARD.format(cables=cables, inner=inner, facts=facts, statistic=statistic)
-        (folder / "board.toml").write_text(text, encoding="utf-8")
+        (folder / "board.toml").write_text(text + tables, encoding="utf-8")
         table = io.StringIO()
         writer = csv.DictWriter(table, CLOCK)
         writer.writeheader()
@@ -194,6 +194,13 @@ def test_mechanisms_add_up_in_power_and_carry_their_error(explained):
     for part in entry.mechanisms:
         assert part.low_dbuv_per_m < part.expected_dbuv_per_m < part.high_dbuv_per_m
         assert part.expected_dbuv_per_m <= part.up_to_dbuv_per_m
+
+
+def test_between_planes_the_trace_has_the_wider_error_of_that_model(explained):
+    """docs/models: 1.8 dB for a trace on the surface, 3.4 dB for one on an inner layer."""
+    surface, inner = (emission_of(explained(layer=layer)).parts[0] for layer in ("L1", "L3"))
+    assert (surface.mechanism, surface.model, surface.error_db.high) == ("trace", "trace", 1.8)
+    assert (inner.mechanism, inner.model, inner.error_db.high) == ("trace", "inner layer", 3.4)
 
 
 def test_a_filter_step_is_the_board_with_that_attenuation_in_its_file(explained):
@@ -389,3 +396,34 @@ def test_it_is_printed_within_100_columns_and_in_markdown(explained):
     markdown = render(results, "markdown")
     for change in now(results).what_if:
         assert f"{change.text} |" in markdown
+
+
+UNEQUAL = """
+[[driver]]
+name = "unequal"
+programmable = true
+settings = [
+  {setting = "QUICK", resistance_up = {min = "300 ohm", typ = "300 ohm", max = "300 ohm"}, resistance_down = {min = "10 ohm", typ = "10 ohm", max = "10 ohm"}, edge_up = {min = "0.5 ns", typ = "0.5 ns", max = "0.5 ns"}, edge_down = {min = "1 ns", typ = "1 ns", max = "1 ns"}},
+  {setting = "CALM", resistance_up = {min = "300 ohm", typ = "300 ohm", max = "300 ohm"}, resistance_down = {min = "10 ohm", typ = "10 ohm", max = "10 ohm"}, edge_up = {min = "0.5 ns", typ = "0.5 ns", max = "0.5 ns"}, edge_down = {min = "2 ns", typ = "2 ns", max = "2 ns"}},
+]
+"""  # noqa: E501 - tables of one line each
+
+
+def test_a_change_is_split_by_the_edge_that_makes_the_line(explained):
+    """The strong falling edge rules low lines, though the weak rising one is the faster.
+
+    Both settings have one resistance, so all of the change is the edge's: the ratio of
+    |sin(x)/x| at x = pi f tr, below its first null, with tr the edge over 0.8.
+    """
+    results = explained(tables=UNEQUAL, driver="unequal", setting="QUICK", resistor_ohm="47")
+    net = results.nets[0]
+    assert net.proposal_text.startswith("setting CALM")
+    after = next(s for s in net.pictures.spectra if s.state == "after")
+    low = np.array(after.frequency_hz) < 250e6
+    frequency_hz = np.array(after.frequency_hz)[low]
+    slow, quick = (np.sinc(frequency_hz * edge_s / 0.8) for edge_s in (2e-9, 1e-9))
+    edge, current = (
+        np.array(column)[low] for column in (after.change_by_edge_db, after.change_by_current_db)
+    )
+    np.testing.assert_allclose(edge, 20 * np.log10(slow / quick), atol=0.02)
+    np.testing.assert_allclose(current, 0.0, atol=2e-3)
