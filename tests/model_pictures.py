@@ -8,8 +8,8 @@ import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from numpy.typing import NDArray
+from routed_models import ROUTES_MM, model_errors_db
 from static_planes import leakage_by_field
-from test_routed_full_wave import ROUTES_MM, model_errors_db
 
 from edgeplan.physics import cross_section, quasi_peak, stripline_leakage
 from edgeplan.physics.detectors import BANDS
