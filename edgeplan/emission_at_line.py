@@ -7,6 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from edgeplan.draft import Draft
+from edgeplan.radiated import UNKNOWN
 from edgeplan.results import Check, EmissionAtLine, MechanismAtLine, NetResult, WhatIf
 from edgeplan.scoring import Block
 from edgeplan.single_changes import Case, Change, Levels, case_of, changes_of, levels_of
@@ -75,7 +76,7 @@ def _at_line(net: NetResult, case: Case, when: When, wish: Change | None) -> Emi
         high_dbuv_per_m=None if check.error is None else level + check.error.high,
         mechanisms=_mechanisms(check, worst_case=target.statistic == "worst-case"),
         what_if=[_what_if(change, levels, line) for change in changes],
-        notes=[*_early(case, check), *notes],
+        notes=[*_early(case, check), *_assumed_filter(case), *notes],
     )
 
 
@@ -92,6 +93,15 @@ def _early(case: Case, check: Check) -> list[str]:
         return []
     setting = case.facts.settings[case.facts.setting_boot].setting
     return [f"before firmware runs the setting is {setting}, whatever is chosen for later"]
+
+
+def _assumed_filter(case: Case) -> list[str]:
+    """Tell with which filter a net is shown where nothing is declared about cables."""
+    if case.radiation.cable_state != UNKNOWN:
+        return []
+    if case.with_filter:
+        return ["no filter is declared: shown with a good one on all cables, over budget even so"]
+    return ["no filter is declared: shown without any on the cables"]
 
 
 def _parity(order: int | None) -> Parity:

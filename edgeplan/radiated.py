@@ -254,7 +254,7 @@ def _table(
     """The check table of the worst line of every candidate."""
     over, line = worst
     rows = np.arange(len(nets))[:, None]
-    open_cables = np.zeros(over.shape, dtype=bool)
+    settled = open_cables = np.zeros(over.shape, dtype=bool)
     if filtered is not None:
         settled = filtered[0] > 1
         open_cables = (over > 1) & ~settled
@@ -269,6 +269,9 @@ def _table(
         name: at_line * getattr(passive, name)[rows, line]
         for name in ("trace", "cable_expected", "cable_up_to")
     }
+    filter_db = cable_part.undeclared_filter_db(passive.lines.frequency_hz[rows, line])
+    credit = np.where(settled, 10 ** (-filter_db / 20), 1.0)  # judged with the filter: shown so
+    parts |= {name: parts[name] * credit for name in ("cable_expected", "cable_up_to")}
     error = _error_db(parts["trace"], parts["cable_expected"])
     because, missing = _reasons(nets, passive, open_cables, levels)
     return CheckTable(

@@ -240,18 +240,36 @@ def test_where_the_trace_alone_is_over_no_filter_is_called_enough(explained):
     assert any(f"the trace alone is {over:.1f} dB over" in note for note in entry.notes)
 
 
+def two_cables(attenuation):
+    """Declare what is assumed where nothing is said: two cables of 1.5 m."""
+    row = f'length = "1.5 m", attenuation = {attenuation}'
+    return f'cable = [{{name = "a", {row}}}, {{name = "b", {row}}}]'
+
+
 def test_undeclared_cables_take_a_filter_as_two_declared_ones_would(explained):
-    """Where nothing is said, two cables of 1.5 m are assumed."""
-    entry = now(explained(cables=""))
-    two = ", ".join(
-        f'{{name = "{name}", length = "1.5 m", attenuation = "3 dB"}}' for name in ("a", "b")
-    )
-    three = next(c for c in of_kind(entry, "cable filter") if c.text.startswith("3 dB"))
-    again = explained(cables=f"cable = [{two}]")
-    if entry.low_dbuv_per_m is None:  # undecided: shown without the filter that was assumed
-        assert_same(three, again, entry)
-    else:  # over budget with the assumed filter, which gives 10 dB to 300 MHz
-        assert three.change_db <= 0
+    entry = now(explained(cables="", setting="WEAK"))
+    assert entry.low_dbuv_per_m is None  # undecided
+    assert "no filter is declared: shown without any on the cables" in entry.notes
+    steps = of_kind(entry, "cable filter")
+    assert len(steps) >= 4
+    for change in steps:
+        more = f'"{change.text.split()[0]} dB"'
+        assert_same(change, explained(cables=two_cables(more), setting="WEAK"), entry)
+
+
+def test_what_is_over_even_with_the_assumed_filter_is_shown_with_it(explained):
+    """10 dB to 300 MHz, 6 dB at 450 MHz, 3 dB at 1 GHz (docs/explanation/emission_policy.md)."""
+    results = explained(cables="")
+    entry = now(results)
+    table = '[["30 MHz", "10 dB"], ["300 MHz", "10 dB"], ["450 MHz", "6 dB"], ["1 GHz", "3 dB"]]'
+    again = now(explained(cables=two_cables(table)))
+    assert results.nets[0].verdict != "undecided"
+    assert entry.frequency_hz == again.frequency_hz
+    assert entry.level_dbuv_per_m == pytest.approx(again.level_dbuv_per_m, abs=1e-3)
+    for own, declared in zip(entry.mechanisms, again.mechanisms, strict=True):
+        assert own.expected_dbuv_per_m == pytest.approx(declared.expected_dbuv_per_m, abs=1e-3)
+        assert own.power_share == pytest.approx(declared.power_share, abs=1e-4)
+    assert any("with a good one on all cables" in note for note in entry.notes)
 
 
 def test_a_board_without_cables_has_none_to_filter(explained):
