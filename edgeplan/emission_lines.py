@@ -46,6 +46,11 @@ class EmissionLines:
         """Frequency of the clock that sets each net's envelope. (N,) [Hz]"""
         return self.activity.toggle_hz
 
+    @property
+    def number(self) -> Array:
+        """Order of lines that stand by themselves, NaN for the in-band power of data. (N, F)"""
+        return np.where(self.activity.is_data[:, None] & ~self.discrete, np.nan, self.order)
+
     def detector_db(self, detector: Detector, bandwidth_hz: Array, limit_id: str = "") -> Array:
         """What a detector reads over the envelope: data, slow and spread clocks, bursts. (N, F)
 

@@ -13,10 +13,12 @@ from edgeplan.candidates import COST_NAMES, Candidates
 from edgeplan.checks import CheckTable, condition_words
 from edgeplan.drives import CORNERS
 from edgeplan.emission import cable as cable_part
+from edgeplan.emission import inner_layer as inner_part
 from edgeplan.emission import trace as trace_part
 from edgeplan.emission.measured_transfer import MODEL as MEASURED_MODEL
 from edgeplan.emission.mechanism import Mechanism
 from edgeplan.evaluate import Evaluation
+from edgeplan.net_fields import INNER, kind_of
 from edgeplan.nets import NetFacts
 from edgeplan.physics.radiation import level_dbuv_per_m
 from edgeplan.results import (
@@ -233,7 +235,7 @@ def _check(
     pins = facts.net.receiver_pin
     place = pins[receiver] if receiver < len(pins) else ""
     is_emission = table.check == "emission"
-    extra = _emission_extra(table, row, column, state) if is_emission else {}
+    extra = _emission_extra(table, row, column, state, facts) if is_emission else {}
     if is_emission and decided:
         beyond = state.out_of_reach_hz
         extra["out_of_reach_hz"] = list(beyond)
@@ -268,8 +270,10 @@ def _check(
     )
 
 
-def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -> dict[str, Any]:
-    """Frequency, harmonic number, detector and parts of an emission level."""
+def _emission_extra(
+    table: CheckTable, row: int, column: int, state: NetState, facts: NetFacts
+) -> dict[str, Any]:
+    """Frequency, harmonic number (data have none), detector and parts of an emission level."""
     if not table.decided[row, column] and not isfinite(table.extra["trace"][row, column]):
         return {}
     order = float(table.extra["order"][row, column])
@@ -277,28 +281,36 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
     trace = float(level_dbuv_per_m(table.extra["trace"][row, column]))
     expected = float(level_dbuv_per_m(table.extra["cable_expected"][row, column]))
     up_to = float(level_dbuv_per_m(table.extra["cable_up_to"][row, column]))
-    cable_error_db = float(table.extra["cable_error_db"][row, column])
-    trace_error_db = float(table.extra["trace_error_db"][row, column])
-    measured = state.measured
-    parts = [_part(trace_part.MODEL, trace, trace, trace_error_db, measured.get("trace"))]
+    own = inner_part.MODEL if kind_of(facts) == INNER else trace_part.MODEL
+    measured, errors = (
+        state.measured,
+        {name: float(table.extra[f"{name}_error_db"][row, column]) for name in ("trace", "cable")},
+    )
+    parts = [_part("trace", own, (trace, trace), errors, measured)]
     if isfinite(expected):
-        cable = _part(cable_part.MODEL, expected, up_to, cable_error_db, measured.get("cable"))
-        parts.append(cable)
+        parts.append(_part("cable", cable_part.MODEL, (expected, up_to), errors, measured))
     return {
         "frequency_hz": _number(table.extra["frequency_hz"][row, column]),
-        "order": round(order) if abs(order - round(order)) < 1e-6 else None,
+        "order": round(order) if abs(order - np.round(order)) < 1e-6 else None,
         "detector": state.entries[entry][1] if state.entries else "",
         "parts": [p for p in parts if isfinite(p.expected_dbuv_per_m)],
     }
 
 
 def _part(
-    model: Mechanism, expected: float, up_to: float, error_db: float, measured: Transfer | None
+    mechanism: str,
+    model: Mechanism,
+    levels: tuple[float, float],
+    errors_db: dict[str, float],
+    measured: dict[str, Transfer],
 ) -> EmissionPart:
     """One mechanism's levels with the stated error of its model there, or of what was measured."""
+    model = MEASURED_MODEL if mechanism in measured else model
+    expected, up_to = levels
+    error_db = errors_db[mechanism]
     return EmissionPart(
-        mechanism=model.name,
-        model=model.name if measured is None else MEASURED_MODEL.name.replace("_", " "),
+        mechanism=mechanism,
+        model=model.name.replace("_", " "),
         expected_dbuv_per_m=expected,
         up_to_dbuv_per_m=up_to,
         error_db=Spread(low=-error_db, high=error_db),

@@ -71,6 +71,12 @@ def draw(block: Block, row: int, draft: Draft) -> Pictures:
     return Pictures(waveforms=traces, spectra=spectra, thresholds_v=thresholds)
 
 
+def _ramp_s(nets: Nets, state: Candidates, direction: str) -> float:
+    """Ramp of one edge at the fast corner. [s]"""
+    table = setting_table(nets, "trapezoid_s", "fast", direction)
+    return float(table[0, state.setting[0, 0]] * state.ramp_factor[0, 0])
+
+
 class _Source(NamedTuple):
     """Volts over D of one state at every line, and the share of its edge in them. (F,)"""
 
@@ -148,8 +154,7 @@ def _spectrum(
     """Levels of every judged line against its limit."""
     facts, lines = nets.facts[0], passive.lines
     shown = lines.exists[0] & (passive.over_budget[0] > 0)
-    ramp = setting_table(nets, "trapezoid_s", "fast", "falling")
-    ramp_s = float(ramp[0, state.setting[0, 0]] * state.ramp_factor[0, 0])
+    ramp_s = min(_ramp_s(nets, state, direction) for direction in ("rising", "falling"))
     low, high = corner_frequencies_hz(facts.interface.duty, ramp_s, 1 / lines.toggle_hz[0])
     trace = levels * passive.trace[0]
     expected = levels * passive.cable_expected[0]

@@ -5,7 +5,7 @@ a candidate costs one division and one multiplication per line.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -65,13 +65,17 @@ class Passive:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Radiation:
-    """Emission target of a board and its cables; judges candidates."""
+    """Emission target of a board and its cables; judges candidates.
+
+    ``more_cable_db`` is taken off every cable beside what it states. [dB]
+    """
 
     board: Board
     target: Target
     cables: tuple[Cable, ...]
     cable_state: str
     notes: tuple[str, ...] = ()
+    more_cable_db: float = 0.0
 
     @property
     def cable_count(self) -> int | None:
@@ -263,7 +267,7 @@ def _table(
     """The check table of the worst line of every candidate."""
     over, line = worst
     rows = np.arange(len(nets))[:, None]
-    open_cables = np.zeros(over.shape, dtype=bool)
+    settled = open_cables = np.zeros(over.shape, dtype=bool)
     if filtered is not None:
         settled = filtered[0] > 1
         open_cables = (over > 1) & ~settled
@@ -278,6 +282,9 @@ def _table(
         name: at_line * getattr(passive, name)[rows, line]
         for name in ("trace", "cable_expected", "cable_up_to")
     }
+    filter_db = cable_part.undeclared_filter_db(passive.lines.frequency_hz[rows, line])
+    credit = np.where(settled, 10 ** (-filter_db / 20), 1.0)  # judged with the filter: shown so
+    parts |= {name: parts[name] * credit for name in ("cable_expected", "cable_up_to")}
     errors = {
         "trace_error_db": np.full(over.shape, trace_part.MODEL.error_db),
         "cable_error_db": passive.cable_error_db[rows, line],
@@ -302,7 +309,7 @@ def _table(
         error_high=error,
         extra={
             "frequency_hz": passive.lines.frequency_hz[rows, line],
-            "order": passive.lines.order[rows, line],
+            "order": passive.lines.number[rows, line],
             "entry": passive.entry[rows, line],
             **errors,
             **parts,
@@ -469,14 +476,15 @@ def _network(nets: Nets, frequency_hz: Array) -> Array:
     return terms
 
 
-def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...] | None:
-    """Cables with their attenuation at the judged lines; None where nothing is declared."""
+def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...]:
+    """Cables with their attenuation at the judged lines; assumed ones if nothing is declared."""
+    more_db = radiation.more_cable_db
     if radiation.cable_count is None:
-        return None
+        return tuple(replace(c, attenuation_db=more_db) for c in cable_part.UNDECLARED)
     return tuple(
         RadiatingCable(
             length_m=c.length_m,
-            attenuation_db=_attenuation_db(c, frequency_hz),
+            attenuation_db=_attenuation_db(c, frequency_hz) + more_db,
             floating=bool(c.floating),
         )
         for c in radiation.cables

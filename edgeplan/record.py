@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from edgeplan import (
     __version__,
     activity_remarks,
+    emission_at_line,
     levels,
     net_record,
     pictures_of,
@@ -218,31 +219,32 @@ def _judged(draft: Draft, planes: dict[str, list[PlaneFinding]]) -> list[NetResu
         for row, i in enumerate(map(int, block.index)):
             facts = draft.facts[i]
             shown = bool(draft.only) and facts.net.net == draft.only
-            found.append(
-                net_record.write(
-                    net_record.NetDraft(
-                        facts=facts,
-                        board=draft.board,
-                        now=states["now"][row],
-                        after=states["after"][row],
-                        can_pass_now=bool(draft.can_pass[i]),
-                        remedies=tuple(advice.get(i, ())),
-                        settles=sentences[i],
-                        candidates=draft.scores.candidates,
-                        passes=draft.scores.passes,
-                        share=draft.scores.share,
-                        every=every if shown else None,
-                        every_row=row,
-                        row=i,
-                        remarks=(
-                            *remarks(facts),
-                            *(f.text for f in planes.get(facts.net.net, ())),
-                            *activity_remarks.remarks(facts, target),
-                        ),
-                        pictures=pictures_of.draw(block, row, draft) if shown else None,
-                    )
+            written = net_record.write(
+                net_record.NetDraft(
+                    facts=facts,
+                    board=draft.board,
+                    now=states["now"][row],
+                    after=states["after"][row],
+                    can_pass_now=bool(draft.can_pass[i]),
+                    remedies=tuple(advice.get(i, ())),
+                    settles=sentences[i],
+                    candidates=draft.scores.candidates,
+                    passes=draft.scores.passes,
+                    share=draft.scores.share,
+                    every=every if shown else None,
+                    every_row=row,
+                    row=i,
+                    remarks=(
+                        *remarks(facts),
+                        *(f.text for f in planes.get(facts.net.net, ())),
+                        *activity_remarks.remarks(facts, target),
+                    ),
+                    pictures=pictures_of.draw(block, row, draft) if shown else None,
                 )
             )
+            if shown:
+                written = emission_at_line.added(written, block, row, draft)
+            found.append(written)
     return found
 
 

@@ -33,8 +33,10 @@ def main() -> None:
         print("{:12} {:13.1f} {:5.1f} {:13.1f} {:5.1f}".format(name, *shares))
     if arguments.draw:
         import full_wave_pictures
+        import model_pictures
 
-        full_wave_pictures.draw_all(Path(__file__).parents[2] / "docs" / "models")
+        for pictures in (full_wave_pictures, model_pictures):
+            pictures.draw_all(Path(__file__).parents[2] / "docs" / "models")
 
 
 if __name__ == "__main__":
