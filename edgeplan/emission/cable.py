@@ -134,7 +134,7 @@ def error_db(frequency_hz: ArrayLike, cables: int | None) -> Array:
 def _level(frequency_hz: Array, cables: int | None, column: int) -> Array:
     """A column of the table for that many cables, its ends held."""
     rows = np.array(ONE_CABLE_LEVELS if cables == 1 else SEVERAL_CABLES_LEVELS)
-    return np.interp(np.log(frequency_hz), np.log(rows[:, 0]), rows[:, column])
+    return np.asarray(np.interp(np.log(frequency_hz), np.log(rows[:, 0]), rows[:, column]))
 
 
 def _one_cable(paths: RadiationInputs, frequency_hz: Array) -> Array:
