@@ -184,6 +184,7 @@ class ModelFile:
     """A whole file; what could not be read is left out."""
 
     file: str
+    sha256: str = ""
     version: str = ""
     components: tuple[Component, ...] = ()
     selectors: Mapping[str, Selector] = field(default_factory=dict)

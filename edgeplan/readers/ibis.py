@@ -1,15 +1,17 @@
 """Files of I/O buffer models (IBIS, EIA-656), text of versions 1.1 to 7: records and remarks."""
 
+import hashlib
 import re
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 from itertools import chain
 from math import isnan, nan
+from pathlib import Path
 
-from edgeplan.errors import Problem
+from edgeplan.errors import InputError, Problem
 from edgeplan.ibis import NO_MODEL, Component, Model, ModelFile, Pin, Selector, Triple
 from edgeplan.readers import ibis_lines, ibis_models
-from edgeplan.readers.files import Where
+from edgeplan.readers.files import Folder, Where
 from edgeplan.readers.ibis_lines import Line, Section
 from edgeplan.readers.ibis_models import ModelReader
 from edgeplan.readers.ibis_values import BadValueError, joined, named, number, triple
@@ -63,10 +65,6 @@ class Reading:
     models: ModelFile
     errors: list[Problem] = field(default_factory=list)
     notes: list[Problem] = field(default_factory=list)
-
-    def told_of(self, first: int, last: int) -> list[Problem]:
-        """Errors and notes of a span of rows."""
-        return [p for p in (*self.errors, *self.notes) if first <= p.row <= last]
 
 
 class _Told:
@@ -126,11 +124,40 @@ def read(content: bytes, file: str) -> Reading:
         return Reading(ModelFile(file=file), told.errors)
     text = content.decode("latin-1")
     found = ibis_lines.sections(text, KNOWN, told.note)
-    builder = _Builder(file, told)
+    builder = _Builder(file, hashlib.sha256(content).hexdigest(), told)
     for group in _groups(found):
         builder.take(group)
     builder.check(found)
     return Reading(builder.file(), told.errors, told.notes)
+
+
+def read_file(path: Path) -> Reading:
+    """Read a model file from disk.
+
+    Parameters
+    ----------
+    path : Path
+        Of the file.
+
+    Returns
+    -------
+    Reading
+        See `read`.
+
+    Raises
+    ------
+    InputError
+        If it cannot be read, or nothing in it can.
+    """
+    place = path.resolve()
+    folder = Folder(place.parent)
+    content = folder.read(place.name)
+    if content is None:
+        raise InputError(folder.problems)
+    reading = read(content, path.name)
+    if not reading.models.models:
+        raise InputError(reading.errors or [Where(path.name).problem("the file has no [Model]")])
+    return reading
 
 
 def _groups(found: list[Section]) -> Iterator[list[Section]]:
@@ -148,8 +175,9 @@ def _groups(found: list[Section]) -> Iterator[list[Section]]:
 class _Builder:
     """Puts the records of a file together."""
 
-    def __init__(self, file: str, told: _Told) -> None:
+    def __init__(self, file: str, sha256: str, told: _Told) -> None:
         self.name = file
+        self.sha256 = sha256
         self.told = told
         self.version = ""
         self.components: list[Component] = []
@@ -162,6 +190,7 @@ class _Builder:
         """Return the record of the file."""
         return ModelFile(
             file=self.name,
+            sha256=self.sha256,
             version=self.version,
             components=tuple(self.components),
             selectors=self.selectors,
