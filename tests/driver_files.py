@@ -9,6 +9,72 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.integrate import solve_ivp
 
+# One component with everything that is read; a resistor of 25 ohm up and 20 ohm down.
+REGULAR = """\
+[IBIS Ver]     3.2
+[File Name]    qx1.ibs
+[Component]    QX-1
+[Manufacturer] invented
+[Package]
+R_pkg  50m    40m    60m
+L_pkg  2.0nH  1.0nH  3.0nH
+C_pkg  0.5pF  0.4pF  0.6pF
+[Pin]  signal_name  model_name  R_pin  L_pin  C_pin
+A1     DQ0          dq          60m    2.2nH  0.7pF
+A2     DQ1          dq          NA     NA     NA
+A3     CLK          in
+A4     VDD          POWER
+[Model Selector] dq
+full   all of it
+half   one half of it
+[Model] full
+Model_type  I/O
+Polarity    Non-Inverting
+Enable      Active-Low
+Vinl = 0.8V
+Vinh = 2.0V
+Vmeas = 1.5V
+Cref = 30pF
+C_comp  5.0pF  4.0pF  6.0pF
+[Temperature Range]  25  85  0
+[Voltage Range]  3.3V  3.0V  3.6V
+[Pulldown]
+-3.3  -165mA  -132mA  -206mA
+ 0.0    0mA     0mA     0mA
+ 6.6   330mA   264mA   412mA
+[Pullup]
+-3.3   132mA   110mA   165mA
+ 0.0    0mA     0mA     0mA
+ 6.6  -264mA  -220mA  -330mA
+[GND Clamp]
+-3.3  -1mA  NA  NA
+ 0.0   0    NA  NA
+[POWER Clamp]
+-3.3   1mA  NA  NA
+ 0.0   0    NA  NA
+[Ramp]
+dV/dt_r  1.32/0.60n  1.12/0.90n  1.54/0.40n
+dV/dt_f  1.41/0.50n  1.24/0.80n  1.57/0.35n
+R_load = 50
+[Rising Waveform]
+R_fixture = 50
+V_fixture = 0.0
+0.0n  0.0  0.0  0.0
+1.0n  2.2  1.8  2.5
+9.0n  2.2  1.8  2.5
+[Falling Waveform]
+R_fixture = 50
+V_fixture = 3.3
+V_fixture_min = 3.0
+V_fixture_max = 3.6
+0.0n  3.3  3.0  3.6
+1.0n  0.9  0.9  0.9
+9.0n  0.9  0.9  0.9
+[Model] in
+Model_type Input
+C_comp 3pF 2pF 4pF
+[End]
+"""
 COLUMNS = ("typ", "min", "max")
 
 

@@ -14,6 +14,7 @@ RAISED_COSINE_SHARE = {"10-90": 0.590334, "20-80": 0.409666}
 # Below this multiple of what the capacitance alone would show, nothing can be said of the source:
 # the rule for oscilloscopes, whose own rise is taken off in the same way (common practice).
 LEAST_RATIO = 1.2
+LEAST_SWING_V = 1e-6  # less is no transition
 _BISECTIONS = 60
 
 
@@ -56,7 +57,7 @@ def read_transition(time_s: ArrayLike, volt: ArrayLike) -> Crossings:
     """
     time, value = np.asarray(time_s, dtype=float), np.asarray(volt, dtype=float)
     first, last = float(value[0]), float(value[-1])
-    if first == last:
+    if abs(last - first) < LEAST_SWING_V:
         return Crossings(np.nan, np.nan, first, last, settled=True)
     share = (value - first) / (last - first)
     durations = [_duration(time, share, *LEVELS[levels]) for levels in ("10-90", "20-80")]
