@@ -13,6 +13,9 @@ from edgeplan.physics.driver_edges import (
 )
 from edgeplan.physics.driver_tables import Curve, curve_at_pin, load_line_ohm, settled_v
 
+CLAMPS = ("power clamp", "gnd clamp")
+FROM_ABOVE = ("pullup", "power clamp")
+BEYOND_TABLE_V = 1000.0
 NEAR_LOAD = 2.0  # a load within this factor of the impedance says the same of an edge
 SAME_LOAD = 1.25  # loads within this factor may be compared
 NEAR_RAIL = 0.1  # of the supply
@@ -52,7 +55,7 @@ class Corner:
         """
         curves, stated = {}, {}
         for high, drive in ((True, "pullup"), (False, "pulldown")):
-            names = [n for n in (drive, "power clamp", "gnd clamp") if n in model.tables]
+            names = [n for n in (drive, *CLAMPS) if n in model.tables]
             curves[high] = tuple(_curve(model, name, column) for name in names)
             stated[high] = drive in model.tables and model.tables[drive].has(column)
         low, high_v = (getattr(model.reference_v[t], column) for t in ("pulldown", "pullup"))
@@ -116,10 +119,16 @@ class _Reading:
 
 
 def _curve(model: Model, name: str, column: str) -> Curve:
-    """Return one table of a model over the voltage of the pin."""
+    """Return one table of a model over the voltage of the pin.
+
+    A clamp is off beyond the end of its table, which may be the supply itself: its last current
+    stays. The slope of its last rows would go on as a resistor that is not there.
+    """
     reference = getattr(model.reference_v[name], column)
-    from_above = name in ("pullup", "power clamp")
-    return curve_at_pin(*model.tables[name].column(column), reference, from_above=from_above)
+    at, current = model.tables[name].column(column)
+    if name in CLAMPS:
+        at, current = (*at, at[-1] + BEYOND_TABLE_V), (*current, current[-1])
+    return curve_at_pin(at, current, reference, from_above=name in FROM_ABOVE)
 
 
 def side(model: Model, corners: Mapping[str, Corner], impedance_ohm: float, *, high: bool) -> Side:

@@ -9,7 +9,8 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.integrate import solve_ivp
 
-# One component with everything that is read; a resistor of 25 ohm up and 20 ohm down.
+# One component with everything that is read: resistors of 25 ohm up and 20 ohm down, straight
+# ramps of 1 ns into 50 ohm.
 REGULAR = """\
 [IBIS Ver]     3.2
 [File Name]    qx1.ibs
@@ -53,23 +54,23 @@ C_comp  5.0pF  4.0pF  6.0pF
 -3.3   1mA  NA  NA
  0.0   0    NA  NA
 [Ramp]
-dV/dt_r  1.32/0.60n  1.12/0.90n  1.54/0.40n
-dV/dt_f  1.41/0.50n  1.24/0.80n  1.57/0.35n
+dV/dt_r  1.32/0.60n  1.12/0.61n  1.54/0.59n
+dV/dt_f  1.41/0.60n  1.20/0.61n  1.64/0.59n
 R_load = 50
 [Rising Waveform]
 R_fixture = 50
 V_fixture = 0.0
 0.0n  0.0  0.0  0.0
-1.0n  2.2  1.8  2.5
-9.0n  2.2  1.8  2.5
+1.0n  2.2  1.88 2.57
+9.0n  2.2  1.88 2.57
 [Falling Waveform]
 R_fixture = 50
 V_fixture = 3.3
 V_fixture_min = 3.0
 V_fixture_max = 3.6
 0.0n  3.3  3.0  3.6
-1.0n  0.9  0.9  0.9
-9.0n  0.9  0.9  0.9
+1.0n  0.94 1.0  0.87
+9.0n  0.94 1.0  0.87
 [Model] in
 Model_type Input
 C_comp 3pF 2pF 4pF

@@ -26,6 +26,7 @@ BESIDE = {
     "external model": "its external model is left out",
     "algorithmic model": "its algorithmic model is left out",
 }
+LOADS_OHM = (0.1, 1e6)  # of a fixture; anything else is a slip of the pen
 DEFAULT_LOAD_OHM = 50.0  # of [Ramp] without R_load (EIA-656)
 
 
@@ -158,8 +159,9 @@ class ModelReader:
                 rows.append(line)
         found = ibis_tables.read(rows, ("s", "V"), section.row, self.note, self.error)
         ohm, volt = stated.get("r_fixture", nan), stated.get("v_fixture", nan)
-        if not ohm > 0 or isnan(volt):
-            self.error(section.row, "the waveform needs R_fixture above 0 and V_fixture", "")
+        if not LOADS_OHM[0] <= ohm <= LOADS_OHM[1] or isnan(volt):
+            hint = "R_fixture lies between 0.1 ohm and 1 Mohm"
+            self.error(section.row, "the waveform needs R_fixture and V_fixture", hint)
         elif found is not None:
             self.found.waveforms.append(
                 Waveform(
@@ -187,7 +189,7 @@ class ModelReader:
                 value = self._triple(entry.words, "ohm", line.row)
                 load = value.typ if value is not None else load
         (rise_v, rise_s), (fall_v, fall_s) = edges.values()
-        if not load > 0:
+        if not LOADS_OHM[0] <= load <= LOADS_OHM[1]:
             self.error(section.row, f"R_load of {load:g} ohm is no load", "")
         self.found.ramp = Ramp(
             rise_v=rise_v,

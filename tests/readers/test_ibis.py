@@ -70,12 +70,12 @@ def test_a_model_has_its_values_and_line(regular):
     assert full.capacitance_f == Triple(5e-12, 4e-12, 6e-12)
     assert (full.input_low_v.typ, full.input_high_v.typ) == (0.8, 2.0)
     assert full.ramp.rise_v == Triple(1.32, 1.12, 1.54)
-    assert full.ramp.fall_s == Triple(0.5e-9, 0.8e-9, 0.35e-9)
+    assert full.ramp.fall_s == Triple(0.6e-9, 0.61e-9, 0.59e-9)
     assert full.ramp.load_ohm == 50.0
     rising, falling = full.waveforms
     assert (rising.rising, falling.rising) == (True, False)
     assert falling.voltage_v == Triple(3.3, 3.0, 3.6)
-    assert rising.rows.min == (0.0, 1.8, 1.8)
+    assert rising.rows.min == (0.0, 1.88, 1.88)
 
 
 def test_references_default_to_the_supply_and_ground(regular):
@@ -276,8 +276,8 @@ FAULTS = [
     ("dV/dt_r  1.32/0.60n", "dV/dt_r  1.32", 43, "a slope is written volts/seconds"),
     ("dV/dt_r  1.32/0.60n", "dV/dt_r  -1.32/0.60n", 43, "above 0"),
     ("R_load = 50", "R_load = 0", 42, "R_load of 0 ohm is no load"),
-    ("R_fixture = 50\nV_fixture = 0.0", "V_fixture = 0.0", 46, "needs R_fixture above 0"),
-    ("0.0n  0.0  0.0  0.0\n1.0n  2.2  1.8  2.5\n9.0n  2.2  1.8  2.5", "", 46, "no rows"),
+    ("R_fixture = 50\nV_fixture = 0.0", "V_fixture = 0.0", 46, "needs R_fixture and V_fixture"),
+    ("0.0n  0.0  0.0  0.0\n1.0n  2.2  1.88 2.57\n9.0n  2.2  1.88 2.57", "", 46, "no rows"),
 ]
 
 
