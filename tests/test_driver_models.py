@@ -258,8 +258,8 @@ def test_an_open_drain_drives_one_side_and_says_it_as_both():
         ("R_pkg  50m    40m    60m", "R_pkg  50 40 60", "R_pkg of component QX-1"),
         (" 6.6   330mA   264mA   412mA", " 0.2 10mA 8mA 12.5mA", "a table ends before"),
         (
-            "1.0n  2.2  1.8  2.5\n9.0n  2.2",
-            "1.0n  2.0  1.8  2.5\n9.0n  2.0",
+            "1.0n  2.2  1.88 2.57\n9.0n  2.2",
+            "1.0n 2.0 1.9 2.6\n9.0n 2.0",
             "its load line at 2.2",
         ),
         ("9.0n  2.2  1.88 2.57\n", "", "has not settled"),

@@ -164,7 +164,7 @@ def _limits(folder: Folder, document: toml.Document) -> list[Any]:
 
 def _models(folder: Folder, document: toml.Document, nets: netlist.NetList | None) -> Filled:
     """Fill drivers and inputs from their model files."""
-    drivers = _parts(Driver, document, "driver")
+    drivers = {**_bare_drivers(document), **_parts(Driver, document, "driver")}
     filled = ModelFiles(folder, document).fill(drivers, _parts(Receiver, document, "receiver"))
     interfaces = _parts(Interface, document, "interface").values()
     entries = nets.entries.values() if nets else ()
@@ -175,6 +175,22 @@ def _models(folder: Folder, document: toml.Document, nets: netlist.NetList | Non
     ]
     folder.problems += models.supply_problems(document, filled, interfaces, uses)
     return filled
+
+
+def _bare_drivers(document: toml.Document) -> dict[int, Any]:
+    """Return drivers with their models alone, so that a fault beside a model does not hide it."""
+    found = {}
+    for path, value in references.found(document.data, ("driver", EACH)):
+        named = references.found(value, ("settings", EACH))
+        bare = [_only(s, "setting", "model") for _, s in named if isinstance(s, dict)]
+        if isinstance(value, dict) and "ibis" in value:
+            found[int(path[-1])] = _part(Driver, {**_only(value, "name", "ibis"), "settings": bare})
+    return {index: driver for index, driver in found.items() if driver is not None}
+
+
+def _only(table: dict[str, Any], *keys: str) -> dict[str, Any]:
+    """Return a part of a table."""
+    return {key: table[key] for key in keys if key in table}
 
 
 def _parts(model: type[Any], document: toml.Document, key: str) -> dict[int, Any]:
