@@ -16,7 +16,7 @@ from edgeplan.driver_listing import (
 from edgeplan.driver_listing import (
     listing as list_drivers,
 )
-from edgeplan.driver_models import setting_fields
+from edgeplan.driver_models import DEFAULT_IMPEDANCE_OHM, setting_fields
 from edgeplan.errors import InputError, Problem
 from edgeplan.ibis import Model, ModelFile
 from edgeplan.names import instead
@@ -277,6 +277,8 @@ def _block(driver: DriverFound, listing: Listing) -> Iterator[str]:
         for s in driver.settings
     )
     named = f", component = {_quoted(component.name)}" if component else ""
+    if listing.impedance_ohm != DEFAULT_IMPEDANCE_OHM:
+        named += f', impedance = "{listing.impedance_ohm:g} ohm"'
     yield "# with the file in the board folder the same is said by"
     yield f"# ibis = {{file = {_quoted(file)}{named}}}"
     yield f"# settings = [{models}]"

@@ -102,16 +102,14 @@ class Corner:
         return (1 - up) * self.transistor_a(volt) - up * self.transistor_a(self.supply_v - volt)
 
     def waveform(self, load_ohm, load_v, *, rising, end_s=None, points=200):
-        """Pad voltage into a resistor, integrated. (K,), (K,)"""
+        """Pad voltage from rest into a resistor, integrated. (K,), (K,)"""
         end_s = end_s or 4 * self.handover_s
-        start_v = load_v if (load_v > 0) != rising else None
         time = np.linspace(0, end_s, points)
 
         def slope(t, v):
             return -(self.pad_a(v, t, rising=rising) + (v - load_v) / load_ohm) / self.pad_f
 
-        first = start_v if start_v is not None else load_v
-        found = solve_ivp(slope, (0, end_s), [first], t_eval=time, rtol=1e-8, atol=1e-9,
+        found = solve_ivp(slope, (0, end_s), [load_v], t_eval=time, rtol=1e-8, atol=1e-9,
                           max_step=self.handover_s / 50)  # fmt: skip
         return time, found.y[0]
 
@@ -123,15 +121,16 @@ CORNERS = {
 }
 
 
-def model_text(name, corners=CORNERS, kind="Output", fixture_ohm=50.0, waveforms=True):
-    """Write one model."""
+def model_text(
+    name, corners=CORNERS, kind="Output", fixture_ohm=50.0, waveforms=True, rows=(97, 240)
+):
+    """Write one model, with so many rows of current and of voltage."""
     supply = [corners[c].supply_v for c in COLUMNS]
-    volts = np.linspace(-supply[0], 2 * supply[0], 97)
-    pads = [corners[c].pad_f for c in ("typ",)] * 1
+    volts = np.linspace(-supply[0], 2 * supply[0], rows[0])
     lines = [
         f"[Model] {name}",
         f"Model_type {kind}",
-        f"C_comp {pads[0] * 1e12:.3f}pF NA NA",
+        f"C_comp {corners['typ'].pad_f * 1e12:.3f}pF NA NA",
         "[Voltage Range] " + " ".join(f"{v:.2f}V" for v in supply),
     ]
     for keyword, sign in (("[Pulldown]", 1), ("[Pullup]", -1)):
@@ -141,7 +140,7 @@ def model_text(name, corners=CORNERS, kind="Output", fixture_ohm=50.0, waveforms
             lines.append(f"{volt:.5f} {' '.join(cells)}")
     lines += _ramp(corners, fixture_ohm)
     for rising in (True, False) if waveforms else ():
-        lines += _waveform(corners, fixture_ohm, rising)
+        lines += _waveform(corners, fixture_ohm, rising, rows[1])
     return "\n".join(lines) + "\n"
 
 
@@ -164,11 +163,11 @@ def _ramp(corners, fixture_ohm):
     return [*lines, f"R_load = {fixture_ohm:g}"]
 
 
-def _waveform(corners, fixture_ohm, rising):
+def _waveform(corners, fixture_ohm, rising, rows):
     """Write a waveform table."""
     waves = [_levels(corners[c], fixture_ohm, rising) for c in COLUMNS]
     end = max(time[-1] for time, _ in waves)
-    time = np.linspace(0, end, 240)
+    time = np.linspace(0, end, rows)
     volts = [np.interp(time, *wave) for wave in waves]
     rail = 0.0 if rising else corners["typ"].supply_v
     lines = [

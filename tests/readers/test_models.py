@@ -1,5 +1,6 @@
 """Boards whose drivers and inputs stand in model files: filled, overridden, refused by place."""
 
+import random
 import shutil
 from pathlib import Path
 
@@ -191,6 +192,23 @@ def test_faults_of_models_nobody_names_do_not_stop_a_board(folder):
     path = folder / "models" / "qx1.ibs"
     path.write_text(REGULAR.replace("C_comp 3pF 2pF 4pF", "C_comp 3x"))
     assert board_of(folder).file.driver
+
+
+def test_a_spoilt_model_file_gives_problems_with_places_and_never_a_traceback(folder):
+    chance = random.Random(5)  # noqa: S311 - reproducible, no secrets
+    refused = 0
+    for _ in range(60):
+        text = bytearray(REGULAR.encode())
+        for _ in range(chance.choice((1, 3, 10))):
+            at = chance.randrange(len(text))
+            text[at : at + chance.randrange(3)] = chance.choice((b"NA", b"[", b"\0", b"9", b"\n"))
+        (folder / "models" / "qx1.ibs").write_bytes(bytes(text))
+        try:
+            board_of(folder, receiver=RECEIVER)
+        except InputError as error:
+            refused += 1
+            assert all(problem.row >= 1 for problem in error.problems)
+    assert 10 < refused < 60
 
 
 def test_a_file_of_which_nothing_can_be_read_is_told_once(folder):
