@@ -194,6 +194,15 @@ def test_faults_of_models_nobody_names_do_not_stop_a_board(folder):
     assert board_of(folder).file.driver
 
 
+def told_of(folder):
+    """Return what is told about a board with this model file; nothing if it is read."""
+    try:
+        board_of(folder, receiver=RECEIVER)
+    except InputError as error:
+        return error.problems
+    return ()
+
+
 def test_a_spoilt_model_file_gives_problems_with_places_and_never_a_traceback(folder):
     chance = random.Random(5)  # noqa: S311 - reproducible, no secrets
     refused = 0
@@ -203,11 +212,9 @@ def test_a_spoilt_model_file_gives_problems_with_places_and_never_a_traceback(fo
             at = chance.randrange(len(text))
             text[at : at + chance.randrange(3)] = chance.choice((b"NA", b"[", b"\0", b"9", b"\n"))
         (folder / "models" / "qx1.ibs").write_bytes(bytes(text))
-        try:
-            board_of(folder, receiver=RECEIVER)
-        except InputError as error:
-            refused += 1
-            assert all(problem.row >= 1 for problem in error.problems)
+        told = told_of(folder)
+        refused += bool(told)
+        assert all(problem.row >= 1 for problem in told)
     assert 10 < refused < 60
 
 
