@@ -68,7 +68,7 @@ class Rows:
 
     def has(self, column: str) -> bool:
         """Tell whether a column states a curve: two values or more."""
-        return sum(not isnan(value) for value in getattr(self, column)) > 1
+        return len([value for value in getattr(self, column) if not isnan(value)]) > 1
 
     def column(self, column: str) -> tuple[tuple[float, ...], tuple[float, ...]]:
         """Places and values of a column; the typical one stands in for one without a curve.

@@ -173,7 +173,9 @@ def _models(folder: Folder, document: toml.Document, nets: netlist.NetList | Non
         for entry in entries
         for name in entry.values.get("driver", ())
     ]
-    folder.problems += models.supply_problems(document, filled, interfaces, uses)
+    supplied = models.supplied(filled, interfaces, uses)
+    folder.problems += models.supply_problems(document, supplied)
+    filled.notes += models.supply_notes(supplied)
     return filled
 
 

@@ -17,7 +17,8 @@ from edgeplan.readers.ibis_models import ModelReader
 from edgeplan.readers.ibis_values import BadValueError, joined, named, number, triple
 
 # each opens something of its own; what follows belongs to it and to nothing before it
-OPENING = ("component", "model selector", "model")
+OPENING = ("component", "model")
+SELECTOR = "model selector"
 FOREIGN = (
     "submodel",
     "define package model",
@@ -40,7 +41,7 @@ PACKAGE = {"r_pkg": "ohm", "l_pkg": "H", "c_pkg": "F"}
 PIN_COLUMNS = {"r_pin": "ohm", "l_pin": "H", "c_pin": "F"}
 PLAIN_PIN = ("r_pin", "l_pin", "c_pin")
 NEWEST = 7
-KNOWN = frozenset({*OPENING, *OF_COMPONENT, *ibis_models.KEYWORDS})
+KNOWN = frozenset({*OPENING, SELECTOR, *OF_COMPONENT, *ibis_models.KEYWORDS})
 # read by nobody here and without effect on what is read
 SILENT = frozenset(
     {
@@ -161,9 +162,12 @@ def read_file(path: Path) -> Reading:
 
 
 def _groups(found: list[Section]) -> Iterator[list[Section]]:
-    """Sections that belong together; the first of each opens it."""
+    """Sections that belong together, the first of each opens it; a selector stands anywhere."""
     group: list[Section] = []
     for section in found:
+        if section.keyword == SELECTOR:
+            yield [section]
+            continue
         if section.keyword in OPENING + FOREIGN and group:
             yield group
             group = []
@@ -203,7 +207,7 @@ class _Builder:
         first = group[0]
         if first.keyword == "component":
             self._component(group)
-        elif first.keyword == "model selector":
+        elif first.keyword == SELECTOR:
             self._selector(first)
         elif first.keyword == "model":
             self._model(group)

@@ -98,7 +98,7 @@ def _ascending(cells: list[Cells], same: float, row: int, note: Tell) -> list[Ce
             merged.append([each])
     if any(len(set(group)) > 1 for group in merged):
         note(row, "rows at one place differ; their mean counts", "")
-    return [_mean(group) for group in merged]
+    return [group[0] if len(group) == 1 else _mean(group) for group in merged]
 
 
 def _mean(group: list[Cells]) -> Cells:

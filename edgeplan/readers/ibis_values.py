@@ -71,17 +71,31 @@ def number(word: str, unit: str) -> float:
     """
     if word.upper() == "NA":
         return math.nan
-    found = _NUMBER.fullmatch(word)
-    if not found:
-        if _COMMA.fullmatch(word):
-            raise BadValueError(f"{word!r} has a decimal comma", f"write {word.replace(',', '.')}")
-        raise BadValueError(f"{word[:40]!r} is not a number")
-    power = SCALES.get(found[2][:1], 0)
-    value = _scaled(found[1], power)
+    value = _plain(word) if word[-1:].isdigit() else _with_letters(word)
     if not abs(value) <= LARGEST[unit]:
         hint = "scale letters are case-sensitive: m is 1e-3, M is 1e6, p, n, u, k stand small"
         raise BadValueError(f"{word[:40]!r} is too large for {NAMES[unit]}", hint)
     return value
+
+
+def _plain(word: str) -> float:
+    """Return a number without letters behind it; most words of a file are that."""
+    try:
+        if word.isascii() and "_" not in word:
+            return float(word)
+    except ValueError:
+        pass
+    return _with_letters(word)
+
+
+def _with_letters(word: str) -> float:
+    """Return a number with a scale letter or a unit, or say why it is none."""
+    found = _NUMBER.fullmatch(word)
+    if found:
+        return _scaled(found[1], SCALES.get(found[2][:1], 0))
+    if _COMMA.fullmatch(word):
+        raise BadValueError(f"{word!r} has a decimal comma", f"write {word.replace(',', '.')}")
+    raise BadValueError(f"{word[:40]!r} is not a number")
 
 
 def _scaled(digits: str, power: int) -> float:
@@ -92,7 +106,7 @@ def _scaled(digits: str, power: int) -> float:
     return float(f"{mantissa}e{int(exponent or 0) + power}")
 
 
-def joined(words: Iterable[str]) -> list[str]:
+def joined(words: list[str]) -> list[str]:
     """Glue units that stand apart from their number.
 
     Examples
@@ -101,6 +115,8 @@ def joined(words: Iterable[str]) -> list[str]:
     (['50ohms'], ['2mA', '3'])
     """
     found: list[str] = []
+    if not any(word[0].isalpha() for word in words):
+        return words
     for word in words:
         bare = found and _NUMBER.fullmatch(found[-1])
         if bare and not bare[2] and _UNIT.fullmatch(word):

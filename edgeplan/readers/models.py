@@ -2,7 +2,7 @@
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
-from math import isnan
+from math import inf, isnan
 from typing import Any
 
 from edgeplan.board import (
@@ -12,7 +12,6 @@ from edgeplan.board import (
     Interface,
     LevelFamily,
     ModelledSetting,
-    Range,
     Receiver,
     Setting,
 )
@@ -295,51 +294,93 @@ def overshoot_v(model: Model) -> float | None:
     return max(min(*above, *below), 0.0)
 
 
-def supply_problems(
-    document: Document,
-    filled: Filled,
-    interfaces: Iterable[Interface],
-    uses: Iterable[tuple[str, str]],
-) -> list[Problem]:
-    """Return models that hold at another supply than their interface has.
+@dataclass(frozen=True)
+class Supplied:
+    """A model of a driver's setting, with the supply of an interface whose nets it drives."""
+
+    interface: Interface
+    values: DriverValues
+    path: Path
+
+    @property
+    def own_v(self) -> tuple[float, float]:
+        """Lowest and highest supply of the model; without any stated, everything."""
+        own = [v for v in self.values.model.reference_v["pullup"] if not isnan(v)]
+        return (min(own), max(own)) if own else (-inf, inf)
+
+    @property
+    def asked_v(self) -> tuple[float, float] | None:
+        """Lowest and highest supply of the interface."""
+        supply = self.interface.supply_v
+        stated = [v for v in (supply.min, supply.typ, supply.max) if v is not None]
+        return (min(stated), max(stated)) if stated else None
+
+    def words(self) -> str:
+        """Say at which supply the model holds."""
+        low, high = self.own_v
+        return f"model {self.values.model.name!r} holds from {low:g} to {high:g} V"
+
+
+def supplied(
+    filled: Filled, interfaces: Iterable[Interface], uses: Iterable[tuple[str, str]]
+) -> list[Supplied]:
+    """Return every model with every interface whose nets it may drive.
 
     Parameters
     ----------
-    document : Document
-        board.toml.
     filled : Filled
         Drivers with their models.
     interfaces : iterable of Interface
         Those that are in order.
     uses : iterable of tuple of str
         Interface and driver of every net.
+    """
+    by_name = {interface.name: interface for interface in interfaces}
+    indices = {driver.name: index for index, driver in filled.drivers.items()}
+    return [
+        Supplied(by_name[interface], values, ("driver", index, "settings", k, "model"))
+        for interface, driver in sorted(set(uses))
+        for (index, k), values in filled.values.items()
+        if interface in by_name and indices.get(driver) == index
+    ]
+
+
+def supply_problems(document: Document, found: Iterable[Supplied]) -> list[Problem]:
+    """Return models whose supply has nothing in common with that of their interface.
+
+    Parameters
+    ----------
+    document : Document
+        board.toml.
+    found : iterable of Supplied
+        From `supplied`.
 
     Returns
     -------
     list of Problem
-        At the setting's model, where the ranges of both supplies do not meet.
+        At the setting's model.
     """
-    supplies = {i.name: i.supply_v for i in interfaces}
-    indices = {driver.name: index for index, driver in filled.drivers.items()}
-    found = []
-    for interface, name in sorted(set(uses)):
-        supply = supplies.get(interface)
-        for (index, k), values in filled.values.items():
-            if supply is None or indices.get(name) != index or _meet(supply, values.model):
-                continue
-            typ, low, high = values.model.reference_v["pullup"]
-            where = document.where(("driver", index, "settings", k, "model"))
-            message = f"model {values.model.name!r} holds from {low:g} to {high:g} V"
-            hint = f"interface {interface!r} has another supply; name the model for it"
-            found.append(where.problem(f"{message}, {typ:g} V typically", hint))
-    return found
+    hint = "interface {!r} has another supply; name the model for it"
+    return [
+        document.where(each.path).problem(each.words(), hint.format(each.interface.name))
+        for each in found
+        if each.asked_v and (each.asked_v[0] > each.own_v[1] or each.own_v[0] > each.asked_v[1])
+    ]
 
 
-def _meet(supply: Range[float], model: Model) -> bool:
-    """Tell whether two ranges of supply have something in common."""
-    stated = [v for v in (supply.min, supply.typ, supply.max) if v is not None]
-    own = [v for v in model.reference_v["pullup"] if not isnan(v)]
-    return not stated or not own or (min(stated) <= max(own) and min(own) <= max(stated))
+def supply_notes(found: Iterable[Supplied]) -> list[str]:
+    """Return a note for each model whose interface goes beyond its supply.
+
+    Parameters
+    ----------
+    found : iterable of Supplied
+        From `supplied`.
+    """
+    return [
+        f"{each.words()}, interface {each.interface.name} goes beyond"
+        for each in found
+        if each.asked_v and (each.asked_v[0] < each.own_v[0] or each.asked_v[1] > each.own_v[1])
+    ]
 
 
 def _load_line(driver: Driver, named: IbisFile) -> str:

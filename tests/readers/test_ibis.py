@@ -223,6 +223,16 @@ def test_tables_of_a_submodel_do_not_become_those_of_the_model_before_it():
     assert reading.models.models["full"].tables["gnd clamp"].at[0] == -3.3
 
 
+def test_a_selector_may_stand_between_the_parts_of_a_component_or_of_a_model(regular):
+    selector = "[Model Selector] dq\nfull   all of it\nhalf   one half of it\n"
+    plain = REGULAR.replace(selector, "")
+    for keyword in ("[Pin]", "[Ramp]", "[End]"):
+        models = read(plain.replace(keyword, selector + keyword)).models
+        assert len(models.components[0].pins) == 4
+        assert models.selectors["dq"].entries == regular.selectors["dq"].entries
+        assert models.models["full"].ramp.load_ohm == 50.0
+
+
 def test_an_unknown_keyword_is_passed_over_with_a_note():
     reading = changed(("[Ramp]", "[Novelty] 5\n1 2 3\n[Ramp]"))
     assert "[novelty] is not known and was passed over" in words(reading.notes)
