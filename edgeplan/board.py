@@ -257,11 +257,34 @@ class Setting(Record):
     source: str = ""
     provenance: Provenance = "datasheet"
 
+    def provenance_of(self, field: str) -> Provenance:  # noqa: ARG002 - all fields share it
+        """Where the value of one field comes from."""
+        return self.provenance
+
+
+class ModelledSetting(Setting):
+    """A setting of which a model gave some fields; those are named in ``modelled``."""
+
+    modelled: frozenset[str] = frozenset()
+
+    def provenance_of(self, field: str) -> Provenance:
+        """Where the value of one field comes from."""
+        return "model" if field in self.modelled else self.provenance
+
 
 class IbisFile(Record):
-    """Where a driver's model stands."""
+    """Where a driver's models stand, and the line their tables are read at."""
 
     file: str
+    component: str | None = None
+    impedance_ohm: Resistance = Field(alias="impedance", default=50.0, gt=0)
+
+
+class IbisInput(Record):
+    """Where an input's model stands."""
+
+    file: str
+    model: str
     component: str | None = None
 
 
@@ -286,11 +309,20 @@ class Receiver(Record):
     """An input of a part."""
 
     name: str
-    capacitance_f: Capacitance | Range[Capacitance] = Field(alias="capacitance")
+    capacitance_f: Capacitance | Range[Capacitance] | None = Field(
+        alias="capacitance", default=None
+    )
+    ibis: IbisInput | None = None
     longest_transition: LongestTransition | None = None
     overshoot: VoltageOrShare | None = None
     levels: str | None = None
     source: str = ""
+
+    @model_validator(mode="after")
+    def _capacitance_or_model(self) -> "Receiver":
+        if self.capacitance_f is None and self.ibis is None:
+            raise ValueError('an input needs its capacitance, for example capacitance = "4.5 pF"')
+        return self
 
 
 class LevelFamily(Record):

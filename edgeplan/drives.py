@@ -137,23 +137,19 @@ def setting_corners(setting: Setting) -> SettingCorners:
     >>> corners.resistance_ohm["rising"].slow, corners.missing
     (40.0, ('minimum edge',))
     """
-    spread, origin = setting.spread, setting.provenance
-    up = setting.resistance_up_ohm or setting.resistance_ohm
-    down = setting.resistance_down_ohm or setting.resistance_ohm
-    edge_up = setting.edge_up_s or setting.edge_s
-    edge_down = setting.edge_down_s or setting.edge_s
+    spread, origin = setting.spread, setting.provenance_of
     resistance = {
-        "rising": _corners(up, spread, origin),
-        "falling": _corners(down, spread, origin),
+        direction: _corners(stated, spread, origin(name))
+        for direction, (name, stated) in _sides(setting, "resistance{}_ohm").items()
     }
     edge = {
-        "rising": _corners(edge_up, spread, origin),
-        "falling": _corners(edge_down, spread, origin),
+        direction: _corners(stated, spread, origin(name))
+        for direction, (name, stated) in _sides(setting, "edge{}_s").items()
     }
     raised = 1 / RAISED_COSINE_SHARE[setting.edge_levels]
     straight = 1 / STRAIGHT_SHARE[setting.edge_levels]
     pad = 0.0 if setting.capacitance_f is None else setting.capacitance_f
-    pads = _pad_corners(pad, origin)
+    pads = _pad_corners(pad, origin("capacitance_f"))
     return SettingCorners(
         setting=setting.setting,
         resistance_ohm=resistance,
@@ -168,6 +164,16 @@ def setting_corners(setting: Setting) -> SettingCorners:
             *_missing("capacitance", {"pad": pads}),
         ),
     )
+
+
+def _sides(setting: Setting, field: str) -> dict[str, tuple[str, Range[float] | None]]:
+    """Field and value of each direction: its own, else the one both share."""
+    found = {}
+    for direction, word in zip(DIRECTIONS, ("_up", "_down"), strict=True):
+        own, shared = field.format(word), field.format("")
+        name = own if getattr(setting, own) is not None else shared
+        found[direction] = name, getattr(setting, name)
+    return found
 
 
 def _pad_corners(stated: Range[float] | float, provenance: str) -> Quantity:

@@ -452,13 +452,14 @@ def _candidate(draft: NetDraft, k: int, rejected: list[int]) -> Candidate:
 
 def _setting(facts: NetFacts, state: str, setting: str) -> CandidateSetting:
     """The setting of the driver pin in one state."""
+    corners = next(c for c in facts.settings if c.setting == setting)
     return CandidateSetting(
         driver_pin=facts.net.driver_pin[0] if facts.net.driver_pin else "",
         state=state,
         setting=setting,
         bank=facts.net.bank[0] if facts.net.bank else "",
-        provenance=facts.settings[facts.setting].resistance_ohm["rising"].provenance,
-        source=facts.driver.source,
+        provenance=corners.resistance_ohm["rising"].provenance,
+        source=corners.source or facts.driver.source,
     )
 
 

@@ -261,7 +261,7 @@ def _capacitance(receiver: Receiver, corner: str) -> float:
     """Input capacitance at a corner: largest when slow, smallest when fast; else the typical."""
     stated = receiver.capacitance_f
     if not isinstance(stated, Range):
-        return float(stated)
+        return nan if stated is None else float(stated)
     at = {"slow": stated.max, "typical": None, "fast": stated.min}[corner]
     if at is not None:
         return float(at)
@@ -273,6 +273,9 @@ def _capacitance(receiver: Receiver, corner: str) -> float:
 def _with_both_capacitances(receiver: Receiver) -> Receiver:
     """The receiver, or which end of its capacitance is missing: a maximum is no minimum."""
     stated = receiver.capacitance_f
+    if stated is None:
+        owner = f"receiver {receiver.name}"
+        raise CannotRoute(f"{owner} states no capacitance", value="capacitance", of=owner)
     if isinstance(stated, Range) and stated.typ is None:
         for word, value in (("minimum", stated.min), ("maximum", stated.max)):
             if value is None:
