@@ -114,6 +114,24 @@ def test_hammerstad_and_jensen_with_thickness_are_within_a_percent(width_m, heig
     assert found.permittivity_effective == pytest.approx(float(effective), rel=7e-3)
 
 
+def test_a_centred_thick_strip_is_within_wheelers_error():
+    width = np.array([0.05e-3, 0.1e-3, 0.2e-3, 0.5e-3])
+    wheeler = cross_section.stripline_centred(width, 0.4e-3, 35e-6, 1.0)
+    found = [
+        solver.solve_line(between_planes(w, 182.5e-6, 182.5e-6, 35e-6)).impedance_ohm for w in width
+    ]
+    np.testing.assert_allclose(found, wheeler, rtol=5e-3)
+
+
+def test_the_parallel_rule_is_5_to_10_percent_high_at_4_to_10_times_the_height():
+    """Published accuracy of the rule beyond its validity."""
+    for ratio in (4.0, 10.0):
+        z_a = cross_section.stripline_centred(0.2e-3, 0.218e-3, 18e-6, 1.0)
+        z_b = cross_section.stripline_centred(0.2e-3, 0.2e-3 * ratio + 18e-6, 18e-6, 1.0)
+        found = solver.solve_line(between_planes(0.2e-3, 0.1e-3, 0.1e-3 * ratio, 18e-6))
+        assert 1.03 < 2 * z_a * z_b / (z_a + z_b) / found.impedance_ohm < 1.12
+
+
 def test_mask_takes_off_impedance_and_adds_delay_as_measured_for_it():
     """4 to 10 % of impedance, 4 to 9 % of delay: finite differences over common masks."""
     bare, coated = solver.solve_line(BARE), solver.solve_line(COATED)
