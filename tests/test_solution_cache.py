@@ -8,7 +8,7 @@ from pathlib import Path
 
 import pytest
 
-from edgeplan import solution_cache
+from edgeplan import solution_cache, starter
 from edgeplan.solution_cache import remembered
 
 CONTENT = ["line", 1, [0.18e-3, 35e-6]]
@@ -148,3 +148,50 @@ def test_without_a_home_there_is_no_cache(monkeypatch, solve):
     monkeypatch.delenv("XDG_CACHE_HOME", raising=False)
     monkeypatch.setattr(solution_cache.Path, "home", nowhere)
     assert remembered(CONTENT, solve)[0] == 0.333333333
+
+
+TOP = '  {layer = "L1", kind = "signal", thickness = "35 um"},'
+MASK = (
+    '  {layer = "mask", kind = "dielectric", thickness = "20 um", er = 3.5, loss_tangent = 0.03},'
+)
+
+
+@pytest.fixture
+def masked(tmp_path):
+    """Put solder mask over the board that `edgeplan start` writes."""
+    board = tmp_path / "board"
+    starter.write(board)
+    file = board / "board.toml"
+    text = file.read_text("utf-8")
+    assert TOP in text
+    file.write_text(text.replace(TOP, f"{MASK}\n{TOP}"), "utf-8")
+    return board
+
+
+def judged(board, folder, *options):
+    """Return standard output of the command, whatever its verdict."""
+    command = [sys.executable, "-m", "edgeplan", *options[:1], str(board), *options[1:]]
+    environment = os.environ | {"XDG_CACHE_HOME": str(folder.parent)}
+    environment.pop("EDGEPLAN_CACHE", None)
+    run = subprocess.run(command, capture_output=True, env=environment, check=False)
+    assert (run.returncode in (0, 1), run.stderr) == (True, b"")
+    return run.stdout
+
+
+def test_a_run_prints_the_same_with_a_cache_from_it_and_without(masked, folder):
+    without = judged(masked, folder, "check", "--no-cache", "--format", "json")
+    assert not folder.exists()
+    assert judged(masked, folder, "check", "--format", "json") == without
+    assert only_entry(folder).stat().st_size > 0
+    assert judged(masked, folder, "check", "--format", "json") == without
+
+
+def test_the_environment_switches_it_off_as_the_option_does(masked, folder, monkeypatch):
+    told = judged(masked, folder, "explain", "LAMP_CLK")
+    assert "field solution" in told.decode()
+    assert "solved to 0.016 %" in told.decode()
+    only_entry(folder).unlink()
+    command = [sys.executable, "-m", "edgeplan", "check", str(masked), "-q"]
+    monkeypatch.setenv("EDGEPLAN_CACHE", "0")
+    subprocess.run(command, capture_output=True, check=False)
+    assert not list(folder.iterdir())
