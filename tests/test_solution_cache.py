@@ -2,6 +2,7 @@
 
 import json
 import os
+import re
 import subprocess
 import sys
 from pathlib import Path
@@ -189,7 +190,7 @@ def test_a_run_prints_the_same_with_a_cache_from_it_and_without(masked, folder):
 def test_the_environment_switches_it_off_as_the_option_does(masked, folder, monkeypatch):
     told = judged(masked, folder, "explain", "LAMP_CLK")
     assert "field solution" in told.decode()
-    assert "solved to 0.016 %" in told.decode()
+    assert re.search(r"solved to 0\.0\d+ %", told.decode())
     only_entry(folder).unlink()
     command = [sys.executable, "-m", "edgeplan", "check", str(masked), "-q"]
     monkeypatch.setenv("EDGEPLAN_CACHE", "0")

@@ -3,10 +3,13 @@
     OPENBLAS_NUM_THREADS=1 .venv/bin/python tests/benchmarks/benchmark_cross_sections.py
 
 The bar is 10 s on 2 cores. Each is solved with its error, losses and skin factor, one after the
-other in one process.
+other in one process. With ``--errors`` it prints the worst deviation from each published table and
+draws all of them into docs/models.
 """
 
+import sys
 import time
+from pathlib import Path
 
 import numpy as np
 
@@ -57,5 +60,20 @@ def main():
     print(f"20 cross-sections  {total:.2f} s (bar: 10 s)")
 
 
+def print_errors():
+    """Print the worst deviations from each table, in per cent, and draw them."""
+    sys.path.insert(0, str(Path(__file__).parents[1]))
+    import line_errors
+
+    compared = list(line_errors.compare_all())
+    print("| against | rows | impedance | delay | coupling |\n|---|---|---|---|---|")
+    for table in compared:
+        columns = (table.impedance, table.delay, table.coupling)
+        worst = ["–" if np.isnan(c).all() else f"{np.abs(c).max():.2f} %" for c in columns]
+        print("|", " | ".join([table.name, str(len(table.delay)), *worst]), "|")
+    docs = Path(__file__).parents[2] / "docs" / "models"
+    line_errors.draw(compared, docs / "line_errors.svg")
+
+
 if __name__ == "__main__":
-    main()
+    print_errors() if "--errors" in sys.argv else main()
