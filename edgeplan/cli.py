@@ -72,6 +72,11 @@ def _processes(_ctx: click.Context, _param: click.Parameter, value: int) -> int:
     return value
 
 
+def _cache(_ctx: click.Context, _param: click.Parameter, value: bool) -> None:
+    """Tell this process and those it starts whether to remember field solutions."""
+    os.environ["EDGEPLAN_CACHE"] = "1" if value else "0"
+
+
 def _picture(_ctx: click.Context, _param: click.Parameter, value: Path | None) -> Path | None:
     """Check ``--plot`` before anything is computed."""
     if value is not None and value.suffix.lower() not in PICTURES:
@@ -101,6 +106,9 @@ def _judging(formats: Mapping[str, str], first: str) -> "Callable[[Command], Com
         click.option("--jobs", type=click.IntRange(min=1), default=1, metavar="N",
                      callback=_processes, show_default=True,
                      help="Processes to share the work among."),
+        click.option("--cache/--no-cache", default=True, envvar="EDGEPLAN_CACHE", callback=_cache,
+                     expose_value=False, show_default=True,
+                     help="Remember field solutions of lines in the user's cache folder."),
         click.option("--quiet", "-q", is_flag=True, help="Nothing but errors beside the result."),
         click.option("--color", type=click.Choice(["auto", "always", "never"]), default="auto",
                      show_default=True, help="Colour repeats a verdict; NO_COLOR is honoured."),

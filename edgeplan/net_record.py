@@ -41,6 +41,7 @@ from edgeplan.results import (
     Window,
     WindowEnd,
 )
+from edgeplan.stack import SOLVED, Line
 from edgeplan.windows import UNDECIDED, End, StateWindow
 
 Array = NDArray[Any]
@@ -356,8 +357,14 @@ def _line(facts: NetFacts) -> LineNote:
         length_m=path.main_length_m,
         layer=main.layer,
         provenance=main.provenance,
-        text=f"{main.width_m * 1e3:g} mm wide, {main.height_m * 1e3:g} mm to its plane",
+        text=_drawn(main),
     )
+
+
+def _drawn(line: Line) -> str:
+    """What a line was computed from, and how well where it was solved."""
+    drawn = f"{line.width_m * 1e3:g} mm wide, {line.height_m * 1e3:g} mm to its plane"
+    return f"{drawn}, solved to {100 * line.error:.2g} %" if line.provenance == SOLVED else drawn
 
 
 def _way_delay_s(facts: NetFacts, piece: int) -> float:

@@ -7,8 +7,9 @@ from math import isnan, nan
 
 import numpy as np
 
+from edgeplan import solved_lines
 from edgeplan.board import Layer
-from edgeplan.physics import cross_section, line_losses, solved_stripline
+from edgeplan.physics import cross_section, line_losses
 
 CENTRED_WITHIN = 1.02  # height ratio below which a strip counts as centred
 SLIGHTLY_OFF = 1.5  # height ratio to which the parallel rule is within 0.5 % of field solutions
@@ -21,8 +22,9 @@ SOLVED = "field solution"
 class Line:
     """Constants of one printed line, per metre, with where they came from.
 
-    ``problem`` is empty when the line is known; otherwise it says why not and
-    what to give instead, and the numbers are NaN.
+    ``error`` is the relative error that a field solution found of itself. ``problem`` is
+    empty when the line is known; otherwise it says why not and what to give instead, and
+    the numbers are NaN.
     """
 
     layer: str
@@ -39,6 +41,7 @@ class Line:
     loss_tangent: float = nan
     planes: tuple[str, ...] = ()
     provenance: str = COMPUTED
+    error: float = nan
     problem: str = ""
 
 
@@ -52,6 +55,13 @@ class _Surroundings:
     below_permittivity: float
     loss_tangent: float
     planes: tuple[str, ...]
+    covered: bool = False
+    coated: bool = False
+
+    @property
+    def nearest_permittivity(self) -> float:
+        """Permittivity towards the one plane of a line that has but one."""
+        return self.above_permittivity if isnan(self.below_m) else self.below_permittivity
 
 
 def _series_permittivity(dielectrics: Sequence[Layer]) -> float:
@@ -78,7 +88,9 @@ def _surroundings(stack: Sequence[Layer], index: int) -> _Surroundings:
     above, plane_above = _towards(stack, index, -1)
     below, plane_below = _towards(stack, index, +1)
     nearest = above if plane_above and not plane_below else below
+    other = below if nearest is above else above
     tangents = [d.loss_tangent for d in nearest] or [0.0]
+    outermost = len(other) == 1 and other[0] in (stack[0], stack[-1])
     return _Surroundings(
         above_m=sum(d.thickness_m for d in above) if plane_above else nan,
         below_m=sum(d.thickness_m for d in below) if plane_below else nan,
@@ -86,21 +98,17 @@ def _surroundings(stack: Sequence[Layer], index: int) -> _Surroundings:
         below_permittivity=_series_permittivity(below) if plane_below and below else nan,
         loss_tangent=max(tangents),
         planes=tuple(name for name in (plane_above, plane_below) if name),
+        covered=bool(other),
+        coated=outermost and not (plane_above and plane_below),
     )
 
 
 def _surface_line(line: Line, thickness_m: float, around: _Surroundings, height_m: float) -> Line:
     """Microstrip by Hammerstad and Jensen with finite thickness."""
-    permittivity = (
-        around.below_permittivity if not isnan(around.below_m) else around.above_permittivity
-    )
+    permittivity = around.nearest_permittivity
     impedance, effective = cross_section.microstrip(
         line.width_m, height_m, thickness_m, permittivity
     )
-    problem = ""
-    if isnan(float(impedance)):
-        outside = "width, thickness or permittivity is outside the closed form"
-        problem = f"layer {line.layer}: {outside}; state z0"
     return replace(
         line,
         surface=True,
@@ -111,38 +119,25 @@ def _surface_line(line: Line, thickness_m: float, around: _Surroundings, height_
         loss_tangent=float(
             line_losses.effective_loss_tangent(permittivity, effective, around.loss_tangent)
         ),
-        problem=problem,
     )
 
 
 def _inner_line(line: Line, thickness_m: float, around: _Surroundings) -> Line:
-    """Stripline between two planes: Wheeler if centred, the parallel rule near it, else solved."""
+    """Stripline between two planes: Wheeler if centred, the parallel rule near it, else unknown."""
     low, high = sorted((around.above_m, around.below_m))
     permittivity = max(around.above_permittivity, around.below_permittivity)
     alike = abs(around.above_permittivity - around.below_permittivity) <= 0.1 * permittivity
     mean = (
         around.above_m * around.above_permittivity + around.below_m * around.below_permittivity
     ) / (around.above_m + around.below_m)
-    if not alike:
-        problem = "permittivities above and below differ by more than 10 %"
-        impedance = nan
-    elif high <= CENTRED_WITHIN * low:
-        impedance = float(
-            cross_section.stripline_centred(
-                line.width_m, low + high + thickness_m, thickness_m, mean
-            )
-        )
-        problem = "the width is outside the range of the closed form"
-    elif high <= SLIGHTLY_OFF * low:
+    impedance = nan
+    if alike and high <= CENTRED_WITHIN * low:
+        gap = low + high + thickness_m
+        impedance = float(cross_section.stripline_centred(line.width_m, gap, thickness_m, mean))
+    elif alike and high <= SLIGHTLY_OFF * low:
         impedance = float(
             cross_section.stripline_offset(line.width_m, low, high, thickness_m, mean)
         )
-        problem = "the width is outside the range of the closed form"
-    else:
-        size = (line.width_m, low, high, thickness_m)
-        impedance = float(solved_stripline.stripline_solved(*size, mean))
-        line = replace(line, provenance=SOLVED)
-        problem = f"no solution for a strip {high / low:.1f} to 1 off centre"
     return replace(
         line,
         surface=False,
@@ -152,21 +147,39 @@ def _inner_line(line: Line, thickness_m: float, around: _Surroundings) -> Line:
         permittivity_effective=mean,
         impedance_ohm=impedance,
         loss_tangent=around.loss_tangent,
-        problem=f"layer {line.layer}: {problem}; state z0" if isnan(impedance) else "",
     )
 
 
 def _covered_line(line: Line, around: _Surroundings, height_m: float) -> Line:
-    """A covered strip over one plane: no closed form for its impedance, wholly filled."""
-    permittivity = float(np.nanmax([around.above_permittivity, around.below_permittivity]))
+    """A covered strip over one plane, for which there is no closed form."""
+    return replace(
+        line, surface=around.coated, height_m=height_m, permittivity=around.nearest_permittivity
+    )
+
+
+def _solved(line: Line, stack: Sequence[Layer], index: int, around: _Surroundings) -> Line:
+    """The line by field solution, from the layers themselves."""
+    (above, plane_above), (below, plane_below) = (_towards(stack, index, k) for k in (-1, +1))
+    if plane_above and not plane_below:
+        above, below = below, above
+    found = solved_lines.solved_line(
+        line.width_m,
+        stack[index].thickness_m,
+        below,
+        above,
+        upper_plane=bool(plane_above and plane_below),
+        coated=around.coated,
+    )
+    unknown = f"layer {line.layer}: no field solution for these sizes; state z0"
     return replace(
         line,
-        surface=False,
-        height_m=height_m,
-        permittivity=permittivity,
-        permittivity_effective=permittivity,
-        loss_tangent=around.loss_tangent,
-        problem=f"layer {line.layer} is covered and has one plane only; state z0",
+        impedance_ohm=found.impedance_ohm,
+        permittivity_effective=found.permittivity_effective,
+        loss_tangent=found.loss_tangent,
+        skin_ohm_per_m_rthz=found.skin_ohm_per_m_rthz,
+        provenance=SOLVED,
+        error=found.error,
+        problem=unknown if isnan(found.impedance_ohm) else "",
     )
 
 
@@ -176,20 +189,23 @@ def _computed(stack: Sequence[Layer], index: int, width_m: float) -> Line:
     around = _surroundings(stack, index)
     line = Line(layer=layer.layer, width_m=width_m, planes=around.planes)
     heights = [h for h in (around.above_m, around.below_m) if not isnan(h)]
-    outer = index == 0 or index == len(stack) - 1
     if not heights or min(heights) <= 0:
         return replace(line, problem=f"layer {layer.layer} has no plane beside it to return on")
     if len(heights) == 2:
         line = _inner_line(line, layer.thickness_m, around)
-    elif outer:
-        line = _surface_line(line, layer.thickness_m, around, heights[0])
-    else:
+    elif around.covered:
         line = _covered_line(line, around, heights[0])
+    else:
+        line = _surface_line(line, layer.thickness_m, around, heights[0])
+    if isnan(line.impedance_ohm):
+        line = _solved(line, stack, index, around)
+    else:
+        skin = _skin_factor(line, layer.thickness_m, heights)
+        line = replace(line, skin_ohm_per_m_rthz=skin)
     return replace(
         line,
         delay_s_per_m=float(cross_section.delay_s_per_m(line.permittivity_effective)),
         resistance_dc_ohm_per_m=float(line_losses.dc_resistance(width_m, layer.thickness_m)),
-        skin_ohm_per_m_rthz=_skin_factor(line, layer.thickness_m, heights),
     )
 
 
@@ -197,9 +213,6 @@ def _skin_factor(line: Line, thickness_m: float, heights_m: Sequence[float]) -> 
     """Resistance over the root of frequency, strip and return. [ohm/m/sqrt(Hz)]"""
     if len(heights_m) == 2:
         low, high = heights_m
-        if line.provenance == SOLVED:
-            solved = solved_stripline.skin_factor_solved(line.width_m, low, high, thickness_m)
-            return float(solved)
         return float(line_losses.skin_factor_stripline(line.width_m, low, high, thickness_m))
     return float(line_losses.skin_factor(line.width_m, line.height_m, thickness_m))
 
@@ -260,13 +273,14 @@ def printed_line(
         Finished width of the trace. [m]
     impedance : mapping, optional
         A fabricator's table per layer: pairs of width [m] and impedance [ohm].
-        It comes before a stated ``z0``, which comes before the closed form.
+        It comes before a stated ``z0``, which comes before what is computed.
 
     Returns
     -------
     Line
-        Impedance [ohm], delay [s/m], losses, and where they came from; a line
-        outside every closed form has NaN numbers and says what to give instead.
+        Impedance [ohm], delay [s/m], losses, and where they came from: a closed form
+        in its range, else a field solution. A line without either has NaN numbers and
+        says what to give instead.
 
     Examples
     --------
@@ -311,7 +325,7 @@ def surface_line(stack: Sequence[Layer], width_m: float) -> Line | None:
     Returns
     -------
     Line or None
-        None where neither the top nor the bottom layer carries signals over a plane.
+        None where no signal layer lies at the surface, bare or coated, over a plane.
 
     Examples
     --------
@@ -323,9 +337,9 @@ def surface_line(stack: Sequence[Layer], width_m: float) -> Line | None:
     >>> surface_line(stack, 0.18e-3).layer
     'L1'
     """
-    for layer in (stack[0], stack[-1]):
-        if layer.kind == "signal":
-            line = printed_line(stack, layer.layer, width_m)
-            if line.surface and not line.problem:
-                return line
+    signals = [layer.layer for layer in stack if layer.kind == "signal"]
+    for name in (signals[0], signals[-1]) if signals else ():
+        line = printed_line(stack, name, width_m)
+        if line.surface and not line.problem:
+            return line
     return None

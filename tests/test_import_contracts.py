@@ -15,9 +15,10 @@ MODULES = sorted(PACKAGE.rglob("*.py"))
 # Each costs a run that does not need it a tenth of a second or more.
 SLOW = ("joblib", "matplotlib", "scipy.constants", "scipy.interpolate", "scipy.optimize",
         "scipy.stats", "skrf")  # fmt: skip
-READS_FILES = {"readers", "outputs"}  # outputs reads only to refuse writing over an input
+CACHE = "solution_cache"  # its own folder of the user, never an input or a result
+READS_FILES = {"readers", "outputs", CACHE}  # outputs: only to refuse writing over an input
 READS_PACKAGE_DATA = {"limits", "levels", "starter"}
-WRITES_FILES = {"outputs", "starter"}
+WRITES_FILES = {"outputs", "starter", CACHE}
 
 READING = {"open", "read_bytes", "read_text", "loadtxt", "genfromtxt"}
 WRITING = {"write_bytes", "write_text", "mkdir", "mkstemp", "savetxt"}

@@ -7,7 +7,7 @@ import pytest
 from build import STACK, WIDTH_M, stack
 
 from edgeplan.board import Layer
-from edgeplan.stack import COMPUTED, SOLVED, STATED, printed_line
+from edgeplan.stack import COMPUTED, SOLVED, STATED, printed_line, surface_line
 
 SPEED = 299_792_458.0
 
@@ -25,14 +25,14 @@ def thin_strip(er=4.2, height_m=0.2e-3):
     )
 
 
-def inner_strip(above_m=0.2e-3, below_m=0.2e-3, er_below=4.2, **signal):
+def inner_strip(above_m=0.2e-3, below_m=0.2e-3, er_below=4.2, er_above=4.2, **signal):
     """Put a signal layer between two planes."""
     copper = {"layer": "L2", "kind": "signal", "thickness_m": 1e-10} | signal
     plane = {"kind": "plane", "thickness_m": 18e-6}
     laminate = {"kind": "dielectric"}
     return layers(
         plane | {"layer": "P1"},
-        laminate | {"layer": "D1", "thickness_m": above_m, "permittivity": 4.2},
+        laminate | {"layer": "D1", "thickness_m": above_m, "permittivity": er_above},
         copper,
         laminate | {"layer": "D2", "thickness_m": below_m, "permittivity": er_below},
         plane | {"layer": "P2"},
@@ -145,11 +145,15 @@ def test_a_strip_far_off_centre_is_solved():
     assert line.impedance_ohm == pytest.approx(121.477 / 4.2**0.5, rel=2e-3)
 
 
-def test_a_strip_between_unequal_permittivities_says_why_and_what_to_give():
-    line = printed_line(inner_strip(er_below=3.0), "L2", WIDTH_M)
-    assert isnan(line.impedance_ohm)
-    assert "permittivities above and below differ" in line.problem
-    assert line.problem.endswith("state z0")
+def test_a_strip_between_unequal_permittivities_lies_between_those_of_either():
+    three, both, four = (
+        printed_line(inner_strip(er_below=er, thickness_m=18e-6, er_above=above), "L2", WIDTH_M)
+        for er, above in ((3.0, 3.0), (3.0, 4.2), (4.2, 4.2))
+    )
+    assert both.provenance == SOLVED
+    assert four.impedance_ohm < both.impedance_ohm < three.impedance_ohm
+    assert three.delay_s_per_m < both.delay_s_per_m < four.delay_s_per_m
+    assert 1e-3 < both.error < 1e-2  # either dielectric may fill the flanks
 
 
 def test_a_stated_impedance_mends_a_strip_outside_every_closed_form():
@@ -158,16 +162,57 @@ def test_a_stated_impedance_mends_a_strip_outside_every_closed_form():
     assert line.delay_s_per_m == pytest.approx(4.2**0.5 / SPEED, rel=1e-3)
 
 
-def test_a_width_outside_the_formula_of_a_surface_line_is_named():
+def test_a_surface_line_outside_its_formula_is_solved():
+    """Copper thicker than its height; within 2 % of the formula just inside of its range."""
+    thick = layers(*STACK)
+    thick[0] = thick[0].model_copy(update={"thickness_m": 0.115e-3})
+    inside = [thick[0].model_copy(update={"thickness_m": 0.11e-3}), *thick[1:]]
+    line, formula = (printed_line(rows, "L1", WIDTH_M) for rows in (thick, inside))
+    assert (line.provenance, formula.provenance) == (SOLVED, COMPUTED)
+    assert line.impedance_ohm == pytest.approx(formula.impedance_ohm, rel=2e-2)
+    assert line.delay_s_per_m == pytest.approx(formula.delay_s_per_m, rel=2e-2)
+
+
+def test_a_width_that_no_solution_was_tried_for_is_named():
     line = printed_line(thin_strip(height_m=1e-6), "L1", 1e-3)
-    assert "outside the closed form" in line.problem
+    assert isnan(line.impedance_ohm)
+    assert line.problem == "layer L1: no field solution for these sizes; state z0"
 
 
-def test_a_mask_over_the_trace_asks_for_the_impedance():
-    mask = {"layer": "M", "kind": "dielectric", "thickness_m": 20e-6, "permittivity": 3.5}
-    line = printed_line(layers(mask, *STACK), "L1", WIDTH_M)
-    assert "covered" in line.problem
-    assert "state z0" in line.problem
+MASK = {"layer": "M", "kind": "dielectric", "thickness_m": 20e-6, "permittivity": 3.5}
+
+
+def test_a_line_under_solder_mask_is_a_solved_surface_line():
+    """49.365 ohm, effective permittivity 3.2726: lines_by_finite_differences.csv."""
+    rows = layers(MASK, *STACK, MASK | {"layer": "N"})
+    top, bottom = (printed_line(rows, name, WIDTH_M) for name in ("L1", "L4"))
+    for line in (top, bottom):
+        assert (line.provenance, line.surface, line.problem) == (SOLVED, True, "")
+        assert line.impedance_ohm == pytest.approx(49.365, rel=3e-3)
+        assert line.delay_s_per_m == pytest.approx(3.2726**0.5 / SPEED, rel=2e-3)
+    assert surface_line(rows, WIDTH_M).layer == "L1"
+
+
+def test_a_covered_line_over_one_plane_is_solved_and_no_surface_line():
+    """54.360 ohm, effective permittivity 3.7905: lines_by_finite_differences.csv."""
+    cover = {"layer": "D0", "kind": "dielectric", "thickness_m": 82e-6, "permittivity": 4.2}
+    rows = layers(
+        {"layer": "L1", "kind": "signal", "thickness_m": 18e-6},
+        cover,
+        {"layer": "L2", "kind": "signal", "thickness_m": 18e-6},
+        cover | {"layer": "D1", "thickness_m": 0.12e-3},
+        {"layer": "L3", "kind": "plane", "thickness_m": 18e-6},
+    )
+    line = printed_line(rows, "L2", 0.15e-3)
+    assert (line.provenance, line.surface) == (SOLVED, False)
+    assert line.impedance_ohm == pytest.approx(54.360, rel=3e-3)
+    assert line.delay_s_per_m == pytest.approx(3.7905**0.5 / SPEED, rel=2e-3)
+
+
+def test_mask_under_a_stated_impedance_still_slows_the_line():
+    stated = printed_line(layers(MASK, *stack(47.0)), "L1", WIDTH_M)
+    assert (stated.impedance_ohm, stated.provenance) == (47.0, STATED)
+    assert stated.delay_s_per_m > printed_line(layers(), "L1", WIDTH_M).delay_s_per_m
 
 
 def test_a_layer_without_a_plane_has_no_line_even_with_a_stated_impedance():

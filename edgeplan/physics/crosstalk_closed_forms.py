@@ -107,6 +107,65 @@ def mode_delay_difference_s_per_m(
     return np.asarray(difference / SPEED_OF_LIGHT_M_PER_S)
 
 
+def near_end_share(edge_s: ArrayLike, coupled_delay_s: ArrayLike, backward: ArrayLike) -> Array:
+    r"""Bound of the voltage at the near end over the launched wave, all ends matched.
+
+    .. math:: K_b \min\Bigl(1, \frac{1.854\,T_d}{t_r}\Bigr)
+
+    Parameters
+    ----------
+    edge_s : array_like
+        10 to 90 % duration of the launched edge. [s]
+    coupled_delay_s : array_like
+        Delay of the coupled length, Td. [s]
+    backward : array_like
+        Backward coupling Kb. [-]
+
+    Returns
+    -------
+    numpy.ndarray
+        Share of the launched wave. [-]
+
+    Examples
+    --------
+    An edge of twice 1.854 Td leaves half of Kb:
+
+    >>> print(f"{near_end_share(3.708e-9, 1e-9, 0.05):.4f}")
+    0.0250
+    """
+    edge = np.asarray(edge_s, dtype=float)
+    covered = np.minimum(1.0, 2 * STEEPEST * np.asarray(coupled_delay_s, dtype=float) / edge)
+    return np.asarray(np.asarray(backward) * covered)
+
+
+def far_end_share(edge_s: ArrayLike, mode_delay_s: ArrayLike) -> Array:
+    r"""Bound of the voltage at the far end over the launched wave, all ends matched.
+
+    .. math:: \min\Bigl(\frac12, \frac{0.927\,\Delta\tau l}{2 t_r}\Bigr)
+
+    Parameters
+    ----------
+    edge_s : array_like
+        10 to 90 % duration of the launched edge. [s]
+    mode_delay_s : array_like
+        Difference of the mode delays over the coupled length, of either sign. [s]
+
+    Returns
+    -------
+    numpy.ndarray
+        Share of the launched wave, 0 in a stripline. [-]
+
+    Examples
+    --------
+    Modes that arrive far apart split the wave into halves:
+
+    >>> print(f"{far_end_share(0.1e-9, 1e-9):.1f} {far_end_share(1e-9, 0.1e-9):.4f}")
+    0.5 0.0464
+    """
+    apart = np.abs(np.asarray(mode_delay_s, dtype=float))
+    return np.asarray(np.minimum(0.5, STEEPEST * apart / (2 * np.asarray(edge_s, dtype=float))))
+
+
 def noise_on_a_neighbour_v(
     swing_v: ArrayLike,
     edge_s: ArrayLike,
@@ -151,8 +210,8 @@ def noise_on_a_neighbour_v(
     """
     edge = np.asarray(edge_s, dtype=float)
     forward = STEEPEST * np.asarray(mode_delay_s, dtype=float) / (2 * edge)
-    covered = np.minimum(1.0, 2 * STEEPEST * np.asarray(coupled_delay_s, dtype=float) / edge)
-    return np.asarray(np.asarray(swing_v) * (forward + np.asarray(backward) * covered))
+    both = forward + near_end_share(edge, coupled_delay_s, backward)
+    return np.asarray(np.asarray(swing_v) * both)
 
 
 def fastest_edge_beside_a_neighbour_s(

@@ -49,3 +49,14 @@ def test_noise_falls_as_the_edge_slows():
     edges = np.geomspace(0.1e-9, 10e-9, 50)
     noise = crosstalk.noise_on_a_neighbour_v(3.3, edges, 0.5e-9, 0.05, 30e-12)
     assert (np.diff(noise) < 0).all()
+
+
+def test_matched_ends_see_the_bounds_and_never_more_than_their_limits():
+    """Near: Kb min(1, 1.854 Td/tr); far: min(1/2, 0.927 dtau/(2 tr))."""
+    edges = np.geomspace(1e-12, 100e-9, 60)
+    near, far = crosstalk.near_end_share(edges, 1e-9, 0.08), crosstalk.far_end_share(edges, -50e-12)
+    assert (near.max(), far.max()) == (0.08, 0.5)
+    assert (np.diff(near) <= 0).all()
+    assert (np.diff(far) <= 0).all()
+    assert near[-1] == pytest.approx(0.08 * 1.854e-9 / 100e-9)
+    assert far[-1] == pytest.approx(0.927 * 50e-12 / 200e-9)
