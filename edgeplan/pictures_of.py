@@ -95,7 +95,8 @@ def _source(nets: Nets, state: Candidates, passive: Passive, tolerance: float) -
 def _with_change(spectrum: Spectrum, passive: Passive, drawn: _Source, own: _Source) -> Spectrum:
     """The spectrum with its change against the net as drawn, by edge and by current. [dB]"""
     shown = passive.lines.exists[0] & (passive.over_budget[0] > 0)
-    absent = drawn.levels[shown] <= 1e-6 * drawn.levels.max()  # even lines of a square wave
+    weaker = np.minimum(drawn.levels, own.levels)
+    absent = weaker[shown] <= 1e-6 * drawn.levels.max()  # even lines of a square wave
     with np.errstate(divide="ignore", invalid="ignore"):
         whole = np.where(absent, 0.0, 20 * np.log10(own.levels / drawn.levels)[shown])
         edge = np.where(absent, 0.0, 20 * np.log10(own.edge / drawn.edge)[shown])

@@ -277,3 +277,18 @@ def test_what_a_proposal_changes_is_split_into_edge_and_current():
         if now.trace_dbuv_per_m[i] > -90:
             moved = after.cable_dbuv_per_m[i] - now.cable_dbuv_per_m[i]
             assert change == pytest.approx(moved, abs=0.01)
+
+
+def test_a_stated_sweep_of_the_clock_is_credited_and_told_with_its_net(copy, saltmarsh):
+    source = '{name = "osq", nets = ["REF50*", "SD_CLK"]}'
+    swept = source[:-1] + ', spread = {width = "5 %", rate = "30 kHz", profile = "triangle"}}'
+    found = plan.check(copy("saltmarsh", board_toml=(source, swept)))
+    before, after = (
+        next(c for n in r.nets if n.net == "REF50" for c in n.checks if c.check == "emission")
+        for r in (saltmarsh, found)
+    )
+    assert after.margin > before.margin
+    (note,) = (t for n in found.nets if n.net == "REF50" for t in n.notes if "osq" in t)
+    assert "sweeps by 5.0 % in all, 30 kHz triangle: credited" in note
+    texts = [a.text for a in found.assumptions if a.subject == "activity"]
+    assert texts == ["a stated triangular sweep of the clock is credited: REF50, REF50_PHY, SD_CLK"]
