@@ -145,6 +145,8 @@ class BoardFacts(Record):
     enclosure_attenuation_db: Decibel | AttenuationTable = Field(
         alias="enclosure_attenuation", default=0.0
     )
+    enclosure_source: str = ""
+    enclosure_provenance: Provenance = "datasheet"
     no_cables: bool = False
 
 

@@ -165,6 +165,8 @@ def radiation_of(board: Board) -> Radiation:
     notes += [_shield_note(c) for c in declared or () if c.shielded]
     if _all_measured(board):
         notes = []
+    if board.file.board.enclosure_attenuation_db:  # a table, or a number that is not 0
+        notes.append(_enclosure_note(board))
     return Radiation(
         board=board,
         target=target_of(board),
@@ -181,6 +183,18 @@ def _shield_note(cable: Cable) -> str:
     return (
         f"cable {cable.name}: shield and filter are credited by the stated attenuation alone "
         f"({cable.provenance}{': ' * bool(cable.source)}{cable.source})"
+    )
+
+
+def _enclosure_note(board: Board) -> str:
+    """What the enclosure takes off, and how that is known."""
+    facts = board.file.board
+    stated = facts.enclosure_attenuation_db
+    amount = "its table" if isinstance(stated, list) else f"{stated:g} dB"
+    known = f"{facts.enclosure_provenance}{': ' * bool(facts.enclosure_source)}"
+    return (
+        f"the enclosure takes {amount} off the field of the traces and nothing off the cables "
+        f"({known}{facts.enclosure_source})"
     )
 
 

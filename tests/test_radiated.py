@@ -315,6 +315,14 @@ def test_a_shield_that_states_its_attenuation_is_credited_that_and_says_where_it
     np.testing.assert_array_equal(*(p.cable_expected for p in both))
 
 
+def test_an_enclosure_says_what_it_takes_off_and_how_that_is_known():
+    shut = {"enclosure_attenuation_db": 20.0, "enclosure_provenance": "measured"}
+    (note,) = radiation_of(the_board(facts=shut | {"enclosure_source": "own chamber"})).notes
+    assert "20 dB off the field of the traces" in note
+    assert "(measured: own chamber)" in note
+    assert radiation_of(the_board()).notes == ()
+
+
 def test_an_attenuation_table_is_not_extrapolated_and_the_net_says_which_cable():
     short = {"name": "mains", "length_m": 1.5, "attenuation_db": [(30e6, 5.0), (300e6, 5.0)]}
     found = judge(the_board(cable=[short]))
