@@ -188,6 +188,7 @@ def test_a_line_under_solder_mask_is_a_solved_surface_line():
     top, bottom = (printed_line(rows, name, WIDTH_M) for name in ("L1", "L4"))
     for line in (top, bottom):
         assert (line.provenance, line.surface, line.problem) == (SOLVED, True, "")
+        assert line.assumed.startswith("mask taken as")
         assert line.impedance_ohm == pytest.approx(49.365, rel=3e-3)
         assert line.delay_s_per_m == pytest.approx(3.2726**0.5 / SPEED, rel=2e-3)
     assert surface_line(rows, WIDTH_M).layer == "L1"
