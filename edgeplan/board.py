@@ -96,11 +96,41 @@ class Cable(Record):
     provenance: Provenance = "datasheet"
 
 
+class SpreadClock(Record):
+    """A sweep of a clock's frequency on purpose; the width is the whole of it."""
+
+    width: Share = Field(gt=0, le=0.1)
+    rate_hz: Frequency = Field(alias="rate", gt=0)
+    profile: Literal["triangle", "other"]
+
+
 class ClockSource(Record):
     """Nets whose activity comes from one source and adds in amplitude."""
 
     name: str
     nets: list[str]
+    spread: SpreadClock | None = None
+
+
+class Transfer(Record):
+    """A measured transfer in the place of a mechanism, and who measured it how."""
+
+    file: str
+    replaces: Literal["trace", "cable"]
+    nets: list[str] = Field(default=["*"], min_length=1)
+    distance_m: Length = Field(alias="distance", gt=0)
+    antenna_factor: str | None = None
+    error_db: Decibel = Field(alias="error", default=4.0, ge=0)
+    source: str
+    provenance: Provenance = "measured"
+
+
+class MeasuredTransfer(Record):
+    """A transfer with its tables as read: pairs of frequency [Hz] and level [dB]."""
+
+    stated: Transfer
+    rows: tuple[tuple[float, float], ...]
+    antenna_factor: tuple[tuple[float, float], ...] = ()
 
 
 class BoardFacts(Record):
@@ -198,6 +228,8 @@ class Interface(Record):
     shortest_pulse_s: Time | None = Field(alias="shortest_pulse", default=None, gt=0)
     duty: Share = Field(default=0.5, gt=0, lt=1)
     duty_tolerance: Share = Field(default=0.0, ge=0, lt=0.5)
+    edge_skew_s: Time = Field(alias="edge_skew", default=0.0, ge=0)
+    may_spread: bool = True
     duty_distortion: Share | None = Field(default=None, gt=0, lt=0.5)
     noise_v: Voltage | None = Field(alias="noise", default=None, gt=0)
     jitter_limit_s: Time | None = Field(alias="jitter_limit", default=None, gt=0)
@@ -216,6 +248,7 @@ class Setting(Record):
     edge_up_s: Range[Time] | None = Field(alias="edge_up", default=None)
     edge_down_s: Range[Time] | None = Field(alias="edge_down", default=None)
     edge_levels: Literal["10-90", "20-80", "30-70", "0-100"] = "10-90"
+    edge_shape: Literal["trapezoid", "raised-cosine"] = "trapezoid"
     capacitance_f: Capacitance | Range[Capacitance] | None = Field(
         alias="capacitance", default=None
     )
@@ -224,11 +257,34 @@ class Setting(Record):
     source: str = ""
     provenance: Provenance = "datasheet"
 
+    def provenance_of(self, field: str) -> Provenance:  # noqa: ARG002 - all fields share it
+        """Where the value of one field comes from."""
+        return self.provenance
+
+
+class ModelledSetting(Setting):
+    """A setting of which a model gave some fields; those are named in ``modelled``."""
+
+    modelled: frozenset[str] = frozenset()
+
+    def provenance_of(self, field: str) -> Provenance:
+        """Where the value of one field comes from."""
+        return "model" if field in self.modelled else self.provenance
+
 
 class IbisFile(Record):
-    """Where a driver's model stands."""
+    """Where a driver's models stand, and the line their tables are read at."""
 
     file: str
+    component: str | None = None
+    impedance_ohm: Resistance = Field(alias="impedance", default=50.0, gt=0)
+
+
+class IbisInput(Record):
+    """Where an input's model stands."""
+
+    file: str
+    model: str
     component: str | None = None
 
 
@@ -253,11 +309,20 @@ class Receiver(Record):
     """An input of a part."""
 
     name: str
-    capacitance_f: Capacitance | Range[Capacitance] = Field(alias="capacitance")
+    capacitance_f: Capacitance | Range[Capacitance] | None = Field(
+        alias="capacitance", default=None
+    )
+    ibis: IbisInput | None = None
     longest_transition: LongestTransition | None = None
     overshoot: VoltageOrShare | None = None
     levels: str | None = None
     source: str = ""
+
+    @model_validator(mode="after")
+    def _capacitance_or_model(self) -> "Receiver":
+        if self.capacitance_f is None and self.ibis is None:
+            raise ValueError('an input needs its capacitance, for example capacitance = "4.5 pF"')
+        return self
 
 
 class LevelFamily(Record):
@@ -282,6 +347,9 @@ class Group(Record):
     activity: Activity | None = None
     clock_hz: Frequency | None = Field(alias="clock", default=None, gt=0)
     data_bps: Rate | None = Field(alias="data", default=None, gt=0)
+    pattern_bits: int | None = Field(default=None, ge=2)
+    burst_length_s: Time | None = Field(alias="burst_length", default=None, gt=0)
+    burst_period_s: Time | None = Field(alias="burst_period", default=None, gt=0)
     width_m: Length | None = Field(alias="width", default=None, gt=0)
     kind: Literal["digital", "differential", "analog", "power"] | None = None
     site: SiteKind | None = None
@@ -322,6 +390,9 @@ class Net(Record):
     activity: Activity | None = None
     clock_hz: float | None = None
     data_bps: float | None = None
+    pattern_bits: int | None = None
+    burst_length_s: float | None = None
+    burst_period_s: float | None = None
     driver: tuple[str, ...] = ()
     driver_pin: tuple[str, ...] = ()
     setting: tuple[str, ...] = ()
@@ -364,6 +435,7 @@ class BoardFile(Record):
 
     stack: list[Layer] = Field(min_length=1)
     cable: list[Cable] | None = None
+    transfer: list[Transfer] = Field(default_factory=list)
     clock_source: list[ClockSource] = Field(default_factory=list)
     board: BoardFacts
     emission: EmissionTarget
@@ -394,5 +466,6 @@ class Board(Record):
     nets: tuple[Net, ...]
     routes: tuple[RouteSegment, ...] = ()
     user_limits: tuple[Any, ...] = ()
+    transfers: tuple[MeasuredTransfer, ...] = ()
     inputs: tuple[InputFile, ...] = ()
     notes: tuple[Annotated[str, Field(description="printed under assumptions")], ...] = ()

@@ -33,6 +33,7 @@ if TYPE_CHECKING:
 
 PASS, NOT_JUDGED, INTERRUPTED = 0, 2, 130
 PICTURES = (".svg", ".png")
+DRIVER_FORMATS = ("table", "toml", "json", "csv")
 SCHEMAS = ("board", "net-list", "results")
 EXITS = "Exit: 0 every judged net {}, 1 some {}, or undecided, 2 could not judge, 130 interrupted."
 _THREADS = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS")
@@ -192,6 +193,48 @@ def limits(limit_id: str | None, output: Path) -> int:
     except ValueError as error:
         raise click.BadParameter(str(error), param_hint="ID") from error
     return _put({output: f"{text}\n".encode()}, quiet=True)
+
+
+@main.command(epilog="Exit: 0 printed, 2 the file, or with --strict a part of it, is not in order.")
+@click.argument("file", type=click.Path(exists=True, path_type=Path))
+@click.option(
+    "--impedance",
+    type=click.FloatRange(1, 1000),
+    default=50.0,
+    show_default=True,
+    metavar="OHM",
+    help="Of the line, where resistances are read off the tables.",
+)
+@click.option("--component", metavar="NAME", help="Whose pins and package count.")
+@click.option(
+    "--models",
+    metavar="PATTERN",
+    help="Models that fit, such as 'dq_*', are the settings of one driver.",
+)
+@click.option(
+    "--format",
+    type=click.Choice(DRIVER_FORMATS),
+    default="table",
+    show_default=True,
+    help="How the result is written; toml is ready for board.toml.",
+)
+@click.option("--strict", is_flag=True, help="Errors and notes about the file end the command.")
+@click.option("--quiet", "-q", is_flag=True, help="No notes about the file.")
+@_OUTPUT
+def drivers(file: Path, strict: bool, quiet: bool, output: Path, **wanted: Any) -> int:
+    """List the drivers and settings of a model FILE (IBIS)."""
+    from edgeplan import driver_text
+    from edgeplan.readers import ibis
+
+    reading = ibis.read_file(file)
+    told = [*reading.errors, *reading.notes]
+    if strict and told:
+        raise InputError(told)
+    text = driver_text.of_file(reading.models, form=wanted.pop("format"), **wanted)
+    refuse_inputs({reading.models.sha256}, {output: b""})
+    if told and not quiet:
+        _say(_shown(str(InputError(told))))
+    return _put({output: _bytes(text)}, quiet=quiet)
 
 
 @main.command(epilog="Exit: 0 written, 2 nothing written.")

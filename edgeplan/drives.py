@@ -34,7 +34,8 @@ class SettingCorners:
     """One setting: resistance, edges and pad capacitance at every corner and direction.
 
     ``ramp_s`` is the 0-100 % raised cosine of the waveforms, ``trapezoid_s`` the 0-100 %
-    straight ramp of the spectrum; both come from the same stated edge.
+    straight ramp of the spectrum; both come from the same stated edge. ``edge_shape`` says
+    which of the two the spectrum is that of.
     """
 
     setting: str
@@ -42,15 +43,24 @@ class SettingCorners:
     ramp_s: Mapping[str, Quantity]
     trapezoid_s: Mapping[str, Quantity]
     pad_f: Quantity
+    edge_shape: str = "trapezoid"
     source: str = ""
     missing: tuple[str, ...] = field(default=())
 
     @property
+    def equal_edges(self) -> bool:
+        """Whether rising and falling take equally long."""
+        return _alike(self.ramp_s["rising"], self.ramp_s["falling"])
+
+    @property
+    def equal_resistance(self) -> bool:
+        """Whether the output drives high as strongly as low."""
+        return _alike(self.resistance_ohm["rising"], self.resistance_ohm["falling"])
+
+    @property
     def symmetric(self) -> bool:
         """Whether rising and falling are mirror images."""
-        return all(
-            _alike(both["rising"], both["falling"]) for both in (self.resistance_ohm, self.ramp_s)
-        )
+        return self.equal_resistance and self.equal_edges
 
 
 def _alike(first: Quantity, second: Quantity) -> bool:
@@ -127,29 +137,26 @@ def setting_corners(setting: Setting) -> SettingCorners:
     >>> corners.resistance_ohm["rising"].slow, corners.missing
     (40.0, ('minimum edge',))
     """
-    spread, origin = setting.spread, setting.provenance
-    up = setting.resistance_up_ohm or setting.resistance_ohm
-    down = setting.resistance_down_ohm or setting.resistance_ohm
-    edge_up = setting.edge_up_s or setting.edge_s
-    edge_down = setting.edge_down_s or setting.edge_s
+    spread, origin = setting.spread, setting.provenance_of
     resistance = {
-        "rising": _corners(up, spread, origin),
-        "falling": _corners(down, spread, origin),
+        direction: _corners(stated, spread, origin(name))
+        for direction, (name, stated) in _sides(setting, "resistance{}_ohm").items()
     }
     edge = {
-        "rising": _corners(edge_up, spread, origin),
-        "falling": _corners(edge_down, spread, origin),
+        direction: _corners(stated, spread, origin(name))
+        for direction, (name, stated) in _sides(setting, "edge{}_s").items()
     }
     raised = 1 / RAISED_COSINE_SHARE[setting.edge_levels]
     straight = 1 / STRAIGHT_SHARE[setting.edge_levels]
     pad = 0.0 if setting.capacitance_f is None else setting.capacitance_f
-    pads = _pad_corners(pad, origin)
+    pads = _pad_corners(pad, origin("capacitance_f"))
     return SettingCorners(
         setting=setting.setting,
         resistance_ohm=resistance,
         ramp_s={d: _scaled(q, raised) for d, q in edge.items()},
         trapezoid_s={d: _scaled(q, straight) for d, q in edge.items()},
         pad_f=pads,
+        edge_shape=setting.edge_shape,
         source=setting.source,
         missing=(
             *_missing("resistance", resistance),
@@ -157,6 +164,16 @@ def setting_corners(setting: Setting) -> SettingCorners:
             *_missing("capacitance", {"pad": pads}),
         ),
     )
+
+
+def _sides(setting: Setting, field: str) -> dict[str, tuple[str, Range[float] | None]]:
+    """Field and value of each direction: its own, else the one both share."""
+    found = {}
+    for direction, word in zip(DIRECTIONS, ("_up", "_down"), strict=True):
+        own, shared = field.format(word), field.format("")
+        name = own if getattr(setting, own) is not None else shared
+        found[direction] = name, getattr(setting, name)
+    return found
 
 
 def _pad_corners(stated: Range[float] | float, provenance: str) -> Quantity:

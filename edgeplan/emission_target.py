@@ -1,7 +1,6 @@
 """What emission is judged against: limit lines, margin, and up to which frequency."""
 
 from dataclasses import dataclass
-from math import isinf
 from typing import Any
 
 import numpy as np
@@ -65,21 +64,17 @@ def target_of(board: Board) -> Target:
     own = {line.id: line for line in board.user_limits}
     lines = tuple(own.get(name) or limits.line(name) for name in emission.limits)
     internal = board.file.board.highest_internal_frequency_hz
-    rules = [limits.highest_frequency_hz(line.id, internal) for line in lines if line.id not in own]
-    by_rule = [r for r in rules if r.rule != "end-of-line"] or rules
-    covered = max(line.highest_hz for line in lines)
-    highest = by_rule[0].highest_hz if by_rule else covered
-    highest = covered if isinf(highest) else highest
+    judged = limits.judged_range(lines, own, internal)
     unverified = [f"limit line {line.id}" for line in lines if not line.verified]
-    unverified += sorted({f"rule {r.rule}" for r in by_rule if not r.verified})
+    unverified += [f"rule {rule}" for rule in judged.unverified_rules]
     return Target(
         lines=lines,
         margin_db=emission.margin_db,
         statistic=emission.statistic,
-        lowest_hz=min(line.lowest_hz for line in lines),
-        highest_hz=highest,
-        highest_rule=by_rule[0].rule if by_rule else "end-of-line",
-        covered_to_hz=min(covered, highest) if covered < highest else highest,
+        lowest_hz=judged.lowest_hz,
+        highest_hz=judged.highest_hz,
+        highest_rule=judged.rule,
+        covered_to_hz=judged.covered_to_hz,
         unverified=tuple(unverified),
     )
 

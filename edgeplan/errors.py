@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True)
 class Problem:
-    """One wrong value.  Rows and columns count from 1.
+    """One wrong value, or a note about a strange one.  Rows and columns count from 1.
 
     Examples
     --------
@@ -22,11 +22,12 @@ class Problem:
     column: int
     field: str = ""
     hint: str = ""
+    severity: str = "error"
 
     def __str__(self) -> str:
         field = f"{self.field}: " if self.field else ""
         hint = f"\n  hint: {self.hint}" if self.hint else ""
-        return f"{self.file}:{self.row}:{self.column}: error: {field}{self.message}{hint}"
+        return f"{self.file}:{self.row}:{self.column}: {self.severity}: {field}{self.message}{hint}"
 
 
 def _place(problem: Problem) -> tuple[str, int, int, str, str]:

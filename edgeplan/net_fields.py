@@ -2,7 +2,6 @@
 
 from collections.abc import Sequence
 from dataclasses import replace
-from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -14,18 +13,19 @@ from edgeplan.emission import inner_layer
 from edgeplan.emission import trace as trace_part
 from edgeplan.emission.mechanism import Cable, RadiationInputs
 from edgeplan.nets import NetFacts, Nets
+from edgeplan.physics.driver_stub import StubPlaces, site_transfer, with_stub
 from edgeplan.physics.lines import LineConstants, propagation
-from edgeplan.physics.network import response
+from edgeplan.physics.network import Trees, response
 from edgeplan.physics.radiation import finite_board_factor
 from edgeplan.physics.routed_imbalance import CommonModeVolts, common_mode_per_volt
 from edgeplan.physics.routed_radiation import Layout, routed_field_per_volt
-from edgeplan.physics.stripline_leakage import stitching_distance_m
 from edgeplan.physics.tree_currents import end_states
 from edgeplan.stack import Line, surface_line
 
 Array = NDArray[Any]
 
 ROUTED, STRAIGHT, INNER = "routed", "straight", "inner"
+FROM_PAD = "routed from the pad"  # a routed net whose line before its resistor has a place
 SIDES = ("left", "right", "bottom", "top")
 
 
@@ -40,35 +40,33 @@ def kind_of(facts: NetFacts) -> str:
     return STRAIGHT if facts.path.main_line.surface else INNER
 
 
-def remarks(facts: NetFacts, highest_hz: float) -> list[str]:
-    """What was assumed about where a net runs, and what of it is not judged.
+def remarks(facts: NetFacts) -> list[str]:
+    """What was assumed about where a net runs.
 
     Parameters
     ----------
     facts : NetFacts
         One net.
-    highest_hz : float
-        Highest judged frequency. [Hz]
 
     Returns
     -------
     list of str
-        Sentences for the report; empty for a surface net over one plane.
+        Sentences for the report; empty for a surface net.
     """
     found = []
     if kind_of(facts) == INNER:
         piece = inner_layer.BREAKOUT_M * 1e3
         found.append(f"runs between planes: {piece:g} mm of surface at each end is assumed")
-    lines = [piece.line for piece in facts.path.pieces]
-    for near, far in pairwise(lines):
-        if near.planes and far.planes and not set(near.planes) & set(far.planes):
-            permittivity = max(near.permittivity, far.permittivity)
-            within = float(stitching_distance_m(highest_hz, permittivity)) * 1e3
-            found.append(
-                f"its return changes from plane {near.planes[0]} to {far.planes[0]}: what that "
-                f"radiates is not judged; join the planes within {within:.1f} mm of the via"
-            )
-            break
+    pairs = {" and ".join(p.line.planes) for p in facts.path.pieces if len(p.line.planes) > 1}
+    if pairs:
+        found.append(
+            f"planes {', '.join(sorted(pairs))} count as joined all along the net; what a cavity "
+            "between them radiates is not judged"
+        )
+    if facts.path.is_placed and facts.path.stub_m > 0 and not has_placed_stub(facts):
+        found.append(
+            "the line before its resistor has no position in routes.csv and counts for timing only"
+        )
     return found
 
 
@@ -95,8 +93,13 @@ def fields_per_volt(
         surroundings are not known. [V/V]
     """
     trace, cable = np.full((2, *frequency_hz.shape), np.nan)
-    ways = {ROUTED: _routed, STRAIGHT: _straight, INNER: _between_planes}
-    kinds = np.array([kind_of(f) for f in nets.facts])
+    ways = {
+        ROUTED: _routed,
+        FROM_PAD: _routed_from_pad,
+        STRAIGHT: _straight,
+        INNER: _between_planes,
+    }
+    kinds = np.array([FROM_PAD if has_placed_stub(f) else kind_of(f) for f in nets.facts])
     for kind, way in ways.items():
         index = np.flatnonzero(kinds == kind)
         if not index.size:
@@ -178,12 +181,58 @@ def _offset_m(facts: NetFacts, half_width_m: float) -> float:
     return 0.0 if side is None else max(half_width_m - side, 0.0)
 
 
+def has_placed_stub(facts: NetFacts) -> bool:
+    """Whether the line between driver and series resistor is known and has a place.
+
+    Parameters
+    ----------
+    facts : NetFacts
+        One net.
+
+    Returns
+    -------
+    bool
+        True for routed nets whose stub radiates with them.
+    """
+    path = facts.path
+    return path.is_placed and path.stub_m > 0 and path.pad_m is not None
+
+
 def _routed(
     board: Board, cables: tuple[Cable, ...] | None, nets: Nets, frequency_hz: Array
 ) -> tuple[Array, Array]:
     """Nets summed over their segments, where they lie and which way they run."""
+    return _summed(board, cables, nets, (nets.trees["fast"], _layout(nets)), frequency_hz)
+
+
+def _routed_from_pad(
+    board: Board, cables: tuple[Cable, ...] | None, nets: Nets, frequency_hz: Array
+) -> tuple[Array, Array]:
+    """Nets summed from the driver's pad on: the line before the resistor radiates with them."""
+    lines = [f.path.stub_line for f in nets.facts]
+    gap_m = np.nan_to_num([line.plane_gap_m for line in lines])
+    places = StubPlaces(
+        pad_m=np.array([f.path.pad_m for f in nets.facts], dtype=float),
+        height_m=np.where(gap_m > 0, 0.0, [line.height_m for line in lines]),
+        permittivity=np.array([line.permittivity for line in lines]),
+        plane_gap_m=gap_m,
+    )
+    from_pad = with_stub(nets.trees["fast"], _layout(nets), places)
+    behind = np.abs(site_transfer(from_pad[0], frequency_hz))
+    trace, cable = _summed(board, cables, nets, from_pad, frequency_hz)
+    return trace / behind, cable / behind
+
+
+def _summed(
+    board: Board,
+    cables: tuple[Cable, ...] | None,
+    nets: Nets,
+    drawn: tuple[Trees, Layout],
+    frequency_hz: Array,
+) -> tuple[Array, Array]:
+    """Fields per volt at node 0 of nets as drawn."""
     size = board.file.board.size_m
-    trees, layout = nets.trees["fast"], _layout(nets)
+    trees, layout = drawn
     field = routed_field_per_volt(trees, layout, frequency_hz)
     trace = field * finite_board_factor(frequency_hz, max(size))
     if cables == ():

@@ -8,14 +8,17 @@ import numpy as np
 from numpy.typing import NDArray
 
 from edgeplan import verdicts, words
-from edgeplan.board import Board
+from edgeplan.board import Board, Transfer
 from edgeplan.candidates import COST_NAMES, Candidates
 from edgeplan.checks import CheckTable, condition_words
 from edgeplan.drives import CORNERS
 from edgeplan.emission import cable as cable_part
+from edgeplan.emission import inner_layer as inner_part
 from edgeplan.emission import trace as trace_part
+from edgeplan.emission.measured_transfer import MODEL as MEASURED_MODEL
 from edgeplan.emission.mechanism import Mechanism
 from edgeplan.evaluate import Evaluation
+from edgeplan.net_fields import INNER, kind_of
 from edgeplan.nets import NetFacts
 from edgeplan.physics.radiation import level_dbuv_per_m
 from edgeplan.results import (
@@ -59,6 +62,7 @@ class NetState:
     edges_s: dict[str, float]
     entries: tuple[tuple[str, str, float], ...]
     out_of_reach_hz: tuple[float, ...]
+    measured: dict[str, Transfer]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -232,7 +236,7 @@ def _check(
     pins = facts.net.receiver_pin
     place = pins[receiver] if receiver < len(pins) else ""
     is_emission = table.check == "emission"
-    extra = _emission_extra(table, row, column, state) if is_emission else {}
+    extra = _emission_extra(table, row, column, state, facts) if is_emission else {}
     if is_emission and decided:
         beyond = state.out_of_reach_hz
         extra["out_of_reach_hz"] = list(beyond)
@@ -260,15 +264,17 @@ def _check(
         )
         if decided and isfinite(table.error_low[row, column])
         else None,
-        provenance=_provenance(table, facts, state.setting),
+        provenance=_provenance(table, facts, state),
         undecided_because="" if decided else table.because[row] or "no number",
         limit_edge_s=_number(state.window.limit_edge_s.get(table.check, np.nan)),
         **extra,
     )
 
 
-def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -> dict[str, Any]:
-    """Frequency, harmonic number, detector and parts of an emission level."""
+def _emission_extra(
+    table: CheckTable, row: int, column: int, state: NetState, facts: NetFacts
+) -> dict[str, Any]:
+    """Frequency, harmonic number (data have none), detector and parts of an emission level."""
     if not table.decided[row, column] and not isfinite(table.extra["trace"][row, column]):
         return {}
     order = float(table.extra["order"][row, column])
@@ -276,34 +282,49 @@ def _emission_extra(table: CheckTable, row: int, column: int, state: NetState) -
     trace = float(level_dbuv_per_m(table.extra["trace"][row, column]))
     expected = float(level_dbuv_per_m(table.extra["cable_expected"][row, column]))
     up_to = float(level_dbuv_per_m(table.extra["cable_up_to"][row, column]))
-    parts = [_part(trace_part.MODEL, trace, trace)]
+    own = inner_part.MODEL if kind_of(facts) == INNER else trace_part.MODEL
+    measured, errors = (
+        state.measured,
+        {name: float(table.extra[f"{name}_error_db"][row, column]) for name in ("trace", "cable")},
+    )
+    parts = [_part("trace", own, (trace, trace), errors, measured)]
     if isfinite(expected):
-        parts.append(_part(cable_part.MODEL, expected, up_to))
+        parts.append(_part("cable", cable_part.MODEL, (expected, up_to), errors, measured))
     return {
         "frequency_hz": _number(table.extra["frequency_hz"][row, column]),
-        "order": round(order) if abs(order - round(order)) < 1e-6 else None,
+        "order": round(order) if abs(order - np.round(order)) < 1e-6 else None,
         "detector": state.entries[entry][1] if state.entries else "",
         "parts": [p for p in parts if isfinite(p.expected_dbuv_per_m)],
     }
 
 
-def _part(model: Mechanism, expected: float, up_to: float) -> EmissionPart:
-    """One mechanism's levels with its stated error."""
+def _part(
+    mechanism: str,
+    model: Mechanism,
+    levels: tuple[float, float],
+    errors_db: dict[str, float],
+    measured: dict[str, Transfer],
+) -> EmissionPart:
+    """One mechanism's levels with the stated error of its model there, or of what was measured."""
+    model = MEASURED_MODEL if mechanism in measured else model
+    expected, up_to = levels
+    error_db = errors_db[mechanism]
     return EmissionPart(
-        mechanism=model.name,
-        model=model.name,
+        mechanism=mechanism,
+        model=model.name.replace("_", " "),
         expected_dbuv_per_m=expected,
         up_to_dbuv_per_m=up_to,
-        error_db=Spread(low=-model.error_db, high=model.error_db),
+        error_db=Spread(low=-error_db, high=error_db),
     )
 
 
-def _provenance(table: CheckTable, facts: NetFacts, setting: int) -> list[str]:
+def _provenance(table: CheckTable, facts: NetFacts, state: NetState) -> list[str]:
     """Where the numbers of a check came from, each once."""
-    corners = facts.settings[setting]
+    corners = facts.settings[state.setting]
     found = [corners.resistance_ohm["rising"].provenance, corners.ramp_s["rising"].provenance]
     if table.check == "emission":
         found.append("assumed" if facts.net.side_distance_m is None else "datasheet")
+        found += [transfer.provenance for transfer in state.measured.values()]
     if facts.path.main_line.provenance == "stated":
         found.append("datasheet")
     return sorted(set(found))
@@ -440,13 +461,14 @@ def _candidate(draft: NetDraft, k: int, rejected: list[int]) -> Candidate:
 
 def _setting(facts: NetFacts, state: str, setting: str) -> CandidateSetting:
     """The setting of the driver pin in one state."""
+    corners = next(c for c in facts.settings if c.setting == setting)
     return CandidateSetting(
         driver_pin=facts.net.driver_pin[0] if facts.net.driver_pin else "",
         state=state,
         setting=setting,
         bank=facts.net.bank[0] if facts.net.bank else "",
-        provenance=facts.settings[facts.setting].resistance_ohm["rising"].provenance,
-        source=facts.driver.source,
+        provenance=corners.resistance_ohm["rising"].provenance,
+        source=corners.source or facts.driver.source,
     )
 
 

@@ -10,8 +10,18 @@ import numpy as np
 from numpy.typing import NDArray
 
 from edgeplan import levels
-from edgeplan.board import Board, Direction, Driver, Interface, Net, Range, Receiver
+from edgeplan.board import (
+    Board,
+    ClockSource,
+    Direction,
+    Driver,
+    Interface,
+    Net,
+    Range,
+    Receiver,
+)
 from edgeplan.drives import CORNERS, SettingCorners, driver_corners
+from edgeplan.names import matches
 from edgeplan.physics.lines import LineConstants
 from edgeplan.physics.network import Trees
 from edgeplan.results import Missing
@@ -48,6 +58,7 @@ class NetFacts:
     receivers: tuple[Receiver, ...]
     direction: Direction | None
     path: Path
+    sources: tuple[ClockSource, ...] = ()
 
     @property
     def clock_like(self) -> bool:
@@ -157,6 +168,7 @@ class _LookUp:
         self.driver = {d.name: d for d in board.file.driver}
         self.receiver = {r.name: r for r in board.file.receiver}
         self.corners = {d.name: driver_corners(d) for d in board.file.driver}
+        self.sources = board.file.clock_source
         self.line: Callable[[str, float], Line] = lambda layer, width: printed_line(
             board.file.stack, layer, width, board.file.impedance
         )
@@ -215,6 +227,11 @@ def _facts(net: Net, routes: Mapping[str, list[Any]], look_up: _LookUp) -> NetFa
         receivers=receivers,
         direction=next((d for d in interface.direction if d.driver == driver.name), None),
         path=path_of(net, routes.get(net.net, ()), look_up.line, clock_like=clock_like),
+        sources=tuple(
+            source
+            for source in look_up.sources
+            if any(matches(p, name) for p in source.nets for name in (net.net, net.far_net or ""))
+        ),
     )
 
 
@@ -244,7 +261,7 @@ def _capacitance(receiver: Receiver, corner: str) -> float:
     """Input capacitance at a corner: largest when slow, smallest when fast; else the typical."""
     stated = receiver.capacitance_f
     if not isinstance(stated, Range):
-        return float(stated)
+        return nan if stated is None else float(stated)
     at = {"slow": stated.max, "typical": None, "fast": stated.min}[corner]
     if at is not None:
         return float(at)
@@ -256,6 +273,9 @@ def _capacitance(receiver: Receiver, corner: str) -> float:
 def _with_both_capacitances(receiver: Receiver) -> Receiver:
     """The receiver, or which end of its capacitance is missing: a maximum is no minimum."""
     stated = receiver.capacitance_f
+    if stated is None:
+        owner = f"receiver {receiver.name}"
+        raise CannotRoute(f"{owner} states no capacitance", value="capacitance", of=owner)
     if isinstance(stated, Range) and stated.typ is None:
         for word, value in (("minimum", stated.min), ("maximum", stated.max)):
             if value is None:

@@ -6,18 +6,18 @@ from typing import Any, Literal, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from edgeplan.activity import is_data
 from edgeplan.candidates import Candidates, drive, setting_table
 from edgeplan.draft import Draft
-from edgeplan.emission_lines import is_data
 from edgeplan.emission_target import Target
 from edgeplan.nets import Nets
 from edgeplan.physics import waveforms
-from edgeplan.physics.edge_factor import null_free_edge_factor
 from edgeplan.physics.radiation import level_dbuv_per_m
 from edgeplan.physics.spectra import corner_frequencies_hz
 from edgeplan.radiated import Passive, source_levels
 from edgeplan.results import Pictures, Spectrum, Trace
 from edgeplan.scoring import Block
+from edgeplan.source_edges import edge_shares
 
 Array = NDArray[Any]
 
@@ -71,6 +71,12 @@ def draw(block: Block, row: int, draft: Draft) -> Pictures:
     return Pictures(waveforms=traces, spectra=spectra, thresholds_v=thresholds)
 
 
+def _ramp_s(nets: Nets, state: Candidates, direction: str) -> float:
+    """Ramp of one edge at the fast corner. [s]"""
+    table = setting_table(nets, "trapezoid_s", "fast", direction)
+    return float(table[0, state.setting[0, 0]] * state.ramp_factor[0, 0])
+
+
 class _Source(NamedTuple):
     """Volts over D of one state at every line, and the share of its edge in them. (F,)"""
 
@@ -79,12 +85,10 @@ class _Source(NamedTuple):
 
 
 def _source(nets: Nets, state: Candidates, passive: Passive, tolerance: float) -> _Source:
-    """Source levels of one state and its edge factor, fast corner, the faster edge."""
-    tables = [setting_table(nets, "trapezoid_s", "fast", d) for d in ("rising", "falling")]
-    ramp_s = np.fmin(*tables)[0, state.setting[0, 0]] * state.ramp_factor[0, 0]
+    """Source levels of one state and the share of its edges in them, fast corner."""
     return _Source(
         levels=source_levels(nets, state, passive, tolerance)[0, 0],
-        edge=null_free_edge_factor(passive.lines.frequency_hz[0] * ramp_s),
+        edge=edge_shares(nets, state, passive.lines)[0, 0],
     )
 
 
@@ -150,8 +154,7 @@ def _spectrum(
     """Levels of every judged line against its limit."""
     facts, lines = nets.facts[0], passive.lines
     shown = lines.exists[0] & (passive.over_budget[0] > 0)
-    ramp = setting_table(nets, "trapezoid_s", "fast", "falling")
-    ramp_s = float(ramp[0, state.setting[0, 0]] * state.ramp_factor[0, 0])
+    ramp_s = min(_ramp_s(nets, state, direction) for direction in ("rising", "falling"))
     low, high = corner_frequencies_hz(facts.interface.duty, ramp_s, 1 / lines.toggle_hz[0])
     trace = levels * passive.trace[0]
     expected = levels * passive.cable_expected[0]
@@ -168,7 +171,10 @@ def _spectrum(
         state=when,
         detector=detector,
         frequency_hz=[float(f) for f in lines.frequency_hz[0][shown]],
-        order=[0 if is_data(facts) else round(float(n)) for n in lines.order[0][shown]],
+        order=[
+            0 if is_data(facts) and not single else round(float(n))
+            for n, single in zip(lines.order[0][shown], lines.discrete[0][shown], strict=True)
+        ],
         expected_dbuv_per_m=decibels(np.hypot(trace, expected)),
         up_to_dbuv_per_m=decibels(np.hypot(trace, up_to)),
         trace_dbuv_per_m=decibels(trace),

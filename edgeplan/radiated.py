@@ -5,7 +5,7 @@ a candidate costs one division and one multiplication per line.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -20,13 +20,15 @@ from edgeplan.emission import trace as trace_part
 from edgeplan.emission.mechanism import Cable as RadiatingCable
 from edgeplan.emission_lines import EmissionLines, lines_of
 from edgeplan.emission_target import Target, target_of
+from edgeplan.limits import DetectorLine
 from edgeplan.net_fields import fields_per_volt
 from edgeplan.nets import Nets
-from edgeplan.physics.edge_factor import null_free_edge_factor
 from edgeplan.physics.floor_reflection import near_field_factor, site_factor
 from edgeplan.physics.network import response
 from edgeplan.physics.sources import source_terms, source_weights, stub_chain
 from edgeplan.results import Missing
+from edgeplan.source_edges import edge_shares
+from edgeplan.transfers import Replaced, gaps, of_net, replaced
 
 Array = NDArray[Any]
 
@@ -40,7 +42,8 @@ class Passive:
     ``over_budget`` is level over budget per volt; ``filtered`` the same with a good
     filter on all cables (where nothing is declared about them). ``to_level`` turns a
     level over budget into a field; ``entry`` says which line and detector binds; ``unreached``
-    whose stated table, per net, does not reach every judged line.
+    whose stated table, per net, does not reach every judged line; ``measured`` what transfers
+    replace, by part, and ``unmeasured`` why one of them leaves a net open.
     """
 
     lines: EmissionLines
@@ -51,21 +54,33 @@ class Passive:
     cable_expected: Array
     cable_up_to: Array
     cable_judged: Array
+    cable_error_db: Array
     budget_dbuv_per_m: Array
     entry: Array
     entries: tuple[tuple[str, str, float], ...]
     unreached: tuple[str, ...]
+    measured: dict[str, Replaced]
+    unmeasured: tuple[tuple[str, Missing] | None, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Radiation:
-    """Emission target of a board and its cables; judges candidates."""
+    """Emission target of a board and its cables; judges candidates.
+
+    ``more_cable_db`` is taken off every cable beside what it states. [dB]
+    """
 
     board: Board
     target: Target
     cables: tuple[Cable, ...]
     cable_state: str
     notes: tuple[str, ...] = ()
+    more_cable_db: float = 0.0
+
+    @property
+    def cable_count(self) -> int | None:
+        """Number of declared cables; None where nothing is declared."""
+        return None if self.cable_state == UNKNOWN and not self.cables else len(self.cables)
 
     def passive(self, nets: Nets) -> Passive:
         """Passive quantities of a block, worked out once.
@@ -147,7 +162,9 @@ def radiation_of(board: Board) -> Radiation:
             for c in declared
             if _undeclared(c)
         ]
-    notes += [f"cable {c.name}: its shield is not credited" for c in declared or () if c.shielded]
+    notes += [_shield_note(c) for c in declared or () if c.shielded]
+    if _all_measured(board):
+        notes = []
     return Radiation(
         board=board,
         target=target_of(board),
@@ -155,6 +172,22 @@ def radiation_of(board: Board) -> Radiation:
         cable_state=state,
         notes=tuple(notes),
     )
+
+
+def _shield_note(cable: Cable) -> str:
+    """What a shield is credited: nothing, or what its cable states as attenuation."""
+    if cable.attenuation_db is None:
+        return f"cable {cable.name}: its shield is not credited"
+    return (
+        f"cable {cable.name}: shield and filter are credited by the stated attenuation alone "
+        f"({cable.provenance}{': ' * bool(cable.source)}{cable.source})"
+    )
+
+
+def _all_measured(board: Board) -> bool:
+    """Whether a measured transfer is in the place of the cables for every judged net."""
+    judged = [n.net for n in board.nets if n.kind == "digital"]
+    return bool(judged) and all(of_net(board, name, "cable") for name in judged)
 
 
 def _undeclared(cable: Cable) -> bool:
@@ -188,33 +221,32 @@ def source_levels(nets: Nets, candidates: Candidates, passive: Passive, toleranc
         levels = _one_direction(nets, candidates, passive, tolerance, direction)
         found = levels if found is None else np.maximum(found, levels)
     assert found is not None  # noqa: S101 - there is always an edge
-    return found
+    with np.errstate(invalid="ignore"):
+        return np.asarray(found * edge_shares(nets, candidates, passive.lines))
 
 
 def _edges(nets: Nets) -> Sequence[str]:
-    """Edges to judge: one where rising and falling are alike."""
+    """Output states to judge: one where driving high and low are alike."""
     if all(f.timing == "open-drain" for f in nets.facts):
         return ("falling",)
-    alike = all(s.symmetric for f in nets.facts for s in f.settings)
+    alike = all(s.equal_resistance for f in nets.facts for s in f.settings)
     return DIRECTIONS[:1] if alike else DIRECTIONS
 
 
 def _one_direction(
     nets: Nets, candidates: Candidates, passive: Passive, tolerance: float, direction: str
 ) -> Array:
-    """Source amplitude times edge factor over |D|. (N, C, F)"""
+    """Source amplitude with edges of no length over |D|. (N, C, F)"""
     at = np.arange(len(nets))[:, None], candidates.setting
     resistance = setting_table(nets, "resistance_ohm", "fast", direction)[at]
     pad = setting_table(nets, "pad_f", "fast", None)[at]
-    ramp = setting_table(nets, "trapezoid_s", "fast", direction)[at] * candidates.ramp_factor
     series = candidates.series_ohm * (1 - tolerance)
     weights = source_weights(resistance, series, pad).astype(np.complex64)
     ratio = np.abs(weights @ passive.terms)
-    edge = null_free_edge_factor(passive.lines.frequency_hz[:, None, :] * ramp[:, :, None])
     swing = nets.swing_v["fast"][:, None, None]
     source = swing * passive.lines.per_swing[:, None, :]
     with np.errstate(invalid="ignore"):
-        return np.asarray(source * edge / ratio)
+        return np.asarray(source / ratio)
 
 
 def _worst_line(per_volt: Array, levels: Array) -> tuple[Array, Array]:
@@ -235,7 +267,7 @@ def _table(
     """The check table of the worst line of every candidate."""
     over, line = worst
     rows = np.arange(len(nets))[:, None]
-    open_cables = np.zeros(over.shape, dtype=bool)
+    settled = open_cables = np.zeros(over.shape, dtype=bool)
     if filtered is not None:
         settled = filtered[0] > 1
         open_cables = (over > 1) & ~settled
@@ -250,7 +282,16 @@ def _table(
         name: at_line * getattr(passive, name)[rows, line]
         for name in ("trace", "cable_expected", "cable_up_to")
     }
-    error = _error_db(parts["trace"], parts["cable_expected"])
+    filter_db = cable_part.undeclared_filter_db(passive.lines.frequency_hz[rows, line])
+    credit = np.where(settled, 10 ** (-filter_db / 20), 1.0)  # judged with the filter: shown so
+    parts |= {name: parts[name] * credit for name in ("cable_expected", "cable_up_to")}
+    errors = {
+        "trace_error_db": np.full(over.shape, trace_part.MODEL.error_db),
+        "cable_error_db": passive.cable_error_db[rows, line],
+    }
+    for name, part in passive.measured.items():
+        errors[f"{name}_error_db"] = part.error_or(errors[f"{name}_error_db"])
+    error = _error_db(parts["trace"], parts["cable_expected"], **errors)
     because, missing = _reasons(nets, passive, open_cables, levels)
     return CheckTable(
         check="emission",
@@ -268,21 +309,20 @@ def _table(
         error_high=error,
         extra={
             "frequency_hz": passive.lines.frequency_hz[rows, line],
-            "order": passive.lines.order[rows, line],
+            "order": passive.lines.number[rows, line],
             "entry": passive.entry[rows, line],
+            **errors,
             **parts,
         },
     )
 
 
-def _error_db(trace: Array, cable: Array) -> Array:
+def _error_db(trace: Array, cable: Array, trace_error_db: Array, cable_error_db: Array) -> Array:
     """Stated error of the sum: that of each part by its share of the power. [dB]"""
     power = trace**2 + cable**2
     with np.errstate(invalid="ignore", divide="ignore"):
-        mixed = (
-            trace**2 * trace_part.MODEL.error_db + cable**2 * cable_part.MODEL.error_db
-        ) / power
-    return np.asarray(np.nan_to_num(mixed, nan=cable_part.MODEL.error_db))
+        mixed = (trace**2 * trace_error_db + cable**2 * cable_error_db) / power
+    return np.where(np.isnan(mixed), np.maximum(trace_error_db, cable_error_db), mixed)
 
 
 def _reasons(
@@ -295,6 +335,8 @@ def _reasons(
         if not np.isfinite(passive.lines.toggle_hz[i]):
             because[i] = "neither clock_mhz nor data_mbps is given"
             missing[i] = Missing(value="clock_mhz or data_mbps", of=f"net {f.net.net}")
+        elif (gap := passive.unmeasured[i]) is not None:
+            because[i], missing[i] = gap
         elif np.isnan(passive.trace[i]).all():
             because[i] = (
                 "what the net radiates is not known: no surface layer, or a line without height"
@@ -338,9 +380,11 @@ def _passive(radiation: Radiation, nets: Nets) -> Passive:
     cables = _cables(radiation, lines.frequency_hz)
     trace, up_to = fields_per_volt(radiation.board, cables, nets, lines.frequency_hz)
     trace = trace * _enclosure(radiation.board, lines.frequency_hz)
-    expected = up_to * 10 ** (cable_part.MODEL.offset_db / 20)
+    offset_db = cable_part.expected_offset_db(lines.frequency_hz, radiation.cable_count)
+    expected = up_to * 10 ** (offset_db / 20)
     judged = up_to if radiation.target.statistic == "worst-case" else expected
-    fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to)
+    measured = replaced(radiation.board, nets.facts, lines.frequency_hz)
+    fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to, measured=measured)
     return _against_budget(radiation, lines, terms, fields)
 
 
@@ -352,6 +396,7 @@ class _Fields:
     judged: Array
     expected: Array
     up_to: Array
+    measured: dict[str, Replaced]
 
 
 def _against_budget(
@@ -361,31 +406,20 @@ def _against_budget(
     target = radiation.target
     shape = lines.frequency_hz.shape
     best = np.zeros(shape)
-    names = ("trace", "expected", "up_to", "judged", "budget", "filtered")
+    names = ("trace", "expected", "up_to", "judged", "filtered", "budget")
     found = {name: np.zeros(shape) for name in names}
     entry = np.zeros(shape, dtype=int)
     entries = target.at(lines.frequency_hz)
-    credit = 10 ** (-cable_part.undeclared_filter_db(lines.frequency_hz) / 20)
     for k, limit in enumerate(entries):
         stated = np.isfinite(limit.level_dbuv_per_m) & lines.exists
         budget_db = limit.level_dbuv_per_m - target.margin_db
-        detector = 10 ** (lines.detector_db(limit.detector, limit.bandwidth_hz) / 20)
-        received = detector * site_factor(lines.frequency_hz, limit.distance_m)
-        received = received / (np.sqrt(2) * limit.distance_m)
-        trace = fields.trace * near_field_factor(lines.frequency_hz, limit.distance_m) * received
         budget = 10 ** (budget_db / 20) * 1e-6
-        over = np.hypot(trace, fields.judged * received) / budget
-        take = stated & ~(over <= best)
+        level = _received(fields, lines, limit)
+        over = np.hypot(level["trace"], level["judged"]) / budget
+        take = stated & ~(over <= best) & ~np.isnan(best)  # what is not known stays so
         best = np.where(take, over, best)
-        with_filter = np.hypot(trace, fields.judged * received * credit) / budget
-        for name, value in (
-            ("trace", trace),
-            ("expected", fields.expected * received),
-            ("up_to", fields.up_to * received),
-            ("judged", fields.judged * received),
-            ("budget", budget_db),
-            ("filtered", with_filter),
-        ):
+        level["filtered"] = np.hypot(level["trace"], level["filtered"]) / budget
+        for name, value in (level | {"budget": budget_db}).items():
             found[name] = np.where(take, value, found[name])
         entry = np.where(take, k, entry)
     return Passive(
@@ -397,11 +431,35 @@ def _against_budget(
         cable_expected=found["expected"],
         cable_up_to=found["up_to"],
         cable_judged=found["judged"],
+        cable_error_db=cable_part.error_db(lines.frequency_hz, radiation.cable_count),
         budget_dbuv_per_m=found["budget"],
         entry=entry,
         entries=tuple((e.limit_id, e.detector, e.distance_m) for e in entries),
         unreached=_unreached(radiation, lines),
+        measured=fields.measured,
+        unmeasured=tuple(gaps(fields.measured, lines, target)),
     )
+
+
+def _received(fields: _Fields, lines: EmissionLines, limit: DetectorLine) -> dict[str, Array]:
+    """What the receiver of a limit line shows of each part per volt of source, rms. (N, F)"""
+    frequency_hz, distance_m = lines.frequency_hz, limit.distance_m
+    read_db = lines.detector_db(limit.detector, limit.bandwidth_hz, limit.limit_id)
+    detector = 10 ** (read_db / 20)
+    shown = detector * site_factor(frequency_hz, distance_m) / (np.sqrt(2) * distance_m)
+    credit = 10 ** (-cable_part.undeclared_filter_db(frequency_hz) / 20)
+    trace = fields.trace * near_field_factor(frequency_hz, distance_m) * shown
+    cable = {
+        "expected": fields.expected * shown,
+        "up_to": fields.up_to * shown,
+        "judged": fields.judged * shown,
+        "filtered": fields.judged * shown * credit,
+    }
+    measured = fields.measured
+    return {"trace": measured["trace"].instead(trace, detector, distance_m)} | {
+        name: measured["cable"].instead(level, detector, distance_m)
+        for name, level in cable.items()
+    }
 
 
 def _network(nets: Nets, frequency_hz: Array) -> Array:
@@ -418,14 +476,15 @@ def _network(nets: Nets, frequency_hz: Array) -> Array:
     return terms
 
 
-def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...] | None:
-    """Cables with their attenuation at the judged lines; None where nothing is declared."""
-    if radiation.cable_state == UNKNOWN and not radiation.cables:
-        return None
+def _cables(radiation: Radiation, frequency_hz: Array) -> tuple[RadiatingCable, ...]:
+    """Cables with their attenuation at the judged lines; assumed ones if nothing is declared."""
+    more_db = radiation.more_cable_db
+    if radiation.cable_count is None:
+        return tuple(replace(c, attenuation_db=more_db) for c in cable_part.UNDECLARED)
     return tuple(
         RadiatingCable(
             length_m=c.length_m,
-            attenuation_db=_attenuation_db(c, frequency_hz),
+            attenuation_db=_attenuation_db(c, frequency_hz) + more_db,
             floating=bool(c.floating),
         )
         for c in radiation.cables

@@ -13,6 +13,7 @@ from edgeplan.nets import Nets
 from edgeplan.physics import waveforms
 from edgeplan.physics.lines import LineConstants
 from edgeplan.physics.network import Trees
+from edgeplan.physics.situations import Situation, read_together
 from edgeplan.physics.sources import Drive
 
 Array = NDArray[Any]
@@ -112,27 +113,31 @@ def receive(
     tuple of Received
         One per corner and edge; open-drain nets have the falling edge only.
     """
+    edges = _directions(nets)
+    run = edges[:1] if _symmetric(nets) else edges  # one run serves both edges
+    asked = [(corner, direction) for corner in corners for direction in run]
+    situations = [
+        Situation(
+            nets.trees[corner],
+            drive(nets, candidates, corner, direction, tolerance),
+            _levels(nets, corner),
+            _observed_s(nets),
+        )
+        for corner, direction in asked
+    ]
+    found = {}
+    for which, own, readings in zip(asked, situations, read_together(situations), strict=True):
+        found[which] = readings, bit_effects(nets, own.trees, own.drive, own.levels, readings)
     return tuple(
-        received
+        _received(
+            nets,
+            *found[corner, direction if direction in run else run[0]],
+            (corner, direction, state),
+            reference_crossing_s(nets, corner, direction),
+        )
         for corner in corners
-        for received in _at_corner(nets, candidates, tolerance, corner, state)
+        for direction in edges
     )
-
-
-def _at_corner(
-    nets: Nets, candidates: Candidates, tolerance: float, corner: str, state: str
-) -> Iterator[Received]:
-    """Readings of every edge at one corner; one run serves both edges of symmetric drivers."""
-    mirror = _symmetric(nets)
-    readings: waveforms.Readings | None = None
-    for direction in _directions(nets):
-        if readings is None or not mirror:
-            source = drive(nets, candidates, corner, direction, tolerance)
-            levels = _levels(nets, corner)
-            readings = waveforms.read(nets.trees[corner], source, levels, _observed_s(nets))
-            between = bit_effects(nets, nets.trees[corner], source, levels, readings)
-        reference = reference_crossing_s(nets, corner, direction)
-        yield _received(nets, readings, between, (corner, direction, state), reference)
 
 
 def _observed_s(nets: Nets) -> Array:

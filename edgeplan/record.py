@@ -9,7 +9,16 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from edgeplan import __version__, levels, net_record, pictures_of, unused
+from edgeplan import (
+    __version__,
+    activity_remarks,
+    emission_at_line,
+    levels,
+    net_record,
+    pictures_of,
+    transfers,
+    unused,
+)
 from edgeplan.board import Board
 from edgeplan.candidates import Candidates, drawn_ohm
 from edgeplan.caution import CAUTION
@@ -48,6 +57,7 @@ from edgeplan.results import (
     Window,
     WindowEnd,
 )
+from edgeplan.return_planes import PlaneFinding, plane_findings
 from edgeplan.scoring import Block
 from edgeplan.windows import launched_edge_s
 
@@ -97,7 +107,8 @@ def find_net(board: Board, name: str) -> str:
 def results(draft: Draft) -> Results:
     """Write the whole record down."""
     board = draft.board
-    judged = _judged(draft)
+    planes = _plane_findings(draft)
+    judged = _judged(draft, planes)
     nets = sorted(
         [*judged, *(_blocked(b) for b in draft.blocked)], key=lambda n: natural_key(n.net)
     )
@@ -127,7 +138,7 @@ def results(draft: Draft) -> Results:
         not_judged=sorted(not_judged, key=lambda n: natural_key(n.net)),
         board_emission=BoardEmission(),
         choice=_choice(draft),
-        findings=_findings(draft.command, nets),
+        findings=_findings(draft.command, nets, planes),
         totals=_totals([n.verdict for n in nets], len(not_judged)),
         totals_after=_totals([n.verdict_after for n in nets], len(not_judged)),
         fill_in=_fill_in(nets),
@@ -148,29 +159,56 @@ def _states(facts: tuple[NetFacts, ...]) -> list[str]:
 
 
 def _models(draft: Draft) -> list[ModelNote]:
-    """Models that the levels of this board rest on."""
-    used = ["trace"]
-    if draft.bench_now.radiation.cable_state != NONE:
+    """Models that the levels of this board rest on, and what was measured in their place."""
+    measured = {part: _measured_nets(draft, part) for part in transfers.PARTS}
+    modelled = {part: sum(map(len, own)) < len(draft.facts) for part, own in measured.items()}
+    used = ["trace"] if modelled["trace"] or not draft.facts else []
+    if draft.bench_now.radiation.cable_state != NONE and (modelled["cable"] or not draft.facts):
         used.append("cable")
-    if any(kind_of(f) == INNER for f in draft.facts):
+    if any(modelled.values()) and any(kind_of(f) == INNER for f in draft.facts):
         used.append("inner_layer")
     models = [mechanism_of(name).MODEL for name in used]
+    notes = [(m, m.error_db, m.source) for m in models]
+    for part, own in measured.items():
+        for read, nets in zip(draft.board.transfers, own, strict=True):
+            if nets:
+                stated = read.stated
+                count = f"{len(nets)} net{'s' if len(nets) != 1 else ''}"
+                source = (
+                    f"{stated.file} in place of the {part} of {count}; "
+                    f"{stated.provenance}: {stated.source}"
+                )
+                model = mechanism_of("measured_transfer").MODEL
+                notes.append((model, stated.error_db, source))
     return [
         ModelNote(
             model=model.name.replace("_", " "),
             version=model.version,
-            error_db=Spread(low=-model.error_db, high=model.error_db),
-            source=model.source,
+            error_db=Spread(low=-error_db, high=error_db),
+            source=source,
         )
-        for model in models
+        for model, error_db, source in notes
     ]
 
 
-def _judged(draft: Draft) -> list[NetResult]:
+def _measured_nets(draft: Draft, part: str) -> list[list[str]]:
+    """Names of the nets of which each transfer of the board replaces a part."""
+    own = {f.net.net: transfers.of_net(draft.board, f.net.net, part) for f in draft.facts}
+    return [[name for name, used in own.items() if used is each] for each in draft.board.transfers]
+
+
+def _plane_findings(draft: Draft) -> dict[str, list[PlaneFinding]]:
+    """What each net does to its return planes beyond the models; nets without are left out."""
+    highest_hz = draft.bench_now.radiation.target.highest_hz
+    found = {f.net.net: plane_findings(draft.board, f, highest_hz) for f in draft.facts}
+    return {name: own for name, own in found.items() if own}
+
+
+def _judged(draft: Draft, planes: dict[str, list[PlaneFinding]]) -> list[NetResult]:
     """Every net that was simulated."""
     sentences = settles.minimum_edges(draft.facts, draft.board, draft.bench_now)
     advice = _remedies(draft)
-    highest_hz = draft.bench_now.radiation.target.highest_hz
+    target = draft.bench_now.radiation.target
     found = []
     for block in draft.blocks:
         states = {
@@ -181,27 +219,32 @@ def _judged(draft: Draft) -> list[NetResult]:
         for row, i in enumerate(map(int, block.index)):
             facts = draft.facts[i]
             shown = bool(draft.only) and facts.net.net == draft.only
-            found.append(
-                net_record.write(
-                    net_record.NetDraft(
-                        facts=facts,
-                        board=draft.board,
-                        now=states["now"][row],
-                        after=states["after"][row],
-                        can_pass_now=bool(draft.can_pass[i]),
-                        remedies=tuple(advice.get(i, ())),
-                        settles=sentences[i],
-                        candidates=draft.scores.candidates,
-                        passes=draft.scores.passes,
-                        share=draft.scores.share,
-                        every=every if shown else None,
-                        every_row=row,
-                        row=i,
-                        remarks=tuple(remarks(facts, highest_hz)),
-                        pictures=pictures_of.draw(block, row, draft) if shown else None,
-                    )
+            written = net_record.write(
+                net_record.NetDraft(
+                    facts=facts,
+                    board=draft.board,
+                    now=states["now"][row],
+                    after=states["after"][row],
+                    can_pass_now=bool(draft.can_pass[i]),
+                    remedies=tuple(advice.get(i, ())),
+                    settles=sentences[i],
+                    candidates=draft.scores.candidates,
+                    passes=draft.scores.passes,
+                    share=draft.scores.share,
+                    every=every if shown else None,
+                    every_row=row,
+                    row=i,
+                    remarks=(
+                        *remarks(facts),
+                        *(f.text for f in planes.get(facts.net.net, ())),
+                        *activity_remarks.remarks(facts, target),
+                    ),
+                    pictures=pictures_of.draw(block, row, draft) if shown else None,
                 )
             )
+            if shown:
+                written = emission_at_line.added(written, block, row, draft)
+            found.append(written)
     return found
 
 
@@ -243,6 +286,11 @@ def _net_states(block: Block, state: State, bench: Bench) -> list[net_record.Net
                 },
                 entries=passive.entries,
                 out_of_reach_hz=beyond[row],
+                measured={
+                    part: transfer.stated
+                    for part, replaced in passive.measured.items()
+                    if (transfer := replaced.transfers[row]) is not None
+                },
             )
         )
     return found
@@ -351,24 +399,34 @@ def _totals(found: list[str], not_judged: int) -> dict[str, int]:
     return totals | {"not judged": not_judged}
 
 
-def _findings(command: str, nets: list[NetResult]) -> list[Finding]:
-    """One finding per net that is not (or cannot be) inside."""
+def _findings(
+    command: str, nets: list[NetResult], planes: dict[str, list[PlaneFinding]]
+) -> list[Finding]:
+    """One finding per net that is not (or cannot be) inside, then those about return planes."""
     found = []
     for net in nets:
         verdict = net.verdict if command == "check" else net.verdict_after
         if verdict not in RULES:
             continue
-        rule = RULES[verdict]
         reason = "; ".join(net.undecided_because) if verdict == "undecided" else net.what_binds
-        found.append(
-            Finding(
-                rule=rule,
-                net=net.net,
-                message=f"{net.net}: {verdict}: {reason}",
-                fingerprint=hashlib.sha256(f"{rule}\n{net.net}".encode()).hexdigest()[:16],
-            )
-        )
+        found.append(_finding(RULES[verdict], net.net, f"{verdict}: {reason}"))
+    found += [
+        _finding(own.rule, net.net, own.text, own.where)
+        for net in nets
+        for own in planes.get(net.net, ())
+    ]
     return found
+
+
+def _finding(rule: str, net: str, text: str, where: str = "") -> Finding:
+    """A finding with the fingerprint of its rule, its net and, where it has one, its place."""
+    mark = f"{rule}\n{net}" + f"\n{where}" * bool(where)
+    return Finding(
+        rule=rule,
+        net=net,
+        message=f"{net}: {text}",
+        fingerprint=hashlib.sha256(mark.encode()).hexdigest()[:16],
+    )
 
 
 def _fill_in(nets: list[NetResult]) -> list[FillIn]:
@@ -392,6 +450,10 @@ def _assumptions(draft: Draft) -> list[Assumption]:
     target = draft.bench_now.radiation.target
     if target.not_covered:
         found.append(Assumption(subject="emission", text=target.not_covered, provenance="assumed"))
+    found += [
+        Assumption(subject="activity", text=text, provenance="bound")
+        for text in activity_remarks.assumptions(draft.facts)
+    ]
     centred = sum(f.net.side_distance_m is None for f in draft.facts)
     if centred:
         text = f"{centred} nets state no distance to the board's side and count as centred"

@@ -10,6 +10,10 @@ Verdict = Literal["inside", "too fast", "too slow", "no window", "undecided", "n
 Corner = Literal["slow", "typical", "fast"]
 
 SCHEMA = "edgeplan/results/1"
+# Rules whose findings are listed and do not make the exit code 1: what they name is not judged.
+PLANE_CHANGES = "return-plane-changes"
+INNER_OUT_OF_RANGE = "inner-layer-out-of-range"
+BEYOND_MODEL = (PLANE_CHANGES, INNER_OUT_OF_RANGE)
 VERDICTS: tuple[Verdict, ...] = (
     "inside",
     "too fast",
@@ -315,6 +319,66 @@ class Pictures:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class MechanismAtLine:
+    """One mechanism at one line: its levels, the expected one less and plus the stated error.
+
+    ``power_share`` is its part of the judged power, 0 to 1.
+    """
+
+    mechanism: str
+    expected_dbuv_per_m: float
+    up_to_dbuv_per_m: float
+    low_dbuv_per_m: float
+    high_dbuv_per_m: float
+    power_share: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class WhatIf:
+    """What one change alone would do to a net's emission, by the models that judge it.
+
+    Level, change and ``under_budget`` are those of the line that binds without the change;
+    ``binds_*`` is the worst line with it, its margin negative where it is over the budget.
+    Null where the models give no number.
+    """
+
+    kind: Literal["proposal", "resistor", "setting", "cable filter", "inner layer"]
+    text: str
+    level_dbuv_per_m: float | None
+    change_db: float | None
+    under_budget: bool | None
+    binds_hz: float | None = None
+    binds_order: int | None = None
+    binds_margin_db: float | None = None
+    assumption: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class EmissionAtLine:
+    """A net's emission at the line that binds, as drawn or with its proposal.
+
+    ``parity`` is odd or even for a harmonic; data have no harmonics but ``in-band power``.
+    ``driver_state`` says whether the setting that decides is that of run or of boot. The band
+    ``low`` to ``high`` is the level with the stated error, null while the check is undecided.
+    """
+
+    state: Literal["now", "after"]
+    frequency_hz: float
+    order: int | None
+    parity: Literal["odd", "even", "in-band power"]
+    detector: str
+    driver_state: str
+    limit_dbuv_per_m: float
+    budget_dbuv_per_m: float
+    level_dbuv_per_m: float
+    low_dbuv_per_m: float | None
+    high_dbuv_per_m: float | None
+    mechanisms: list[MechanismAtLine]
+    what_if: list[WhatIf] = field(default_factory=list)
+    notes: list[str] = field(default_factory=list)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class NetResult:
     """Everything known about one judged net."""
 
@@ -347,6 +411,7 @@ class NetResult:
     checks: list[Check] = field(default_factory=list)
     remedies: list[Remedy] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
+    emission_at_line: list[EmissionAtLine] = field(default_factory=list)
     pictures: Pictures | None = None
 
 
@@ -431,7 +496,7 @@ class Choice:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Finding:
-    """One violated rule on one net."""
+    """One violated rule on one net; those of `BEYOND_MODEL` do not change the exit code."""
 
     rule: str
     net: str

@@ -40,13 +40,15 @@ class CannotRoute(Exception):  # noqa: N818 - a finding about one net, not a fau
 class Piece:
     """One segment of a path; ``parent`` is its index in the path, -1 at the source end.
 
-    ``end_m`` is the position of its far end on the board, None where none is stated. [m]
+    ``end_m`` is the position of its far end on the board, None where none is stated [m];
+    ``end`` is the name that routes.csv has for it, empty without a route.
     """
 
     parent: int
     length_m: float
     line: Line
     end_m: Position | None = None
+    end: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -54,7 +56,8 @@ class Path:
     """A net as the engine sees it: the stub before the series resistor, then the tree.
 
     ``receiver_piece`` holds, per receiver, the piece at whose far end it sits; ``origin_m``
-    is the position of the resistor site (of the driver where there is none). [m]
+    is the position of the resistor site (of the driver where there is none), ``pad_m`` that
+    of the driver's pad. [m]
     """
 
     stub_m: float
@@ -63,6 +66,7 @@ class Path:
     receiver_piece: tuple[int, ...]
     notes: tuple[str, ...] = ()
     origin_m: Position | None = None
+    pad_m: Position | None = None
 
     @property
     def is_placed(self) -> bool:
@@ -215,8 +219,14 @@ def _routed(net: Net, routes: Sequence[RouteSegment], line_of: LineOf) -> Path:
         stub_line=stub_line or pieces[0].line,
         pieces=tuple(pieces),
         receiver_piece=tuple(node_piece[pin] for pin in net.receiver_pin),
-        origin_m=next((step.from_m for step in neighbours[passed[-1]]), None),
+        origin_m=_position(neighbours[passed[-1]]),
+        pad_m=_position(neighbours[start]),
     )
+
+
+def _position(steps: Sequence[_Step]) -> Position | None:
+    """Where a node lies, by the first piece there that states it."""
+    return next((step.from_m for step in steps if step.from_m is not None), None)
 
 
 def _stub(start: str, neighbours: dict[str, list[_Step]]) -> tuple[float, Line | None, list[str]]:
@@ -249,7 +259,13 @@ def _walk(
                 continue
             seen.add(step.end)
             pieces.append(
-                Piece(parent=parent, length_m=step.length_m, line=step.line, end_m=step.to_m)
+                Piece(
+                    parent=parent,
+                    length_m=step.length_m,
+                    line=step.line,
+                    end_m=step.to_m,
+                    end=step.end,
+                )
             )
             node_piece[step.end] = len(pieces) - 1
             pending.append((step.end, len(pieces) - 1))

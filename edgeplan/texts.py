@@ -163,3 +163,25 @@ def text_share(share: float | None) -> str:
         return UNKNOWN
     percent = round(share * 100, 1) + 0.0
     return f"{percent:.0f} %" if abs(percent) >= 10 or percent == 0 else f"{percent:.1f} %"
+
+
+def text_ordinal(number: int) -> str:
+    """Write the place of a harmonic in its row.
+
+    Parameters
+    ----------
+    number : int
+        1 or more.
+
+    Returns
+    -------
+    str
+        Digits with their ending.
+
+    Examples
+    --------
+    >>> [text_ordinal(n) for n in (1, 2, 3, 4, 11, 12, 13, 21, 102)]
+    ['1st', '2nd', '3rd', '4th', '11th', '12th', '13th', '21st', '102nd']
+    """
+    teen = number % 100 in (11, 12, 13)
+    return f"{number}{'th' if teen else {1: 'st', 2: 'nd', 3: 'rd'}.get(number % 10, 'th')}"

@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from edgeplan.evaluate import Evaluation
-from edgeplan.results import Results, Verdict
+from edgeplan.results import BEYOND_MODEL, Results, Verdict
 from edgeplan.windows import StateWindow
 
 Array = NDArray[Any]
@@ -94,7 +94,7 @@ def exit_code(results: Results) -> int:
 
     ``check`` asks for the verdict as drawn, ``plan`` and ``explain`` for the one after the
     proposals.  Undecided nets count as findings unless the policy says ``warn``; waived
-    findings do not count.
+    findings and those about what no model holds for (`results.BEYOND_MODEL`) do not count.
 
     Parameters
     ----------
@@ -113,7 +113,7 @@ def exit_code(results: Results) -> int:
     >>> [exit_code(Some(undecided_policy=p, findings=[finding])) for p in ("fail", "warn")]
     [1, 0]
     """
-    counted = [f for f in results.findings if f.waived is None]
+    counted = [f for f in results.findings if f.waived is None and f.rule not in BEYOND_MODEL]
     if results.undecided_policy == "warn":
         counted = [f for f in counted if f.rule != "edge-undecided"]
     return FINDINGS if counted else PASS

@@ -6,9 +6,7 @@ from edgeplan.board import Net
 from edgeplan.candidates import drawn_ohm
 from edgeplan.nets import NetFacts
 from edgeplan.results import Check, Verdict
-from edgeplan.texts import text_frequency_hz, text_resistance_ohm
-
-ORDINALS = {1: "1st", 2: "2nd", 3: "3rd"}
+from edgeplan.texts import text_frequency_hz, text_ordinal, text_resistance_ohm
 
 
 def resistor_place(net: Net) -> str:
@@ -103,7 +101,7 @@ def check_words(check: Check) -> str:
     if check.check != "emission" or check.frequency_hz is None:
         return f"{check.check}{early}"
     number = check.order
-    harmonic = f" ({ORDINALS.get(number, f'{number}th')})" if number else ""
+    harmonic = f" ({text_ordinal(number)})" if number else ""
     worst = f"emission {text_frequency_hz(check.frequency_hz)}{harmonic}{early}"
     if check.out_of_reach:
         return f"{worst}, out of reach"

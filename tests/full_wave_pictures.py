@@ -103,11 +103,11 @@ def _site() -> Figure:
         one.plot(megahertz, _level(layouts).T, ".", color="0.6")
         one.plot(megahertz, _level(part["field_v_per_m"]), "ko", label="highest of 12 layouts")
         line = _dense(part)
-        for offset_db, style, label in (
-            (cable.MODEL.offset_db, "C0-", "expected"),
+        for cables_db, style, label in (
+            (errors.offset_db(line), "C0-", "expected"),
             (0.0, "C3--", "up to"),
         ):
-            field_v = errors.field_v(line, errors.ON_FLOOR, offset_db)
+            field_v = errors.field_v(line, errors.ON_FLOOR, cables_db)
             level = _level(models.on_site_v_per_m(line, field_v))
             one.plot(line["frequency_hz"] / 1e6, level, style, label=label)
         one.set_title(f"board 90 × 140 mm, {count} cable{'s' if count > 1 else ''}, 3 m")

@@ -92,7 +92,9 @@ def test_help_loads_nothing_heavy():
     assert not loaded & set(HEAVY)
 
 
-@pytest.mark.parametrize("command", ["plan", "check", "explain", "limits", "start", "schema"])
+@pytest.mark.parametrize(
+    "command", ["plan", "check", "explain", "drivers", "limits", "start", "schema"]
+)
 def test_every_command_tells_its_exit_codes(command):
     text = CliRunner().invoke(cli.main, [command, "--help"]).output
     assert "Exit: 0" in " ".join(text.split())

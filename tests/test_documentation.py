@@ -28,7 +28,12 @@ TOML = re.compile(r"```toml\n(.*?)```", re.DOTALL)
 NUMBER = re.compile(r"\d+(?:\.\d+)?")
 CLOSE = 0.05  # printed numbers may move so far before the page has to follow
 
-PLAIN = {"string": "text", "boolean": "true or false", "number": "a number"}
+PLAIN = {
+    "string": "text",
+    "boolean": "true or false",
+    "number": "a number",
+    "integer": "a whole number",
+}
 
 
 def takes(shape):

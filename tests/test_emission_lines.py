@@ -4,7 +4,8 @@ import numpy as np
 import pytest
 from build import board, clock, driver, exactly, facts_of, interface, net, setting
 
-from edgeplan.emission_lines import MOST_LINES, is_data, lines_of, toggle_hz
+from edgeplan.activity import is_data, toggle_hz
+from edgeplan.emission_lines import MOST_LINES, lines_of
 from edgeplan.emission_target import target_of
 
 

@@ -33,7 +33,8 @@ NOT_IN_A_TABLE = {
     "edgeplan.emission.mechanism",  # what every mechanism is given
     "edgeplan.emission.edge_limit",  # inverts them all
     "edgeplan.reports.pictures",  # of --plot, not of --format
-    "edgeplan.reports.curves",  # parts shared by formats
+    "edgeplan.reports.at_line",  # parts shared by formats
+    "edgeplan.reports.curves",
     "edgeplan.reports.phrases",
     "edgeplan.reports.rows",
     "edgeplan.reports.summary",

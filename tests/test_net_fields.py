@@ -7,7 +7,15 @@ import pytest
 from build import board, net, nets_of, segment
 
 from edgeplan.emission.mechanism import Cable
-from edgeplan.net_fields import INNER, ROUTED, STRAIGHT, fields_per_volt, kind_of, remarks
+from edgeplan.net_fields import (
+    INNER,
+    ROUTED,
+    STRAIGHT,
+    fields_per_volt,
+    has_placed_stub,
+    kind_of,
+    remarks,
+)
 
 FREQUENCY_HZ = np.array([[30e6, 100e6, 300e6, 700e6, 1e9]])
 CABLES = (Cable(length_m=1.5),) * 2
@@ -67,22 +75,8 @@ def test_a_net_between_planes_radiates_less_than_on_the_surface():
     assert kind_of(inner.facts[0]) == INNER
     assert np.all(below < above)
     assert np.all(np.isfinite(cable))
-    assert any("3 mm of surface" in text for text in remarks(inner.facts[0], 1e9))
-    assert remarks(surface.facts[0], 1e9) == []
-
-
-def test_a_changed_return_plane_is_told_with_the_distance_of_a_joint():
-    """lambda/20 at 1 GHz in er 4.2: 299.8 mm / 2.049 / 20 = 7.3 mm."""
-    stack = [
-        *FOUR,
-        LAMINATE | {"layer": "D4"},
-        {"layer": "L5", "kind": "signal", "thickness_m": 35e-6},
-    ]
-    rows = [segment("U1.1", "via", 0.03), segment("via", "U2.1", 0.03, layer="L5")]
-    nets = nets_of(board(net(length_m=LENGTH_M), stack=stack, routes=rows))
-    (text,) = remarks(nets.facts[0], 1e9)
-    assert "from plane L2 to L4" in text
-    assert "7.3 mm" in text
+    assert any("3 mm of surface" in text for text in remarks(inner.facts[0]))
+    assert remarks(surface.facts[0]) == []
 
 
 @pytest.mark.parametrize("side", ["left", "right"])
@@ -96,3 +90,92 @@ def test_one_cable_counts_from_its_own_side(side):
     _, own = fields_per_volt(declared, one, nets, FREQUENCY_HZ)
     _, worst = fields_per_volt(anywhere, one, nets, FREQUENCY_HZ)
     assert np.all(own <= worst * (1 + 1e-9))
+
+
+SHORT_M = 0.03  # below a quarter wave to 1 GHz, so that no resonance magnifies the loss
+POINTS_M = (0.02, 0.02), (0.02, 0.025), (0.045, 0.025)
+FITTED = {"length_m": SHORT_M, "site": "fitted", "resistor_ohm": 33.0}
+
+
+def with_site(**changes):
+    """A route around a right angle with a resistor site at its corner, 5 mm from the pad."""
+    pad_m, site_m, end_m = POINTS_M
+    stub = {"start_m": pad_m, "end_m": site_m} | changes
+    return [
+        segment("U1.1", "site", 0.005, **stub),
+        segment("site", "U2.1", 0.025, start_m=site_m, end_m=end_m),
+    ]
+
+
+def behind_5_mm(facts):
+    """Voltage of an open lossless line of 30 mm 5 mm behind its beginning, over that there."""
+    angle = 2 * np.pi * FREQUENCY_HZ * facts.path.main_line.delay_s_per_m
+    return np.abs(np.cos(0.025 * angle) / np.cos(0.03 * angle))
+
+
+def test_the_line_before_the_resistor_radiates_with_a_routed_net():
+    """Per volt at the site: the field of the whole over the voltage there, by hand."""
+    cut, (trace, cable) = fields(net(**FITTED), routes=with_site())
+    whole, (trace_too, cable_too) = fields(net(length_m=SHORT_M), routes=placed(*POINTS_M))
+    assert has_placed_stub(cut.facts[0])
+    assert not has_placed_stub(whole.facts[0])
+    behind = behind_5_mm(whole.facts[0])
+    np.testing.assert_allclose(20 * np.log10(trace * behind / trace_too), 0, atol=0.1)
+    np.testing.assert_allclose(20 * np.log10(cable * behind / cable_too), 0, atol=0.1)
+
+
+def test_a_stub_without_a_place_is_left_out_and_that_is_said():
+    bare, (trace, _) = fields(net(**FITTED), routes=with_site(start_m=None, end_m=None))
+    drawn, (longer, _) = fields(net(**FITTED), routes=with_site())
+    assert kind_of(bare.facts[0]) == ROUTED
+    assert np.all(longer > trace)
+    assert any("before its resistor" in text for text in remarks(bare.facts[0]))
+    assert remarks(drawn.facts[0]) == []
+
+
+def test_a_straight_net_counts_the_line_before_its_resistor_in_its_length():
+    cut, (trace, cable) = fields(net(site_distance_m=0.005, **FITTED))
+    _, (trace_too, cable_too) = fields(net(length_m=SHORT_M))
+    behind = behind_5_mm(cut.facts[0])
+    np.testing.assert_allclose(20 * np.log10(trace * behind / trace_too), 0, atol=0.15)
+    np.testing.assert_allclose(20 * np.log10(cable * behind / cable_too), 0, atol=0.15)
+
+
+def test_placed_nets_with_and_without_a_stub_keep_their_rows():
+    rows = net("N1", **FITTED), net("N2", length_m=SHORT_M)
+    routes = [*with_site(), *(r.model_copy(update={"net": "N2"}) for r in placed(*POINTS_M))]
+    _, (both, _) = fields_of(rows, routes)
+    for i, row in enumerate(rows):
+        _, (alone, _) = fields_of((row,), routes)
+        np.testing.assert_allclose(both[i], alone[0])
+
+
+def fields_of(rows, routes):
+    """Fields of several nets at the same frequencies."""
+    the_board = board(*rows, routes=routes)
+    nets = nets_of(the_board)
+    frequency_hz = np.repeat(FREQUENCY_HZ, len(rows), axis=0)
+    return nets, fields_per_volt(the_board, CABLES, nets, frequency_hz)
+
+
+@pytest.mark.parametrize("side_m", [0.003, 0.01])
+def test_a_route_near_a_side_drives_the_cables_harder_by_its_coordinates(side_m):
+    """Re arcosh((2 y + 2jt)/W) over Re arcosh(2jt/W), y from the centre line of 80 mm of plane."""
+    one = (Cable(length_m=1.5),)
+    cable = [{"name": "mains", "length_m": 1.5, "attenuation_db": 0.0, "side": "right"}]
+    found = []
+    for y in (0.04, side_m):
+        made = board(net(length_m=LENGTH_M), routes=placed((0.02, y), (0.08, y)), cable=cable)
+        nets = nets_of(made)
+        found.append(fields_per_volt(made, one, nets, FREQUENCY_HZ))
+    height = nets.facts[0].path.main_line.height_m
+    share = [np.arccosh((2 * y + 2j * height) / 0.08).real for y in (0.0, 0.04 - side_m)]
+    np.testing.assert_allclose(found[1][1] / found[0][1], share[1] / share[0], rtol=1e-6)
+    np.testing.assert_allclose(found[1][0], found[0][0])
+
+
+def test_a_stated_side_distance_does_not_move_a_net_that_has_coordinates():
+    route = placed((0.02, 0.04), (0.08, 0.04))
+    _, (_, middle) = fields(net(length_m=LENGTH_M), routes=route)
+    _, (_, stated) = fields(net(length_m=LENGTH_M, side_distance_m=0.001), routes=route)
+    np.testing.assert_array_equal(middle, stated)

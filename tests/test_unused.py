@@ -1,7 +1,7 @@
 """Whatever is accepted without acting yet says so by name."""
 
 import pytest
-from build import board, driver, net, segment, setting
+from build import board, net, segment
 
 from edgeplan.unused import unused_values
 
@@ -24,8 +24,6 @@ def test_a_plain_board_leaves_nothing_unused():
             "waivers",
         ),
         ({"clock_source": [{"name": "osc", "nets": ["N*"]}]}, "clock sources"),
-        ({"driver": [driver(ibis={"file": "models/a.ibs"})]}, "model files"),
-        ({"driver": [driver(setting(model="dq_full"))]}, "model names of settings"),
         ({"cable": [CABLE | {"side": "left"}]}, "the side a cable leaves from"),
     ],
 )

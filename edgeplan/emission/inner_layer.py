@@ -6,6 +6,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike
 
+from edgeplan.emission import cable
 from edgeplan.emission.mechanism import Array, Mechanism
 from edgeplan.physics import imbalance, stripline_leakage
 from edgeplan.physics.air_lines import SPEED_OF_LIGHT_M_PER_S
@@ -14,8 +15,7 @@ from edgeplan.physics.radiation import finite_board_factor, trace_field_per_ampe
 MODEL = Mechanism(
     name="inner_layer",
     version=1,
-    error_db=3.4,
-    offset_db=0.0,
+    error_db=cable.MODEL.error_db,
     source="surface pieces as short traces, leakage of an inner line by a fit to static field"
     " solutions; the errors are those of trace and cable, no full-wave run has planes on"
     " both sides",

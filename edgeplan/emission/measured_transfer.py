@@ -12,7 +12,6 @@ MODEL = Mechanism(
     name="measured_transfer",
     version=1,
     error_db=4.0,
-    offset_db=0.0,
     source="a transfer the user measured, straight in the logarithm of frequency between its"
     " rows; the error is that of one place of the cables, one orientation and one receiver",
 )
@@ -22,19 +21,16 @@ MODEL = Mechanism(
 class MeasuredInputs:
     """N nets and the transfer that replaces a mechanism.
 
-    ``port_volt`` is the voltage at the measured port, peak, per ampere of forward wave,
-    ``(N, F)``: of a port between board and cable the effective common-mode voltage, of a
-    port at a driver that of the net. ``rows`` are pairs of frequency [Hz] and level by rising
-    frequency: field at ``distance_m`` over port voltage [dB(1/m)] or, with rows of an
-    ``antenna_factor`` [Hz], [dB(1/m)], receiver over port voltage [dB]. ``replaces`` names
-    the mechanism, ``source`` says who measured it, when and how.
+    ``port_volt`` is the voltage at the measured port, peak, per ampere of forward wave (or per
+    any other unit: the result is per that unit), ``(N, F)``. The port is the pad at which the
+    line of a net begins, behind its series resistor. ``rows`` are pairs of frequency [Hz] and
+    level by rising frequency: field at ``distance_m`` over port voltage [dB(1/m)] or, with
+    rows of an ``antenna_factor`` [Hz], [dB(1/m)], receiver over port voltage [dB].
     """
 
     port_volt: Array
     rows: Sequence[tuple[float, float]]
     distance_m: float
-    replaces: str
-    source: str
     antenna_factor: Sequence[tuple[float, float]] = ()
 
 
@@ -65,7 +61,7 @@ def field_per_forward_ampere(paths: MeasuredInputs, frequency_hz: ArrayLike) -> 
     1 V at the port, -40 dB(1/m) at 3 m: 10 mV/m.
 
     >>> net = MeasuredInputs(port_volt=np.ones((1, 1)), rows=[(30e6, -40.0), (1e9, -40.0)],
-    ...                      distance_m=3.0, replaces="cable", source="own chamber")
+    ...                      distance_m=3.0)
     >>> print(f"{field_per_forward_ampere(net, np.array([1e8]))[0, 0] / 3:.3f} V/m")
     0.010 V/m
     """

@@ -13,14 +13,13 @@ Array = NDArray[Any]
 class Mechanism:
     """A model, its version, its stated error and where that comes from.
 
-    ``offset_db`` is added to the level of `field_per_forward_ampere` ("up to") to have the
-    expected level; ``error_db`` is one standard deviation of the expected level.
+    ``error_db`` is one standard deviation of the expected level, the largest where it depends
+    on frequency.
     """
 
     name: str
     version: int
     error_db: float
-    offset_db: float
     source: str
 
 

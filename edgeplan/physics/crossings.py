@@ -18,10 +18,12 @@ class Edges(NamedTuple):
     """Stretch of every row in which its edge is expected, and the rows where it is longer.
 
     ``near`` (M, L) begins at sample ``begin`` (M,), before which the row is below all
-    thresholds. Rows ``long`` are not above all of them by the end of the stretch.
+    thresholds; ``steps`` (M, L - 1) are its differences. Rows ``long`` are not above all
+    thresholds by the end of the stretch.
     """
 
     near: Array
+    steps: Array
     begin: Array
     long: Array
 
@@ -53,7 +55,7 @@ def edges(level: Array, lowest: Array, highest: Array) -> Edges:
     every = sliding_window_view(level.ravel(), width)
     near = np.asarray(every[np.arange(rows) * samples + begin])
     long = np.flatnonzero((first_reach(near, highest) == width) & (begin + width < samples))
-    return Edges(near, begin, long)
+    return Edges(near, near[:, 1:] - near[:, :-1], begin, long)
 
 
 def first_reach(level: Array, threshold: Array) -> Array:
@@ -275,7 +277,7 @@ def cubic_time(level: Array, row: Array, index: Array, threshold: Array) -> Arra
     3.500
     """
     samples = level.shape[1]
-    inner = np.clip(index, 2, samples - 2)
+    inner = np.minimum(np.maximum(index, 2), samples - 2)
     flat, at = level.ravel(), row * samples + (inner - 2)
     y0, y1, y2, y3 = (flat[offset:].take(at) for offset in range(4))
     cubic = (y3 - y0) / 6 + (y1 - y2) / 2
@@ -299,7 +301,7 @@ def straight_time(level: Array, row: Array, index: Array, threshold: Array) -> A
     [0.5]
     """
     samples = level.shape[1]
-    inner = np.clip(index, 1, samples - 1)
+    inner = np.minimum(np.maximum(index, 1), samples - 1)
     flat, at = level.ravel(), row * samples + inner
     after, before = flat.take(at), flat.take(at - 1)
     with np.errstate(divide="ignore", invalid="ignore"):

@@ -14,11 +14,16 @@ Array = NDArray[Any]
 
 
 class StubPlaces(NamedTuple):
-    """Where the stubs of N trees start, and what they run over, all ``(N, ...)`` [m], [m], [-]."""
+    """Where the stubs of N trees start, and what they run over, all ``(N, ...)``.
+
+    Position of the pad [m], height [m], permittivity [-] and distance of both planes [m] as in
+    `Layout`; None for stubs that all run over one plane.
+    """
 
     pad_m: Array
     height_m: Array
     permittivity: Array
+    plane_gap_m: Array | None = None
 
 
 def with_stub(trees: Trees, layout: Layout, places: StubPlaces) -> tuple[Trees, Layout]:
@@ -29,7 +34,7 @@ def with_stub(trees: Trees, layout: Layout, places: StubPlaces) -> tuple[Trees, 
     trees, layout : Trees, Layout
         N nets, each with a stub of some length, from the series resistor on.
     places : StubPlaces
-        Position of the driver's pad ``(N, 2)``, height and permittivity ``(N,)``.
+        Position of the driver's pad ``(N, 2)``, the rest ``(N,)``.
 
     Returns
     -------
@@ -80,7 +85,7 @@ def with_stub(trees: Trees, layout: Layout, places: StubPlaces) -> tuple[Trees, 
         np.insert(layout.height_m, before, places.height_m),
         np.insert(layout.permittivity, before, places.permittivity),
         longer,
-        np.insert(gap_m, before, 0.0),
+        np.insert(gap_m, before, 0.0 if places.plane_gap_m is None else places.plane_gap_m),
     )
 
 

@@ -1,4 +1,4 @@
-"""Step responses of candidates in blocks of up to 2,048 rows of one length, whatever the shape."""
+"""Step responses of candidates in blocks of up to 4,096 rows of one length, whatever the shape."""
 
 from collections.abc import Iterator
 from dataclasses import dataclass
@@ -21,7 +21,7 @@ from edgeplan.physics.sources import (
 
 Array = NDArray[Any]
 
-ROWS = 2048
+ROWS = 4096
 CACHED = 32_768  # spectral values at a time, so that they stay in the cache until transformed
 CHUNK_MEMBERS = 40_000  # candidates whose trees are solved in one pass
 LINES = KnownLines()  # corners, ramps and repeated calls meet the same lines on the same grids

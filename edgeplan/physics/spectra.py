@@ -3,7 +3,7 @@
 All amplitudes are peak values of a sine, not rms.
 """
 
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -233,9 +233,47 @@ def duty_factor(order: ArrayLike, duty: ArrayLike, tolerance: ArrayLike = 0.0) -
     >>> print(f"{duty_factor(2, 0.5, 0.01):.4f}")
     0.0628
     """
+    return edge_shares(order, duty, tolerance).sine
+
+
+class EdgeShares(NamedTuple):
+    """Largest shares of a harmonic that the sum and the difference of both edges have."""
+
+    sine: Array
+    cosine: Array
+
+
+def edge_shares(order: ArrayLike, duty: ArrayLike, tolerance: ArrayLike = 0.0) -> EdgeShares:
+    r"""Largest :math:`|\sin \pi n d|` and :math:`|\cos \pi n d|` over a tolerance of the duty.
+
+    Parameters
+    ----------
+    order : array_like
+        Harmonic number n, 1 or more. [-]
+    duty : array_like
+        Pulse width over the period. [-]
+    tolerance : array_like
+        Largest deviation of the duty on either side, 0 or more. [-]
+
+    Returns
+    -------
+    EdgeShares
+        Both shares, 0 to 1. [-]
+
+    Examples
+    --------
+    The second harmonic of an even square wave has the difference of the edges alone.
+
+    >>> shares = edge_shares(2, 0.5)
+    >>> float(shares.sine), float(shares.cosine)
+    (0.0, 1.0)
+    """
     order = np.asarray(order)
     low, high = _duty_range(duty, tolerance)
-    return _largest_sine(order * low, order * high)
+    return EdgeShares(
+        _largest_sine(order * low, order * high),
+        _largest_sine(order * low + 0.5, order * high + 0.5),
+    )
 
 
 def _duty_range(duty: ArrayLike, tolerance: ArrayLike) -> tuple[Array, Array]:
@@ -306,9 +344,7 @@ def null_free_amplitude(
     2.1008 V
     """
     order, rise_s, fall_s = np.asarray(order), np.asarray(rise_s), np.asarray(fall_s)
-    low, high = _duty_range(duty, tolerance)
-    sine = _largest_sine(order * low, order * high)
-    cosine = _largest_sine(order * low + 0.5, order * high + 0.5)
+    sine, cosine = edge_shares(order, duty, tolerance)
     per_second = order / np.asarray(period_s)
     both = null_free_edge_factor(per_second * rise_s) + null_free_edge_factor(per_second * fall_s)
     apart = np.minimum(both, _log_ratio(rise_s, fall_s) * LOG_SLOPE)

@@ -11,6 +11,8 @@ Array = NDArray[Any]
 
 LEAKAGE = 0.050  # fit to static field solutions, exponent and root of the width within 4 %
 FAR_GAPS = 3.0  # beyond so many plane spacings from the side nothing is left
+FITTED_FROM_GAPS = 0.25  # nearest side of the field solutions, over the plane spacing
+FITTED_WIDTH_M = (0.03, 0.12)  # of their planes
 STITCH_SHARE = 1 / 20  # of a wave
 
 
@@ -58,6 +60,35 @@ def edge_leakage(
     height = LEAKAGE * ETA_0_OHM / np.asarray(air_impedance_ohm)
     height = height * np.sqrt(gap_m / np.asarray(plane_width_m)) * np.exp(-np.pi * away)
     return np.where(away > FAR_GAPS, 0.0, height)
+
+
+def outside_fit(
+    plane_gap_m: ArrayLike, plane_width_m: ArrayLike, side_distance_m: ArrayLike
+) -> NDArray[np.bool_]:
+    """Whether `edge_leakage` is asked for more than its field solutions cover.
+
+    Parameters
+    ----------
+    plane_gap_m, plane_width_m, side_distance_m : array_like
+        As in `edge_leakage`. [m]
+
+    Returns
+    -------
+    numpy.ndarray of bool
+        True nearer to the side than a quarter of the plane spacing, or within three spacings
+        of it on planes narrower or wider than those of the fit.
+
+    Examples
+    --------
+    >>> outside_fit(1e-3, 0.1, [0.1e-3, 1e-3]).tolist()
+    [True, False]
+    >>> outside_fit(1e-3, 0.2, [1e-3, 4e-3]).tolist()
+    [True, False]
+    """
+    away = np.asarray(side_distance_m, dtype=float) / np.asarray(plane_gap_m)
+    width_m = np.asarray(plane_width_m)
+    fits = (width_m >= FITTED_WIDTH_M[0]) & (width_m <= FITTED_WIDTH_M[1])
+    return np.asarray((away <= FAR_GAPS) & ((away < FITTED_FROM_GAPS) | ~fits))
 
 
 def stitching_distance_m(highest_hz: ArrayLike, permittivity: ArrayLike) -> Array:

@@ -23,7 +23,6 @@ Array = NDArray[Any]
 
 WHOLE_SPAN = 0.8  # of the levels that the allowed spread is a share of: 10 to 90 %
 SPREAD = 0.06  # of the transition; a straight edge has 0.025 between the two readings
-STRIP = 32_768  # differences that stay in the cache
 FALLING = -5e-4  # slope per sample from which a row counts as falling
 
 
@@ -212,6 +211,7 @@ def block_readings(
     later = sorted({kind[FIRST[way][1]] for way in directions})
     end = _Ending(
         level=level,
+        found=found,
         first=first[:, later],
         target=threshold[later],
         late=late[later],
@@ -232,6 +232,7 @@ class _Ending:
     """What follows the first reach of the q later thresholds (3, q, M): dips, levels, residual."""
 
     level: Array
+    found: Edges
     first: Array
     target: Array
     late: Array
@@ -257,13 +258,7 @@ class _Ending:
 
     def _falls(self, reached: Array) -> Array:
         """Where each row first falls after it reached each threshold (q, M)."""
-        earliest = reached.min(axis=0)
-        falling = np.repeat(_first_fall(self.level, earliest)[None], len(reached), axis=0)
-        for own, start in zip(falling, reached, strict=True):
-            again = np.flatnonzero(own < start)
-            if again.size:
-                own[again] = _first_fall(self.level[again], start[again])
-        return falling
+        return np.stack([_first_fall(self.level, self.found, start) for start in reached])
 
     def _last(self, lowest: Array) -> tuple[Array, Array]:
         """Last crossings, the first ones where there is no other; NaN where more may follow."""
@@ -271,9 +266,11 @@ class _Ending:
         time, guarded = self.late.copy(), np.zeros(len(self.level), dtype=bool)
         which, row = np.nonzero((last != self.first).any(axis=0))
         index, own = last[:, which, row], self.target[which, row]
-        plain = cubic_time(self.level, row, index[1], own)
-        _, late, flagged = _worse(self.level, row, index, own, plain, self.transition[row])
+        guard = self.level.dtype.type(GUARD)
+        plain, late = cubic_time(self.level, row, index[1:], np.stack([own, own + guard]))
+        flagged = _uneven(self.level, row, index, own, self.transition[row])
         dips = index[1] != self.first[1, which, row]
+        late = np.where(flagged, late, plain)
         time[which, row] = np.where(dips & (late > self.latest[row]), np.nan, late)
         guarded[row[flagged]] = True
         return time, guarded
@@ -309,29 +306,25 @@ def overshoot(level: Array) -> Array:
 
 def _lowest_step(level: Array, found: Edges, start: Array, stop: Array) -> Array:
     """Lowest difference between samples from start to before stop, at least the one at start."""
-    near, begin, long = found
-    result = lowest_between(near[:, 1:] - near[:, :-1], np.maximum(start - begin, 0), stop - begin)
+    begin, long = found.begin, found.long
+    result = lowest_between(found.steps, np.maximum(start - begin, 0), stop - begin)
     rows = level[long]
     result[long] = lowest_between(rows[:, 1:] - rows[:, :-1], start[long], stop[long])
     return result
 
 
-def _first_fall(level: Array, start: Array) -> Array:
+def _first_fall(level: Array, found: Edges, start: Array) -> Array:
     """Index of the first sample from start on that the next one falls short of, or n."""
-    rows, samples = level.shape
-    flat, fall = level.ravel(), np.empty(rows * samples, dtype=bool)
-    for first in range(0, rows * samples - 1, STRIP):
-        strip = flat[first : first + STRIP + 1]
-        np.less(strip[1:] - strip[:-1], FALLING, out=fall[first : first + len(strip) - 1])
-    falls = fall.reshape(level.shape)
-    falls[:, -1] = False  # the next sample is that of another row
-    row = np.arange(rows)
+    samples, local = level.shape[1], start - found.begin
+    falls = (found.steps < FALLING) & (np.arange(found.steps.shape[1]) >= local[:, None])
     index = falls.argmax(axis=1)
-    early = np.flatnonzero(falls[row, index] & (index < start))
-    column = np.arange(samples)
-    index[early] = (falls[early] & (column >= start[early, None])).argmax(axis=1)
-    there = falls[row, index] & (index >= start)
-    return np.asarray(np.where(there, index, samples))
+    later = np.flatnonzero(~falls[np.arange(len(level)), index] & (start < samples))
+    index += found.begin
+    index[start >= samples] = samples
+    rows, column = level[later], np.arange(samples - 1)
+    falls = (rows[:, 1:] - rows[:, :-1] < FALLING) & (column >= start[later, None])
+    index[later] = np.where(falls.any(axis=1), falls.argmax(axis=1), samples)
+    return np.asarray(index)
 
 
 def _thresholds(
@@ -348,31 +341,32 @@ def _thresholds(
         wanted |= dict(zip(FIRST["rise"], (low, high), strict=True))
     if "fall" in directions:
         wanted |= dict(zip(FIRST["fall"], (1 - high, 1 - low), strict=True))
-    kind: dict[str, int] = {}
-    distinct: list[Array] = []
-    for name, value in wanted.items():
-        own = value.astype(precision)
-        same = [k for k, other in enumerate(distinct) if (own == other).all()]
-        kind[name] = same[0] if same else len(distinct)
-        if not same:
-            distinct.append(own)
-    return kind, np.stack(distinct)
+    table = np.stack(list(wanted.values())).astype(precision)
+    first = (table[:, None] == table).all(axis=2).argmax(axis=1)
+    distinct = np.unique(first)
+    return dict(zip(wanted, np.searchsorted(distinct, first), strict=True)), table[distinct]
 
 
 def _worse(
     level: Array, row: Array, index: Array, target: Array, plain: Array, transition: Array
 ) -> tuple[Array, Array, Array]:
     """Times with the earlier and with the later of the readings at +-1 % where they differ."""
+    flagged = _uneven(level, row, index, target, transition)
+    early, late = plain.copy(), plain.copy()
+    where, guard = np.nonzero(flagged), level.dtype.type(GUARD)
+    outer = np.stack([target[where] - guard, target[where] + guard])
+    crossed = np.stack([index[0][where], index[2][where]])
+    early[where], late[where] = cubic_time(level, row[where], crossed, outer)
+    return early, late, flagged
+
+
+def _uneven(level: Array, row: Array, index: Array, target: Array, transition: Array) -> Array:
+    """Whether the readings at +-1 % lie further apart than on a clean edge, or one is missing."""
     guard = level.dtype.type(GUARD)
-    with np.errstate(invalid="ignore"):  # never reached: infinity less infinity, flagged
+    with np.errstate(invalid="ignore"):  # never reached: infinity less infinity
         spread = straight_time(level, row, index[2], target + guard)
         spread -= straight_time(level, row, index[0], target - guard)
-        flagged = ~(spread <= allowed_spread(target) * transition)
-    early, late = plain.copy(), plain.copy()
-    where = np.nonzero(flagged)
-    for worse, reading, shift in ((early, 0, -guard), (late, 2, guard)):
-        worse[where] = cubic_time(level, row[where], index[reading][where], target[where] + shift)
-    return early, late, flagged
+        return np.asarray(~(spread <= allowed_spread(target) * transition))
 
 
 def allowed_spread(threshold: Array) -> Array:

@@ -6,10 +6,22 @@ from typing import Any
 from pydantic import BaseModel, ValidationError
 
 from edgeplan import levels
-from edgeplan.board import Board, BoardFile, Columns, Group, RouteSegment
+from edgeplan.board import (
+    Board,
+    BoardFile,
+    Columns,
+    Driver,
+    Group,
+    Interface,
+    Receiver,
+    RouteSegment,
+)
 from edgeplan.errors import InputError, Problem
 from edgeplan.readers import (
+    frequency_tables,
     limit_table,
+    measured,
+    models,
     net_checks,
     netlist,
     references,
@@ -18,6 +30,7 @@ from edgeplan.readers import (
     wording,
 )
 from edgeplan.readers.files import Folder
+from edgeplan.readers.models import Filled, ModelFiles
 from edgeplan.readers.references import EACH, Names
 
 BOARD_FILE = "board.toml"
@@ -53,17 +66,23 @@ def read_board(path: Path) -> Board:
     nets, notes = _nets(folder, document)
     segments = _routes(folder, document, nets)
     limits = _limits(folder, document) if document else []
+    transfers = []
+    filled = Filled()
     if document:
-        _models(folder, document)
+        folder.problems += frequency_tables.problems(document)
+        own = {line.id: line for line in limits}
+        transfers = measured.read(folder, document, file, own)
+        filled = _models(folder, document, nets)
     if folder.problems or file is None or nets is None:
         raise InputError(folder.problems)
     return Board(
-        file=file,
+        file=filled.into(file),
         nets=tuple(entry.net(nets.file) for entry in nets.entries.values()),
         routes=tuple(segments),
         user_limits=tuple(limits),
+        transfers=tuple(transfers),
         inputs=tuple(folder.inputs[name] for name in sorted(folder.inputs)),
-        notes=tuple(notes),
+        notes=(*notes, *filled.notes),
     )
 
 
@@ -114,20 +133,13 @@ def _nets(
     if document is None:
         return nets, []
     owned = {name: set(entry.values) for name, entry in nets.entries.items()}
-    notes = netlist.apply_groups(nets, _groups(document), document)
+    notes = netlist.apply_groups(nets, _parts(Group, document, "group"), document)
     names = Names.of(data, levels.ids())
     pairs = [str(net) for _, net in references.found(data, ("pair", EACH, "nets", EACH))]
     net_checks.complete(nets, names, pairs, owned)
     problems += net_checks.problems(nets, names)
     problems += references.problems(document, names, nets.names() if nets.entries else None)
     return nets, notes
-
-
-def _groups(document: toml.Document) -> dict[int, Group]:
-    """Return the groups that are in order."""
-    found = references.found(document.data, ("group", EACH))
-    groups = ((path[-1], _part(Group, value)) for path, value in found)
-    return {int(index): group for index, group in groups if group is not None}
 
 
 def _routes(
@@ -159,8 +171,41 @@ def _limits(folder: Folder, document: toml.Document) -> list[Any]:
     return lines
 
 
-def _models(folder: Folder, document: toml.Document) -> None:
-    """Note the hash of each driver model; it is read where it is needed."""
-    for path, name in references.found(document.data, ("driver", EACH, "ibis", "file")):
-        if isinstance(name, str):
-            folder.read(name, document.where(path))
+def _models(folder: Folder, document: toml.Document, nets: netlist.NetList | None) -> Filled:
+    """Fill drivers and inputs from their model files."""
+    drivers = {**_bare_drivers(document), **_parts(Driver, document, "driver")}
+    filled = ModelFiles(folder, document).fill(drivers, _parts(Receiver, document, "receiver"))
+    interfaces = _parts(Interface, document, "interface").values()
+    entries = nets.entries.values() if nets else ()
+    uses = [
+        (str(entry.values.get("interface")), str(name))
+        for entry in entries
+        for name in entry.values.get("driver", ())
+    ]
+    supplied = models.supplied(filled, interfaces, uses)
+    folder.problems += models.supply_problems(document, supplied)
+    filled.notes += models.supply_notes(supplied)
+    return filled
+
+
+def _bare_drivers(document: toml.Document) -> dict[int, Any]:
+    """Return drivers with their models alone, so that a fault beside a model does not hide it."""
+    found = {}
+    for path, value in references.found(document.data, ("driver", EACH)):
+        named = references.found(value, ("settings", EACH))
+        bare = [_only(s, "setting", "model") for _, s in named if isinstance(s, dict)]
+        if isinstance(value, dict) and "ibis" in value:
+            found[int(path[-1])] = _part(Driver, {**_only(value, "name", "ibis"), "settings": bare})
+    return {index: driver for index, driver in found.items() if driver is not None}
+
+
+def _only(table: dict[str, Any], *keys: str) -> dict[str, Any]:
+    """Return a part of a table."""
+    return {key: table[key] for key in keys if key in table}
+
+
+def _parts(model: type[Any], document: toml.Document, key: str) -> dict[int, Any]:
+    """Return the tables of a list that are in order, by their place."""
+    found = references.found(document.data, (key, EACH))
+    parts = ((int(path[-1]), _part(model, value)) for path, value in found)
+    return {index: part for index, part in parts if part is not None}

@@ -20,6 +20,7 @@ FREQUENCY_UNITS = {"mhz": "1e6", "khz": "1e3", "hz": "1", "ghz": "1e9"}
 RATE_UNITS = {"mbps": "1e6", "kbps": "1e3", "bps": "1", "gbps": "1e9"}
 RESISTANCE_UNITS = {"ohm": "1", "kohm": "1e3"}
 CAPACITANCE_UNITS = {"pf": "1e-12", "nf": "1e-9"}
+TIME_UNITS = {"ms": "1e-3", "us": "1e-6", "s": "1"}
 
 SWITCH = {"yes": True, "no": False, "true": True, "false": False}
 
@@ -95,6 +96,29 @@ NET_COLUMNS = (
         units=RATE_UNITS,
         zero=False,
         meaning="bit rate of a net that carries data",
+    ),
+    Column(
+        name="pattern_bits",
+        field="pattern_bits",
+        kind="number",
+        zero=False,
+        meaning="activity pattern: length of a pseudo-random pattern that repeats",
+    ),
+    Column(
+        name="burst_length",
+        field="burst_length_s",
+        kind="number",
+        units=TIME_UNITS,
+        zero=False,
+        meaning="how long the net is active at a stretch, with burst_period",
+    ),
+    Column(
+        name="burst_period",
+        field="burst_period_s",
+        kind="number",
+        units=TIME_UNITS,
+        zero=False,
+        meaning="from the start of one burst to that of the next",
     ),
     Column(
         name="driver",

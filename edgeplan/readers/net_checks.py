@@ -16,6 +16,8 @@ ALIGNED = {
     "receiver_pin": "receiver",
 }
 
+LONGEST_PATTERN = 2**40  # a longer one is a slip of the pen
+
 
 def complete(
     nets: NetList, names: Names, pairs: Iterable[str], owned: Mapping[str, set[str]]
@@ -83,6 +85,8 @@ def problems(nets: NetList, names: Names) -> Iterator[Problem]:
         yield from _far_net(entry, nets)
         yield from _counts(entry)
         yield from _site_value(entry)
+        yield from _pattern(entry)
+        yield from _burst(entry)
         yield from _names(entry, "interface", names.interfaces)
         yield from _names(entry, "driver", names.drivers)
         yield from _names(entry, "receiver", names.receivers)
@@ -120,6 +124,35 @@ def _site_value(entry: Entry) -> Iterator[Problem]:
         yield entry.where("site").problem(message, "a site with a value is fitted")
     if value_ohm == 0 and site == "fitted":
         yield entry.where("site").problem("0 ohm is fitted", "a site with 0 ohm is a link")
+
+
+def _pattern(entry: Entry) -> Iterator[Problem]:
+    """A pattern's length is a whole number of bits, of a net that carries a pattern."""
+    bits = entry.values.get("pattern_bits")
+    if bits is None:
+        return
+    where = entry.where("pattern_bits")
+    if not 2 <= bits <= LONGEST_PATTERN or bits != int(bits):
+        hint = "write how many bits pass until the pattern repeats, such as 127"
+        yield where.problem(f"{bits:g} is not a whole number of bits, 2 or more", hint)
+    activity = entry.values.get("activity")
+    if activity != "pattern":
+        stated = f"activity {activity!r}" if activity else "no activity"
+        yield where.problem(f"a pattern's length with {stated}", 'write activity "pattern"')
+
+
+def _burst(entry: Entry) -> Iterator[Problem]:
+    """A burst has a length and a period that is no shorter."""
+    length_s, period_s = (entry.values.get(f"burst_{name}_s") for name in ("length", "period"))
+    for name, value, other in (("length", length_s, period_s), ("period", period_s, length_s)):
+        if value is not None and other is None:
+            lacking = "period" if name == "length" else "length"
+            message = f"a burst's {name} without burst_{lacking}"
+            hint = f"add burst_{lacking}, or leave out both: then the net is active all the time"
+            yield entry.where(f"burst_{name}_s").problem(message, hint)
+    if length_s is not None and period_s is not None and length_s > period_s:
+        message = f"a burst of {length_s:g} s is longer than its period, {period_s:g} s"
+        yield entry.where("burst_length_s").problem(message, "swap them, or check the units")
 
 
 def _names(entry: Entry, what: str, known: Iterable[str]) -> Iterator[Problem]:

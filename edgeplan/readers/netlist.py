@@ -235,7 +235,8 @@ def apply_groups(nets: NetList, groups: Mapping[int, Group], document: Document)
         if not fitting:
             notes.append(f"[[group]] nets = {group.nets!r} fits no net")
         for name, value in _values(group).items():
-            where = partial(document.where, ("group", index, name.rpartition("_")[0] or name))
+            key = Group.model_fields[name].alias or name
+            where = partial(document.where, ("group", index, key))
             for entry in fitting:
                 _fill(entry, name, value, where)
     return notes

@@ -143,7 +143,8 @@ def problems(document: Document, names: Names, nets: Collection[str] | None) -> 
     if nets is not None:
         yield from _dangling(document, ("interface", EACH, "clock_net"), "net", nets)
         yield from _dangling(document, ("pair", EACH, "nets", EACH), "net", nets)
-        yield from _clock_sources(document, nets)
+        yield from _patterns(document, ("clock_source", EACH, "nets", EACH), nets)
+        yield from _patterns(document, ("transfer", EACH, "nets", EACH), nets)
 
 
 def _named_twice(document: Document) -> Iterator[Problem]:
@@ -206,9 +207,9 @@ def _stated_settings(document: Document, names: Names) -> Iterator[Problem]:
             yield document.where(path).problem(message, instead(str(setting), known))
 
 
-def _clock_sources(document: Document, nets: Collection[str]) -> Iterator[Problem]:
-    """Each pattern of a clock source fits a net."""
-    for path, pattern in found(document.data, ("clock_source", EACH, "nets", EACH)):
+def _patterns(document: Document, where: Path, nets: Collection[str]) -> Iterator[Problem]:
+    """Each pattern at a place fits a net."""
+    for path, pattern in found(document.data, where):
         if isinstance(pattern, str) and not any(matches(pattern, net) for net in nets):
             yield document.where(path).problem(f"no net fits {pattern!r}", instead(pattern, nets))
 

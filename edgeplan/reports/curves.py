@@ -59,13 +59,15 @@ def _changes(spectrum: Spectrum, worst: int) -> Iterator[str]:
     if not spectrum.change_by_edge_db:
         return
     yield ""
-    yield "What the proposal changes, in dB: a slower edge, less current, both"
+    yield "What the proposal changes, in dB"
+    yield "   frequency  harmonic     by the edge  by the current     both"
     for index in _worst(spectrum, worst):
         edge, current = spectrum.change_by_edge_db[index], spectrum.change_by_current_db[index]
         if edge == current == 0:
             continue
         frequency = phrases.engineering(spectrum.frequency_hz[index], "Hz")
-        yield f"  {frequency:>10}  {edge + 0.0:+8.1f}{current + 0.0:+8.1f}{edge + current:+8.1f}"
+        numbers = f"{edge + 0.0:+12.1f}{current + 0.0:+16.1f}{edge + current + 0.0:+9.1f}"
+        yield f"  {frequency:>10}  {_harmonic(spectrum.order[index]):9}   {numbers}"
 
 
 def _worst(spectrum: Spectrum, worst: int) -> list[int]:
@@ -79,8 +81,7 @@ def _worst(spectrum: Spectrum, worst: int) -> list[int]:
 
 def _spectrum_line(spectrum: Spectrum, index: int, margin_db: float) -> str:
     """Write one line of a spectrum; levels are in dBµV/m."""
-    order = spectrum.order[index]
-    parity = "even" if order % 2 == 0 else "odd"
+    harmonic = _harmonic(spectrum.order[index])
     limit = spectrum.limit_dbuv_per_m[index]
     expected = spectrum.expected_dbuv_per_m[index]
     over = expected - limit + margin_db
@@ -94,9 +95,18 @@ def _spectrum_line(spectrum: Spectrum, index: int, margin_db: float) -> str:
     )
     frequency = phrases.engineering(spectrum.frequency_hz[index], "Hz")
     numbers = "".join(f"{level:8.1f}" for level in levels)
-    return (
-        f"  {frequency:>10}  {order:>4} {parity:4}    {numbers}{over:+8.1f}   {_bar(over)}".rstrip()
-    )
+    return f"  {frequency:>10}  {harmonic:9}    {numbers}{over:+8.1f}   {_bar(over)}".rstrip()
+
+
+def _harmonic(order: int) -> str:
+    """Write a harmonic and its parity; data have power in the band and no harmonics.
+
+    >>> _harmonic(7), _harmonic(12), _harmonic(0)
+    ('   7 odd', '  12 even', '  in band')
+    """
+    if order == 0:
+        return "  in band"
+    return f"{order:>4} {'odd' if order % 2 else 'even'}"
 
 
 def _bar(over_db: float) -> str:

@@ -1,15 +1,16 @@
 """One net in full: inputs, line, windows, every check and candidate, spectrum, waveforms."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from itertools import zip_longest
 
-from edgeplan.reports import curves, phrases, rows, summary
+from edgeplan.reports import at_line, curves, phrases, rows, summary
 from edgeplan.reports.table import WIDTH, paint, section_lines
 from edgeplan.results import (
     Candidate,
     CandidateSetting,
     Check,
     Corners,
+    EmissionAtLine,
     NetResult,
     Results,
     Window,
@@ -17,6 +18,7 @@ from edgeplan.results import (
 )
 
 _WORST_LINES = 12
+_AT_LINE_WIDTH = 98
 
 
 def render(results: Results, *, width: int | None, colour: bool) -> str:
@@ -57,10 +59,13 @@ def _net(net: NetResult, results: Results, width: int, *, colour: bool) -> Itera
         ("Window after", _window(net.window_after)),
         ("Checks as drawn", _checks(net, net.candidate_now)),
         ("Checks after", _checks(net, net.proposal) if _changes(net) else iter(())),
-        ("Candidates", _candidates(net)),
     )
     for title, cells in blocks:
         yield from _block(title, list(cells), width)
+    said: set[str] = set()
+    for entry in net.emission_at_line:
+        yield from _at_line(entry, min(width, _AT_LINE_WIDTH), said)
+    yield from _block("Candidates", list(_candidates(net)), width)
     yield from curves.spectra(net, results.emission_target.margin_db, _WORST_LINES)
     yield from curves.waveforms(net)
     sentences = (
@@ -192,7 +197,6 @@ def _checks(net: NetResult, candidate: int) -> Iterator[list[str]]:
             ", ".join(check.provenance),
             _where(check),
         ]
-        yield from _parts(check)
 
 
 def _level_unit(check: Check) -> str:
@@ -234,13 +238,33 @@ def _where(check: Check) -> str:
     return ", ".join(word for word in (waits, *words) if word)
 
 
-def _parts(check: Check) -> Iterator[list[str]]:
-    """Yield the mechanisms of an emission check."""
-    for part in check.parts:
-        error = f"({part.error_db.low:+.1f}/{part.error_db.high:+.1f} dB)"
-        level = f"{part.expected_dbuv_per_m:.1f} dBµV/m"
-        model = f"up to {part.up_to_dbuv_per_m:.1f}, model {part.model}"
-        yield [f"  by {part.mechanism}", level, "", error, "", "", "", model]
+def _at_line(entry: EmissionAtLine, width: int, said: set[str]) -> Iterator[str]:
+    """Yield the emission at one line: level, mechanisms, what single changes would do.
+
+    A note is printed once per net: ``said`` holds those that were.
+    """
+    yield from ("", *phrases.wrap(at_line.title(entry), width))
+    yield from phrases.wrap(f"  {at_line.level(entry)}", width, "  ")
+    yield from _aligned([at_line.MECHANISM_HEAD, *at_line.mechanisms(entry)], width)
+    yield from _aligned([at_line.WHAT_IF_HEAD, *at_line.what_if(entry)], width)
+    for note in at_line.notes(entry):
+        if note not in said:
+            yield from phrases.wrap(f"  {note}", width, "  ")
+        said.add(note)
+
+
+def _aligned(cells: Sequence[Sequence[str]], width: int) -> Iterator[str]:
+    """Yield a table whose first column wraps and whose others stand right."""
+    safe = [[phrases.inert(cell) for cell in line] for line in cells]
+    sizes = [max(map(phrases.display_width, column)) for column in zip(*safe, strict=True)]
+    first = min(sizes[0], max(20, width - sum(sizes[1:]) - 2 * len(sizes)))
+    for name, *numbers in safe:
+        *above, last = phrases.wrap(name, first)
+        yield from (f"  {text}" for text in above)
+        parts = [" " * (size - phrases.display_width(number)) + number
+                 for number, size in zip(numbers, sizes[1:], strict=True)]  # fmt: skip
+        gap = " " * (first - phrases.display_width(last))
+        yield "  ".join(["", last + gap, *parts]).rstrip()
 
 
 def _candidates(net: NetResult) -> Iterator[list[str]]:

@@ -3,8 +3,8 @@
 import re
 from collections.abc import Iterator
 
-from edgeplan.reports import phrases, rows, summary
-from edgeplan.results import NetResult, Results
+from edgeplan.reports import at_line, phrases, rows, summary
+from edgeplan.results import EmissionAtLine, NetResult, Results
 
 # What starts a link, a mention, an issue number, code, a formula or HTML, or ends a cell.
 _ACTIVE = re.compile(
@@ -54,6 +54,9 @@ def render(results: Results, *, width: int | None, colour: bool) -> str:  # noqa
     lines += [*_totals(results), ""]
     lines += _nets("Nets to change or to settle", rest, results.command)
     lines += _nets("Nets inside as drawn", calm, results.command)
+    lines += [
+        line for net in results.nets for entry in net.emission_at_line for line in _emission(entry)
+    ]
     for section in summary.sections(results):
         lines += [f"### {section.title}", "", *(f"- {escaped(line)}" for line in section.lines), ""]
     return "\n".join(lines).rstrip("\n") + "\n"
@@ -108,6 +111,20 @@ def _nets(title: str, nets: list[NetResult], command: str) -> Iterator[str]:
     yield from ("", "Launched edges, 10–90 %; (b): borderline.", "")
     remarks = [f"- {escaped(net.net)}: {escaped(text)}" for net in nets for text in rows.below(net)]
     yield from [*remarks, ""] if remarks else []
+
+
+def _emission(entry: EmissionAtLine) -> Iterator[str]:
+    """Yield a net's emission at one line: level, mechanisms, what single changes would do."""
+    yield from (f"### {escaped(at_line.title(entry))}", "", escaped(at_line.level(entry)), "")
+    for head, cells in (
+        (at_line.MECHANISM_HEAD, at_line.mechanisms(entry)),
+        (at_line.WHAT_IF_HEAD, at_line.what_if(entry)),
+    ):
+        yield _line(list(head))
+        yield "|:--|" + "--:|" * (len(head) - 1)
+        yield from (*map(_line, cells), "")
+    notes = [f"- {escaped(note)}" for note in at_line.notes(entry)]
+    yield from [*notes, ""] if notes else []
 
 
 def _line(cells: list[str]) -> str:

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from edgeplan.names import natural_key
 from edgeplan.reports import phrases
-from edgeplan.results import VERDICTS, BoardLine, Results
+from edgeplan.results import BEYOND_MODEL, VERDICTS, BoardLine, Results
 
 NOT_USED = "not used"  # the subject of an input that was accepted and has no effect yet
 _NAMES_SHOWN = 6
@@ -72,6 +72,7 @@ def sections(results: Results) -> list[Section]:
         *changes,
         ("Board emission", _board(results)),
         ("Findings waived", _waived(results)),
+        ("Beyond the model", _beyond(results)),
         ("Not judged", _not_judged(results)),
         ("Fill in first", _fill_in(results)),
         ("Assumptions", _assumptions(results)),
@@ -152,6 +153,16 @@ def _waived(results: Results) -> Iterator[str]:
     for finding in results.findings:
         if finding.waived is not None:
             yield f"{finding.net}: {finding.rule}: {finding.waived}"
+
+
+def _beyond(results: Results) -> Iterator[str]:
+    """Tell findings about what no model holds for, after their count."""
+    found = [f for f in results.findings if f.rule in BEYOND_MODEL and f.waived is None]
+    if found:
+        count = f"{len(found)} finding{'s' if len(found) != 1 else ''}"
+        yield f"{count} without a level; the exit code does not count them"
+    for finding in found:
+        yield f"{finding.message} ({finding.rule})"
 
 
 def _grouped(pairs: list[tuple[str, str]]) -> dict[str, list[str]]:

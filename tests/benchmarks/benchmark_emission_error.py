@@ -27,10 +27,16 @@ def main() -> None:
             f"{name:52} {excess.size:5d} {np.mean(excess):+6.2f} {np.std(excess):5.2f}"
             f" {np.min(excess):+7.2f} {np.max(excess):+7.2f}"
         )
+    print("\npercent that read above a limit which expected plus margin just meets")
+    print(f"{'site':12} {'6 dB: before':>13} {'now':>5} {'0 dB: before':>13} {'now':>5}")
+    for name, shares in full_wave_errors.site_risks().items():
+        print("{:12} {:13.1f} {:5.1f} {:13.1f} {:5.1f}".format(name, *shares))
     if arguments.draw:
         import full_wave_pictures
+        import model_pictures
 
-        full_wave_pictures.draw_all(Path(__file__).parents[2] / "docs" / "models")
+        for pictures in (full_wave_pictures, model_pictures):
+            pictures.draw_all(Path(__file__).parents[2] / "docs" / "models")
 
 
 if __name__ == "__main__":

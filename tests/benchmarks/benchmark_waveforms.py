@@ -4,7 +4,7 @@ Run ``OPENBLAS_NUM_THREADS=1 python tests/benchmarks/benchmark_waveforms.py [--m
 It prints and never asserts. All ratios come from one process; engine and kernel take turns,
 and the median of the pairs counts, so that what else the machine does hardly matters.
 
-* engine: ``read`` at two corners, all readings;
+* engine: all readings at two corners, which are read together;
 * script: what a competent user of scikit-rf writes: the line networks of a net once, then per
   candidate a source cascade, and per receiver an inverse transform and the same readings;
 * kernel: the matrix products and inverse transforms that the engine called, recorded and run
@@ -28,9 +28,9 @@ from skrf.media import DistributedCircuit
 from edgeplan.physics.lines import LineConstants, dielectric_factor
 from edgeplan.physics.network import Trees
 from edgeplan.physics.row_blocks import LINES
+from edgeplan.physics.situations import Situation, read_together
 from edgeplan.physics.sources import Drive
 from edgeplan.physics.waveform_readings import Levels, levels_of
-from edgeplan.physics.waveforms import read
 
 Array = NDArray[Any]
 
@@ -92,8 +92,7 @@ def drives(nets: int, seed: int = 2) -> list[Drive]:
 def engine(trees: Trees, corners: list[Drive], levels: Levels, bit_s: np.ndarray) -> None:
     """Everything that is read, at both corners."""
     LINES.rows.clear()
-    for drive in corners:
-        read(trees, drive, levels, bit_s)
+    read_together([Situation(trees, drive, levels, bit_s) for drive in corners])
 
 
 def recorded(work: Callable[[], object]) -> list[tuple[Any, ...]]:

@@ -190,15 +190,10 @@ def test_no_reading_on_the_site_exceeds_the_worst_case_by_four_decibels(site):
     assert errors.site_excess_db(site, 0.0).min() > -4.0
 
 
-def test_the_expected_level_of_the_site_is_not_low_in_the_mean(site):
-    expected = errors.site_excess_db(site, cable.MODEL.offset_db)
-    assert 0 < expected.mean() < cable.MODEL.error_db
-
-
 def test_every_run_prints_the_error_of_the_expected_level_on_the_site(site):
-    expected = errors.site_excess_db(site, cable.MODEL.offset_db)
+    expected = errors.site_excess_db(site, errors.offset_db(site))
     mean, deviation = f"{expected.mean():.0f}", f"{expected.std():.0f}"
-    told = f"{expected.size} such points: expected reads {mean} dB high"
+    told = f"{expected.size} other points: expected reads {mean} dB high"
     assert f"{told}, standard deviation {deviation} dB" in cable.MODEL.source
 
 
@@ -226,16 +221,24 @@ def test_a_filter_in_one_of_three_cables_is_worth_next_to_nothing_above_resonanc
 PAGE = Path(__file__).parents[2] / "docs" / "models" / "emission_errors.md"
 
 
+def rows_of_the_page(cells):
+    """Numbers of the rows of the page's tables with so many numeric cells."""
+    row = re.compile(r"^\|[^|]+" + r"\| ([-+\d.]+) " * cells + r"\|$", re.MULTILINE)
+    text = PAGE.read_text(encoding="utf-8").replace("\N{MINUS SIGN}", "-")
+    return [[float(cell) for cell in found] for found in row.findall(text)]
+
+
 def test_the_page_of_errors_prints_what_the_tables_give():
     computed = [
         (excess.size, *np.round([excess.mean(), excess.std(), excess.min(), excess.max()], 1))
         for excess in errors.all_sets().values()
     ]
-    row = re.compile(r"^\|[^|]+" + r"\| ([-+\d.]+) " * 5 + r"\|$", re.MULTILINE)
-    printed = row.findall(PAGE.read_text(encoding="utf-8").replace("\N{MINUS SIGN}", "-"))
-    assert len(printed) == 13
+    printed = rows_of_the_page(5)
+    assert len(printed) == 14
     for cells in printed:
-        distances = [
-            np.abs(np.subtract(numbers, [float(x) for x in cells])) for numbers in computed
-        ]
-        assert min(distance.max() for distance in distances) < 0.11
+        assert min(np.abs(np.subtract(numbers, cells)).max() for numbers in computed) < 0.11
+
+
+def test_the_page_of_errors_prints_how_many_cases_are_falsely_green():
+    printed = rows_of_the_page(4)
+    np.testing.assert_allclose(printed, list(errors.site_risks().values()), atol=0.051)

@@ -10,7 +10,7 @@ ROWS = [(30e6, -50.0), (300e6, -30.0), (1e9, -40.0)]
 
 
 def field(frequency_hz, port_volt=1.0, **changes):
-    values = {"rows": ROWS, "distance_m": 3.0, "replaces": "cable", "source": "own chamber"}
+    values = {"rows": ROWS, "distance_m": 3.0}
     paths = MeasuredInputs(port_volt=np.full((1, 1), port_volt), **(values | changes))
     return measured_transfer.field_per_forward_ampere(paths, np.asarray(frequency_hz))[0]
 

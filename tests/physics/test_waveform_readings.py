@@ -53,6 +53,14 @@ def test_thresholds_of_a_falling_edge_are_mirrored():
     assert found["fall_last_s"] == pytest.approx(36.0, abs=0.02)
 
 
+@pytest.mark.parametrize("middle", [60, 90, 150])
+def test_ringback_is_the_bottom_of_a_dip_however_late_it_comes(middle):
+    dip = RAMP - 0.2 * np.exp(-(((np.arange(200) - middle) / 6) ** 2))
+    found = readings_of(dip)
+    assert found["rise_ringback"] == pytest.approx(0.8, abs=1e-6)
+    assert found["fall_ringback"] == pytest.approx(0.8, abs=1e-6)
+
+
 def test_dip_through_a_threshold_moves_the_last_crossing_only():
     dip = RAMP - 0.5 * np.exp(-(((np.arange(200) - 80) / 6) ** 2))
     found = readings_of(dip)

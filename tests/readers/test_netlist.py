@@ -51,6 +51,23 @@ def test_the_header_holds_the_unit(header, cell, name, value):
     assert getattr(net, name) == value
 
 
+def test_activity_of_a_row_and_of_a_group():
+    nets, problems = read(
+        "net,activity,pattern_bits,burst_length_us,burst_period_ms\nA,pattern,127,500,20\nB,,,,\n"
+    )
+    document = toml.read("[[group]]\nnets = 'B'\nburst_length = '1 ms'", "board.toml")
+    group = Group(
+        nets="B", activity="pattern", pattern_bits=31, burst_length_s=1e-3, burst_period_s=0.1
+    )
+    netlist.apply_groups(nets, {0: group}, document)
+    problems += net_checks.problems(nets, NAMES)
+    row, grouped = (entry.net("nets.csv") for entry in nets.entries.values())
+    assert problems == []
+    assert (row.pattern_bits, row.burst_length_s, row.burst_period_s) == (127, 5e-4, 0.02)
+    assert (grouped.pattern_bits, grouped.burst_length_s, grouped.burst_period_s) == (31, 1e-3, 0.1)
+    assert nets.entries["B"].where("burst_length_s").row == 3
+
+
 def test_two_widths_on_one_layer_are_two_pieces():
     (net,), problems = complete("net,layer,length_mm,width_mm\nA,L1,5,0.2\nA,L1,7,0.1\n")
     assert problems == []

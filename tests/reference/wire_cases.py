@@ -13,6 +13,7 @@ from wire_boards import Board, Mesh, Trace, board_model
 from wire_code import SPEED_OF_LIGHT_M_PER_S, Array, far_field
 
 Row = dict[str, Any]
+Loads = dict[str, tuple[float, float, float]]
 
 # name: (driver ohm, load ohm, load farad in parallel)
 LOADS = {
@@ -35,6 +36,7 @@ SHORTEST_M, LONGEST_M = 0.5, 2.0  # cables in free space
 LENGTH_STEP = 0.04  # wavelengths between the lengths tried
 SITE_CABLE_M = 1.5  # none is longer along its way
 TABLE_M = 0.8  # height of the board over the floor
+LEVEL_M = 1.4  # none runs farther towards the receiver
 FREE_LAYOUTS, SITE_LAYOUTS = 16, 12
 
 _SMALL = {"length_m": 0.07, "width_m": 0.05, "exits_m": ((0.07, 0.025),)}
@@ -105,9 +107,9 @@ BOARDS = {
 SEVERAL = ("middle", "long", "wide")  # those that carry several cables
 
 
-def load_ohm(frequency_hz: float, name: str) -> tuple[float, complex]:
+def load_ohm(frequency_hz: float, name: str, loads: Loads | None = None) -> tuple[float, complex]:
     """Resistance of the driver and impedance of the load of that name."""
-    source, resistance, capacitance = LOADS[name]
+    source, resistance, capacitance = (loads or LOADS)[name]
     return source, 1 / (1 / resistance + 2j * np.pi * frequency_hz * capacitance)
 
 
@@ -169,15 +171,18 @@ def free_layout(board: Board, rng: np.random.Generator) -> list[list[Array]]:
     return cables
 
 
-def site_layout(board: Board, rng: np.random.Generator) -> list[list[Array]]:
+def site_layout(
+    board: Board, rng: np.random.Generator, reach_m: float = SITE_CABLE_M
+) -> list[list[Array]]:
     """One cable per exit: level, draped, down to the floor and bonded, or down and along it."""
     cables = []
     for exit_m in board.exits_m:
         out = _outward(board, exit_m, np.radians(rng.uniform(-40, 40)))
         foot = np.array([*exit_m, board.floor_m])
-        kind, level_m, along_m = rng.integers(4), rng.uniform(0.2, 0.7), rng.uniform(0.1, 0.3)
+        kind, level_m = rng.integers(4), rng.uniform(0.2, reach_m - TABLE_M)
+        along_m = rng.uniform(0.1, reach_m - 1.2)
         if kind == 0:
-            cables.append([foot, foot + 2 * level_m * out])
+            cables.append([foot, foot + min(2 * level_m, LEVEL_M) * out])
             continue
         corner = foot + (min(level_m, 0.4) if kind == 3 else level_m) * out
         end_m = {1: 0.4, 2: 0.0, 3: 0.05}[int(kind)]

@@ -34,9 +34,29 @@ def test_a_candidate_without_a_sentence_names_the_checks_it_fails(sample):
 
 
 def test_each_mechanism_of_an_emission_level_has_its_error(text):
-    assert "by cable" in text
-    assert "(-3.4/+3.4 dB)" in text
+    """41.3 less 0.6 is 40.7, less and plus 3.4."""
+    assert "  cable          40.7   46.2    37.3 to 44.1                87 %" in text
     assert "-7.3 dB ±3.4 dB" in text
+
+
+def test_each_change_tells_its_level_and_the_line_that_then_binds(text):
+    lines = [line.split("  ") for line in text.splitlines()]
+    cells = {line[1]: [cell.strip() for cell in line[2:] if cell] for line in lines if line[1:]}
+    assert cells["fit 10 Ω at R17 (was a link)"] == [
+        "39.9", "-1.4", "over by 5.9", "the same line",
+    ]  # fmt: skip
+    assert cells["10 dB more on every cable"] == [
+        "34.0", "-7.3", "under by < 0.1", "900 MHz (9th), over by 1.4",
+    ]  # fmt: skip
+    assert cells["setting D1S (bank sdr)"] == ["?", "?", "not known"]
+    assert cells["setting D3F, fit 47 Ω at R17"][:2] == ["32.8", "0.0"]
+
+
+def test_a_note_of_both_states_is_printed_once(sample):
+    net = sample.memory_clock(sample.pictures())
+    twice = [dataclasses.replace(entry, notes=["once"]) for entry in net.emission_at_line]
+    record = sample.record("explain", [dataclasses.replace(net, emission_at_line=twice)])
+    assert reports.render(record, "text").splitlines().count("  once") == 1
 
 
 def test_spectrum_tells_parity_parts_and_excess(text):

@@ -13,7 +13,7 @@ from edgeplan import reports
 FOLDER = Path(reports.__file__).parent
 GOLDEN = Path(__file__).parents[1] / "golden"
 # Modules that formats share, and the picture, which is no text.
-SHARED = {"__init__", "curves", "phrases", "pictures", "rows", "summary"}
+SHARED = {"__init__", "at_line", "curves", "phrases", "pictures", "rows", "summary"}
 EVIL = "A\x1b[31m\x07B" + chr(0x202E) + "C" + chr(0x85) + chr(0xD800) + "\nD"
 VIEWS = {
     "plan.txt": ("table", "record", 150),
