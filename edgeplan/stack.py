@@ -173,7 +173,8 @@ def _solved(line: Line, stack: Sequence[Layer], index: int, around: _Surrounding
         upper_plane=bool(plane_above and plane_below),
         coated=around.coated,
     )
-    unknown = f"layer {line.layer}: no field solution for these sizes; state z0"
+    sizes = f"{line.width_m * 1e3:g} mm wide and {line.height_m * 1e3:g} mm from its plane"
+    unknown = f"layer {line.layer}: no field solution for a line {sizes}; check both"
     return replace(
         line,
         impedance_ohm=found.impedance_ohm,

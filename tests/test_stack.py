@@ -176,7 +176,9 @@ def test_a_surface_line_outside_its_formula_is_solved():
 def test_a_width_that_no_solution_was_tried_for_is_named():
     line = printed_line(thin_strip(height_m=1e-6), "L1", 1e-3)
     assert isnan(line.impedance_ohm)
-    assert line.problem == "layer L1: no field solution for these sizes; state z0"
+    assert line.problem == (
+        "layer L1: no field solution for a line 1 mm wide and 0.001 mm from its plane; check both"
+    )
 
 
 MASK = {"layer": "M", "kind": "dielectric", "thickness_m": 20e-6, "permittivity": 3.5}
