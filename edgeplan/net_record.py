@@ -362,9 +362,11 @@ def _line(facts: NetFacts) -> LineNote:
 
 
 def _drawn(line: Line) -> str:
-    """What a line was computed from, and how well where it was solved."""
-    drawn = f"{line.width_m * 1e3:g} mm wide, {line.height_m * 1e3:g} mm to its plane"
-    return f"{drawn}, solved to {100 * line.error:.2g} %" if line.provenance == SOLVED else drawn
+    """What a line was computed from, how well where it was solved, and what that assumes."""
+    parts = [f"{line.width_m * 1e3:g} mm wide, {line.height_m * 1e3:g} mm to its plane"]
+    if line.provenance == SOLVED:
+        parts.append(f"solved to {100 * line.error:.2g} %")
+    return ", ".join([*parts, *([line.assumed] if line.assumed else [])])
 
 
 def _way_delay_s(facts: NetFacts, piece: int) -> float:

@@ -133,7 +133,8 @@ def path_of(net: Net, routes: Sequence[RouteSegment], line_of: LineOf, *, clock_
 def _known_line(line: Line) -> Line:
     """The line, or why it is not known."""
     if line.problem:
-        value = "plane" if isnan(line.delay_s_per_m) else "z0"
+        without_delay = "width" if line.planes else "plane"
+        value = without_delay if isnan(line.delay_s_per_m) else "z0"
         raise CannotRoute(line.problem, value=value, of=f"layer {line.layer}")
     return line
 

@@ -41,8 +41,9 @@ def remembered(content: object, solve: Callable[[], Sequence[float]]) -> tuple[f
 
     Examples
     --------
-    >>> os.environ["EDGEPLAN_CACHE"] = "0"
-    >>> remembered(["third", 1], lambda: [1 / 3])
+    >>> from unittest.mock import patch
+    >>> with patch.dict(os.environ, EDGEPLAN_CACHE="0"):
+    ...     remembered(["third", 1], lambda: [1 / 3])
     (0.333333333,)
     """
     text = json.dumps(content)
@@ -66,11 +67,12 @@ def folder() -> Path | None:
 
     Examples
     --------
-    >>> os.environ.update(EDGEPLAN_CACHE="1", XDG_CACHE_HOME="/tmp/cache")
-    >>> folder().as_posix()
-    '/tmp/cache/edgeplan'
-    >>> os.environ["EDGEPLAN_CACHE"] = "0"
-    >>> print(folder())
+    >>> from unittest.mock import patch
+    >>> with patch.dict(os.environ, EDGEPLAN_CACHE="1", XDG_CACHE_HOME="/home/ann/cache"):
+    ...     folder().as_posix()
+    '/home/ann/cache/edgeplan'
+    >>> with patch.dict(os.environ, EDGEPLAN_CACHE="0"):
+    ...     print(folder())
     None
     """
     if os.environ.get(SWITCH, "").lower() in OFF:

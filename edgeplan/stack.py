@@ -16,13 +16,15 @@ SLIGHTLY_OFF = 1.5  # height ratio to which the parallel rule is within 0.5 % of
 STATED = "stated"
 COMPUTED = "closed form"
 SOLVED = "field solution"
+MASK_SHAPE = "mask taken as equally thick on copper and laminate"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Line:
     """Constants of one printed line, per metre, with where they came from.
 
-    ``error`` is the relative error that a field solution found of itself. ``problem`` is
+    ``error`` is the relative error that a field solution found of itself, ``assumed`` what
+    it takes for granted and no input states. ``problem`` is
     empty when the line is known; otherwise it says why not and what to give instead, and
     the numbers are NaN.
     """
@@ -42,6 +44,7 @@ class Line:
     planes: tuple[str, ...] = ()
     provenance: str = COMPUTED
     error: float = nan
+    assumed: str = ""
     problem: str = ""
 
 
@@ -170,7 +173,8 @@ def _solved(line: Line, stack: Sequence[Layer], index: int, around: _Surrounding
         upper_plane=bool(plane_above and plane_below),
         coated=around.coated,
     )
-    unknown = f"layer {line.layer}: no field solution for these sizes; state z0"
+    sizes = f"{line.width_m * 1e3:g} mm wide and {line.height_m * 1e3:g} mm from its plane"
+    unknown = f"layer {line.layer}: no field solution for a line {sizes}; check both"
     return replace(
         line,
         impedance_ohm=found.impedance_ohm,
@@ -179,6 +183,7 @@ def _solved(line: Line, stack: Sequence[Layer], index: int, around: _Surrounding
         skin_ohm_per_m_rthz=found.skin_ohm_per_m_rthz,
         provenance=SOLVED,
         error=found.error,
+        assumed=MASK_SHAPE if around.coated else "",
         problem=unknown if isnan(found.impedance_ohm) else "",
     )
 

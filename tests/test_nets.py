@@ -63,15 +63,15 @@ def test_a_supply_without_both_ends_is_missing():
 
 
 @pytest.mark.parametrize(
-    ("rows", "value"),
+    ("layers", "table", "value"),
     [
-        ([{"layer": "M", "kind": "dielectric", "thickness_m": 2e-5, "permittivity": 3}], "z0"),
-        ([], "plane"),
+        (STACK[:3], {"L1": [(0.2e-3, 50.0), (0.3e-3, 40.0)]}, "z0"),
+        ([STACK[0], STACK[1] | {"thickness_m": 1e-7}, STACK[2]], {}, "width"),  # unsolved
+        (STACK[:2], {}, "plane"),
     ],
 )
-def test_what_a_line_lacks_is_missing_of_its_layer_not_of_each_net(rows, value):
-    layers = [*rows, *STACK[:2], *(STACK[2:3] if rows else [])]
-    lack = blocked(net(), stack=layers)
+def test_what_a_line_lacks_is_missing_of_its_layer_not_of_each_net(layers, table, value):
+    lack = blocked(net(), stack=layers, impedance=table)
     assert (lack.missing.value, lack.missing.of) == (value, "layer L1")
 
 

@@ -191,6 +191,7 @@ def test_the_environment_switches_it_off_as_the_option_does(masked, folder, monk
     told = judged(masked, folder, "explain", "LAMP_CLK")
     assert "field solution" in told.decode()
     assert re.search(r"solved to 0\.0\d+ %", told.decode())
+    assert "mask taken as" in told.decode()
     only_entry(folder).unlink()
     command = [sys.executable, "-m", "edgeplan", "check", str(masked), "-q"]
     monkeypatch.setenv("EDGEPLAN_CACHE", "0")

@@ -176,7 +176,9 @@ def test_a_surface_line_outside_its_formula_is_solved():
 def test_a_width_that_no_solution_was_tried_for_is_named():
     line = printed_line(thin_strip(height_m=1e-6), "L1", 1e-3)
     assert isnan(line.impedance_ohm)
-    assert line.problem == "layer L1: no field solution for these sizes; state z0"
+    assert line.problem == (
+        "layer L1: no field solution for a line 1 mm wide and 0.001 mm from its plane; check both"
+    )
 
 
 MASK = {"layer": "M", "kind": "dielectric", "thickness_m": 20e-6, "permittivity": 3.5}
@@ -188,6 +190,7 @@ def test_a_line_under_solder_mask_is_a_solved_surface_line():
     top, bottom = (printed_line(rows, name, WIDTH_M) for name in ("L1", "L4"))
     for line in (top, bottom):
         assert (line.provenance, line.surface, line.problem) == (SOLVED, True, "")
+        assert line.assumed.startswith("mask taken as")
         assert line.impedance_ohm == pytest.approx(49.365, rel=3e-3)
         assert line.delay_s_per_m == pytest.approx(3.2726**0.5 / SPEED, rel=2e-3)
     assert surface_line(rows, WIDTH_M).layer == "L1"
