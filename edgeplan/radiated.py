@@ -21,7 +21,7 @@ from edgeplan.emission.mechanism import Cable as RadiatingCable
 from edgeplan.emission_lines import EmissionLines, lines_of
 from edgeplan.emission_target import Target, target_of
 from edgeplan.limits import DetectorLine
-from edgeplan.net_fields import fields_per_volt
+from edgeplan.net_fields import INNER, fields_per_volt, kind_of
 from edgeplan.nets import Nets
 from edgeplan.physics.floor_reflection import near_field_factor, site_factor
 from edgeplan.physics.network import response
@@ -299,9 +299,11 @@ def _table(
     filter_db = cable_part.undeclared_filter_db(passive.lines.frequency_hz[rows, line])
     credit = np.where(settled, 10 ** (-filter_db / 20), 1.0)  # judged with the filter: shown so
     parts |= {name: parts[name] * credit for name in ("cable_expected", "cable_up_to")}
+    inner = np.array([kind_of(f) == INNER for f in nets.facts])[:, None]
+    cable_error = passive.cable_error_db[rows, line]
     errors = {
-        "trace_error_db": np.full(over.shape, trace_part.MODEL.error_db),
-        "cable_error_db": passive.cable_error_db[rows, line],
+        "trace_error_db": np.where(inner, cable_error, trace_part.MODEL.error_db),
+        "cable_error_db": cable_error,
     }
     for name, part in passive.measured.items():
         errors[f"{name}_error_db"] = part.error_or(errors[f"{name}_error_db"])

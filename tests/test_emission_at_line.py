@@ -197,10 +197,13 @@ def test_mechanisms_add_up_in_power_and_carry_their_error(explained):
 
 
 def test_between_planes_the_trace_has_the_wider_error_of_that_model(explained):
-    """docs/models: 1.8 dB for a trace on the surface, 3.4 dB for one on an inner layer."""
-    surface, inner = (emission_of(explained(layer=layer)).parts[0] for layer in ("L1", "L3"))
-    assert (surface.mechanism, surface.model, surface.error_db.high) == ("trace", "trace", 1.8)
-    assert (inner.mechanism, inner.model, inner.error_db.high) == ("trace", "inner layer", 3.4)
+    """docs/models: 1.8 dB for a trace on the surface; between planes as much as for the cable."""
+    surface, inner = (emission_of(explained(layer=layer)).parts for layer in ("L1", "L3"))
+    assert (surface[0].mechanism, surface[0].model) == ("trace", "trace")
+    assert surface[0].error_db.high == 1.8
+    assert (inner[0].mechanism, inner[0].model) == ("trace", "inner layer")
+    assert inner[0].error_db == inner[1].error_db
+    assert 3.5 <= inner[0].error_db.high <= 8.0
 
 
 def test_a_filter_step_is_the_board_with_that_attenuation_in_its_file(explained):
@@ -247,14 +250,15 @@ def two_cables(attenuation):
 
 
 def test_undeclared_cables_take_a_filter_as_two_declared_ones_would(explained):
-    entry = now(explained(cables="", setting="WEAK"))
+    short = {"setting": "WEAK", "length_mm": "30"}
+    entry = now(explained(cables="", **short))
     assert entry.low_dbuv_per_m is None  # undecided
     assert "no filter is declared: shown without any on the cables" in entry.notes
     steps = of_kind(entry, "cable filter")
     assert len(steps) >= 4
     for change in steps:
         more = f'"{change.text.split()[0]} dB"'
-        assert_same(change, explained(cables=two_cables(more), setting="WEAK"), entry)
+        assert_same(change, explained(cables=two_cables(more), **short), entry)
 
 
 def test_what_is_over_even_with_the_assumed_filter_is_shown_with_it(explained):
@@ -388,7 +392,7 @@ def test_a_pull_up_hardly_changes_what_the_falling_edge_radiates(explained):
 
 def test_the_judged_statistic_is_the_one_that_is_told(explained):
     expected, worst = now(explained()), now(explained(statistic="worst-case"))
-    assert worst.level_dbuv_per_m > expected.level_dbuv_per_m + 3
+    assert worst.level_dbuv_per_m > expected.level_dbuv_per_m + 1  # 2 dB to 40 MHz, with a trace
     power = sum(10 ** (part.up_to_dbuv_per_m / 10) for part in worst.mechanisms)
     assert worst.level_dbuv_per_m == pytest.approx(10 * np.log10(power), abs=1e-6)
 
@@ -428,10 +432,11 @@ settings = [
 
 
 def test_a_change_is_split_by_the_edge_that_makes_the_line(explained):
-    """The strong falling edge rules low lines, though the weak rising one is the faster.
+    """Both edges make a line together, though only the falling one changes.
 
-    Both settings have one resistance, so all of the change is the edge's: the ratio of
-    |sin(x)/x| at x = pi f tr, below its first null, with tr the edge over 0.8.
+    Both settings have one resistance, so all of the change is the edges': of an odd harmonic
+    the mean of |sin(x)/x| of rise and fall at x = pi f tr, tr the edge over 0.8, where the
+    phase between them is not known: outputs of two resistances are two circuits.
     """
     results = explained(tables=UNEQUAL, driver="unequal", setting="QUICK", resistor_ohm="47")
     net = results.nets[0]
@@ -439,9 +444,9 @@ def test_a_change_is_split_by_the_edge_that_makes_the_line(explained):
     after = next(s for s in net.pictures.spectra if s.state == "after")
     low = np.array(after.frequency_hz) < 250e6
     frequency_hz = np.array(after.frequency_hz)[low]
-    slow, quick = (np.sinc(frequency_hz * edge_s / 0.8) for edge_s in (2e-9, 1e-9))
+    rise, slow, quick = (np.sinc(frequency_hz * t / 0.8) for t in (0.5e-9, 2e-9, 1e-9))
     edge, current = (
         np.array(column)[low] for column in (after.change_by_edge_db, after.change_by_current_db)
     )
-    np.testing.assert_allclose(edge, 20 * np.log10(slow / quick), atol=0.02)
+    np.testing.assert_allclose(edge, 20 * np.log10((rise + slow) / (rise + quick)), atol=0.02)
     np.testing.assert_allclose(current, 0.0, atol=2e-3)
