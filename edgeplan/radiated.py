@@ -394,10 +394,11 @@ def _passive(radiation: Radiation, nets: Nets) -> Passive:
     lines = lines_of(nets.facts, radiation.target)
     terms = _network(nets, lines.frequency_hz)
     cables = _cables(radiation, lines.frequency_hz)
-    trace, up_to = fields_per_volt(radiation.board, cables, nets, lines.frequency_hz)
+    trace, envelope = fields_per_volt(radiation.board, cables, nets, lines.frequency_hz)
     trace = trace * _enclosure(radiation.board, lines.frequency_hz)
     offset_db = cable_part.expected_offset_db(lines.frequency_hz, radiation.cable_count)
-    expected = up_to * 10 ** (offset_db / 20)
+    expected = envelope * 10 ** (offset_db / 20)
+    up_to = envelope * 10 ** (cable_part.up_to_offset_db(radiation.cable_count) / 20)
     judged = up_to if radiation.target.statistic == "worst-case" else expected
     measured = replaced(radiation.board, nets.facts, lines.frequency_hz)
     fields = _Fields(trace=trace, judged=judged, expected=expected, up_to=up_to, measured=measured)

@@ -105,7 +105,7 @@ def _site() -> Figure:
         line = _dense(part)
         for cables_db, style, label in (
             (errors.offset_db(line), "C0-", "expected"),
-            (0.0, "C3--", "up to"),
+            (errors.up_to_db(line), "C3--", "up to"),
         ):
             field_v = errors.field_v(line, errors.ON_FLOOR, cables_db)
             level = _level(models.on_site_v_per_m(line, field_v))

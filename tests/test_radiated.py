@@ -152,14 +152,14 @@ def test_the_upper_level_is_above_the_expected_one_by_what_the_page_says_for_one
 
 
 def test_several_or_undeclared_cables_have_an_expected_level_of_their_own():
-    # 5 dB below the envelope at 110 MHz
+    # 5 dB below the envelope at 110 MHz; the worst case is 2 dB above it
     several = [ONE_CABLE[0], ONE_CABLE[0] | {"name": "another"}]
     clocks = clock(clock_hz=110e6, length_m=LENGTH_M)
     for cables in (several, None):
         passive = passive_of(the_board(clocks, cable=cables))
         at = int(np.argmin(np.abs(passive.lines.frequency_hz[0] - 110e6)))
         ratio = passive.cable_up_to[0, at] / passive.cable_expected[0, at]
-        assert 20 * np.log10(ratio) == pytest.approx(5.0, abs=0.01)
+        assert 20 * np.log10(ratio) == pytest.approx(7.0, abs=0.01)
 
 
 def test_the_error_of_the_sum_is_that_of_its_parts_at_that_frequency():

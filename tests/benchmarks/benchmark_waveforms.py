@@ -7,8 +7,10 @@ and the median of the pairs counts, so that what else the machine does hardly ma
 * engine: all readings at two corners, which are read together;
 * script: what a competent user of scikit-rf writes: the line networks of a net once, then per
   candidate a source cascade, and per receiver an inverse transform and the same readings;
-* kernel: the matrix products and inverse transforms that the engine called, recorded and run
-  alone: the same calls on the same sizes and types.
+* kernel in blocks: the matrix products and inverse transforms of the engine alone, as many rows
+  at once as the engine reads at once: the plain arithmetic on the same sizes;
+* kernel in strips: the engine's very calls replayed on warm buffers. The engine cuts a block into
+  strips that stay in the cache, so this is what its own arithmetic takes at best.
 """
 
 import argparse
@@ -27,7 +29,7 @@ from skrf.media import DistributedCircuit
 
 from edgeplan.physics.lines import LineConstants, dielectric_factor
 from edgeplan.physics.network import Trees
-from edgeplan.physics.row_blocks import LINES
+from edgeplan.physics.row_blocks import LINES, ROWS
 from edgeplan.physics.situations import Situation, read_together
 from edgeplan.physics.sources import Drive
 from edgeplan.physics.waveform_readings import Levels, levels_of
@@ -113,13 +115,12 @@ def recorded(work: Callable[[], object]) -> list[tuple[Any, ...]]:
     return calls
 
 
-def kernel(work: Callable[[], object]) -> Callable[[], None]:
-    """Matrix products and inverse transforms that some work makes, one after the other, bare.
+def in_strips(calls: list[tuple[Any, ...]]) -> Callable[[], None]:
+    """Recorded products and transforms one after the other, bare.
 
     Shapes, types, lengths and order are those of the calls. Operands are views of few
     buffers, so that they are at least as warm as those of the engine.
     """
-    calls = recorded(work)
     size = max(2 * int(np.prod(call[0])) for call in calls) + 2**20
     numbers = np.random.default_rng(0).random(size)
     buffers: dict[Any, Array] = {kind: numbers.astype(kind) for kind in {c[2] for c in calls}}
@@ -142,6 +143,40 @@ def kernel(work: Callable[[], object]) -> Callable[[], None]:
                 np.matmul(first, second, out=out[0])
             else:
                 fft.irfft(first, second, axis=1)
+
+    return run
+
+
+def in_blocks(calls: list[tuple[Any, ...]]) -> Callable[[], None]:
+    """Recorded products and transforms, bare, up to a block of the engine's rows at a time.
+
+    The products of a block go into its spectra one below the other; the block is transformed
+    as a whole. Candidates with several receivers have more spectra than products.
+    """
+    blocks: list[tuple[list[tuple[Array, Array]], int, int]] = []
+    numbers = np.random.default_rng(0).random(2**22).astype(np.float32)
+    products: list[tuple[Array, Array]] = []
+    for shape, other, _ in calls:
+        if isinstance(other, tuple):
+            pair = (numbers[: int(np.prod(own))].reshape(own) for own in (shape, other))
+            products.append(tuple(pair))
+        elif blocks and blocks[-1][2] == other and blocks[-1][1] + shape[0] <= ROWS:
+            blocks[-1] = (blocks[-1][0] + products, blocks[-1][1] + shape[0], other)
+            products = []
+        else:
+            blocks.append((products, shape[0], other))
+            products = []
+    most = max(rows * (samples + 2) for _, rows, samples in blocks)
+    spectra = np.random.default_rng(0).random(most).astype(np.float32)
+
+    def run() -> None:
+        for pairs, rows, samples in blocks:
+            level = spectra[: rows * (samples + 2)].reshape(rows, samples + 2)
+            at = 0
+            for weights, terms in pairs:
+                np.matmul(weights, terms, out=level[at : at + len(weights)])
+                at += len(weights)
+            fft.irfft(level.view(np.complex64), samples, axis=1)
 
     return run
 
@@ -303,16 +338,22 @@ def main() -> None:
         levels = levels_of(0.3, 0.7, int(trees.receiver_offset[-1]))
         bit_s = np.random.default_rng(3).uniform(4e-9, 20e-9, size)
         work = functools.partial(engine, trees, corners, levels, bit_s)
-        pairs = paired(work, kernel(work), chosen.pairs if size == chosen.nets else 1)
-        own = float(np.median(pairs["wall"][:, 0]))
+        calls = recorded(work)
+        turns = chosen.pairs if size == chosen.nets else 1
+        found = {
+            name: paired(work, bare(calls), turns)
+            for name, bare in (("blocks", in_blocks), ("strips", in_strips))
+        }
+        own = float(np.median([pairs["wall"][:, 0] for pairs in found.values()]))
         taken.append(own)
         evaluations = 2 * size * CANDIDATES
         print(f"{size} nets, {evaluations} evaluations, {len(levels.threshold_low)} receivers")
         print(f"  engine {own:.2f} s, {evaluations / own:,.0f} evaluations/s")
-        for clock, both in pairs.items():
+        for name, pairs in found.items():
+            both = pairs["processor"]
             ratio = both[:, 0] / both[:, 1]
             print(
-                f"  {clock}: kernel {np.median(both[:, 1]):.2f} s, engine takes"
+                f"  kernel in {name} {np.median(both[:, 1]):.2f} s, engine takes"
                 f" {np.median(ratio):.2f} times as long ({ratio.min():.2f} to {ratio.max():.2f})"
             )
         if size == chosen.nets:
@@ -320,7 +361,7 @@ def main() -> None:
             start = time.process_time()
             count = script(trees, corners[0], levels, bit_s, nets)
             each = (time.process_time() - start) / count
-            times = each * evaluations / np.median(pairs["processor"][:, 0])
+            times = each * evaluations / np.median(found["blocks"]["processor"][:, 0])
             print(f"  script {each * 1e3:.2f} ms an evaluation: {times:,.0f} times")
     if chosen.large:
         print(f"growth for ten times the nets: {taken[1] / taken[0]:.1f}")

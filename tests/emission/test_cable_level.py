@@ -141,14 +141,12 @@ def test_with_the_usual_margin_few_held_out_cases_are_falsely_green():
 
 
 def test_no_held_out_reading_exceeds_the_worst_case_by_four_decibels(held_out):
-    assert errors.site_excess_db(held_out, 0.0).min() > -4.0
+    assert errors.site_excess_db(held_out, errors.up_to_db(held_out)).min() > -4.0
 
 
-def test_two_cables_in_resonance_at_30_mhz_exceed_the_worst_case_by_five_decibels(chosen_on):
-    # the worst of the other table, told on the page of errors
+def test_the_worst_case_of_several_cables_is_what_its_table_gives(chosen_on):
+    # none reads more than 3 dB above it, to a whole dB; one cable needs no more
     excess = errors.site_excess_db(chosen_on, 0.0)
-    beyond = models.take(chosen_on, excess < -4.0)
-    assert excess.min() > -5.0
-    assert set(beyond["frequency_hz"]) == {30e6}
-    assert set(beyond["board"]) == {"150 x 45"}
-    assert beyond["load"].size == 2
+    one = chosen_on["cables"] == 1
+    assert excess[one].min() > -4.0
+    assert np.ceil(-3.0 - excess[~one].min()) == cable.up_to_offset_db(2)
