@@ -68,7 +68,9 @@ def dielectric_factor(s: ArrayLike, loss_tangent: ArrayLike) -> Array:
     return np.asarray((1 + spread * logarithm) / (1 + spread * at_reference.real))
 
 
-def propagation(s: ArrayLike, line: LineConstants) -> tuple[Array, Array]:
+def propagation(
+    s: ArrayLike, line: LineConstants, filling: Array | None = None
+) -> tuple[Array, Array]:
     r"""Propagation constant and characteristic impedance.
 
     .. math::
@@ -84,6 +86,8 @@ def propagation(s: ArrayLike, line: LineConstants) -> tuple[Array, Array]:
     line : LineConstants
         Impedance [ohm], delay [s/m], resistance at dc [ohm/m], skin constant k_hf with
         R = k_hf sqrt(f) [ohm/m/sqrt(Hz)] and loss tangent [-].
+    filling : numpy.ndarray, optional
+        :func:`dielectric_factor` of the line where it is known. [-]
 
     Returns
     -------
@@ -116,7 +120,8 @@ def propagation(s: ArrayLike, line: LineConstants) -> tuple[Array, Array]:
     skin_squared = np.square(line.skin_ohm_per_m_rthz) / np.pi
     series = s * inductance + np.sqrt(np.square(line.resistance_dc_ohm_per_m) + s * skin_squared)
     root_series = np.sqrt(series)
-    root_shunt = np.sqrt(s * capacitance * dielectric_factor(s, line.loss_tangent))
+    filling = dielectric_factor(s, line.loss_tangent) if filling is None else filling
+    root_shunt = np.sqrt(s * capacitance * filling)
     return root_series * root_shunt, root_series / root_shunt
 
 
@@ -127,9 +132,9 @@ def decay(exponent: Array) -> Array:
     -0.3679-0.0000j
     """
     result = np.empty_like(exponent)
-    size = np.exp(-exponent.real)
-    np.multiply(size, np.cos(exponent.imag), out=result.real)
-    np.multiply(-size, np.sin(exponent.imag), out=result.imag)
+    size, angle = np.exp(-exponent.real), exponent.imag.copy()
+    np.multiply(size, np.cos(angle), out=result.real)
+    np.multiply(-size, np.sin(angle), out=result.imag)
     return result
 
 
@@ -176,7 +181,10 @@ class KnownLines:
         keys = [(of_row[r], own.tobytes()) for r, own in zip(row, kind, strict=True)]
         known = {key: self.rows[key] for key in keys if key in self.rows}
         new = [i for i, key in enumerate(keys) if key not in known]
-        gamma, impedance = propagation(s[row[new]], LineConstants(*kind[new].T[..., None]))
+        lines = LineConstants(*kind[new].T[..., None])
+        some, same = _distinct((row[new], lines.loss_tangent[:, 0]))
+        filling = dielectric_factor(s[row[new][some]], lines.loss_tangent[some])[same]
+        gamma, impedance = propagation(s[row[new]], lines, filling)
         found = (gamma.astype(s.dtype), reciprocal(impedance).astype(s.dtype))
         known.update(zip([keys[i] for i in new], zip(*found, strict=True), strict=True))
         if len(self.rows) + len(new) > self.most:
