@@ -190,7 +190,8 @@ def _edge_parts(
     parts = spectra.edge_shares(whole, duty, tolerance + skew_s * toggle)
     data = activity.is_data[:, None]
     unequal = np.array([not all(s.symmetric for s in f.settings) for f in facts])[:, None]
-    share = np.where(data | unequal, 1.0, parts.sine)
+    pulled = np.array([f.timing == "open-drain" for f in facts])[:, None]  # a fast edge, a slow one
+    share = np.where(data | unequal | pulled, 1.0, parts.sine)
     half = 0.5 * discrete  # V/(4 pi m) times the difference of both edges, m = n/2
     skewed = np.sin(np.pi * np.minimum(skew_s * order * toggle, 0.5))
     sine = np.where(discrete, skewed, np.where(data | ~unequal, 1.0, parts.sine))

@@ -48,6 +48,13 @@ def test_even_harmonics_of_an_even_square_wave_are_absent():
     np.testing.assert_allclose(found.per_swing[0], expected, atol=1e-12)
 
 
+def test_a_clock_on_an_open_drain_output_keeps_its_even_harmonics():
+    # Only one of its edges is fast: 1/(pi n) at every n, and never more than twice that counts.
+    pulled = clock(pull_up_ohm=1000.0, pull_up="R1", bus_capacitance_f=50e-12)
+    found = lines(pulled, interface=[interface("open-drain", sink_current_a=3e-3)])
+    np.testing.assert_allclose(found.per_swing[0], 2 / (np.pi * np.arange(1, 21)))
+
+
 @pytest.mark.parametrize(("tolerance", "down_db"), [(0.005, 36.08), (0.01, 30.06), (0.05, 16.11)])
 def test_a_duty_tolerance_brings_the_second_harmonic_back(tolerance, down_db):
     # Second over first of a duty of 50.5, 51 and 55 %: -36.08, -30.06, -16.11 dB; the first of
