@@ -231,11 +231,15 @@ class Check:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Remedy:
-    """A change beyond settings and resistors and how much it closes."""
+    """A change beyond settings and resistors and how much it closes.
+
+    ``enclosure_db`` is what the enclosure has to give beside the cables.
+    """
 
     remedy: str
     amount: float | None
     unit: str
+    enclosure_db: float | None = None
     closes_db: float | None = None
     closes_s: float | None = None
     text: str = ""

@@ -1,5 +1,6 @@
 """Remedies beyond settings and resistors, sized by solving for what opens the window."""
 
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -8,7 +9,7 @@ from numpy.typing import NDArray
 from edgeplan.candidates import Candidates, list_continuous
 from edgeplan.evaluate import Bench, evaluate
 from edgeplan.nets import Nets
-from edgeplan.radiated import Passive, source_levels
+from edgeplan.radiated import source_levels
 from edgeplan.results import Remedy
 from edgeplan.texts import text_resistance_ohm
 from edgeplan.words import change_words
@@ -65,9 +66,9 @@ def cable_filter(nets: Nets, candidates: Candidates, bench: Bench) -> list[Remed
     """More attenuation on every cable, so that some candidate passes every check.
 
     The trace's own part stays. Of all candidates that fail emission only, the one that needs
-    least attenuation is named. Where the trace alone is over budget, cables and enclosure
-    have to give the same amount together; where no candidate fails emission only, nothing
-    on cables or enclosure will do and the amount is None.
+    least attenuation is named. Where the trace alone is over budget, an enclosure first brings
+    it to half of the budgeted power; where no candidate fails emission only, nothing on cables
+    or enclosure will do and the amount is None.
 
     Parameters
     ----------
@@ -81,43 +82,87 @@ def cable_filter(nets: Nets, candidates: Candidates, bench: Bench) -> list[Remed
     list of Remedy
         One per net, amount in dB at the line that needs most.
     """
-    passive = bench.radiation.passive(nets)
-    needed, line, excess_db = _needed_db(nets, candidates, passive, bench)
+    parts = _parts(nets, candidates, bench)
     found = evaluate(nets, candidates, bench)
     only_emission = found.exists.copy()
     for table in found.tables:
         if table.check != "emission":
             only_emission &= ~(table.fails | table.open)
-    needed = np.where(only_emission, needed, np.inf)
-    least = np.where(only_emission, excess_db, np.inf)
-    found_remedies = []
-    for i, k in enumerate(np.argmin(needed, axis=1)):
-        if not np.isfinite(needed[i, k]):
-            found_remedies.append(_both(nets, candidates, i, least[i]))
-            continue
-        hertz = float(passive.lines.frequency_hz[i, line[i, k]])
-        found_remedies.append(
-            _filter(nets, candidates, i, int(k), (needed[i, k], hertz, excess_db[i, k]))
+    enclosure_db = _enclosure_db(parts)
+    needed, line = _needed_db(parts, enclosure_db)
+    chosen = np.argmin(np.where(only_emission, needed + enclosure_db, np.inf), axis=1)
+    frequency_hz = bench.radiation.passive(nets).lines.frequency_hz
+    return [
+        _filter(
+            _beside(nets, candidates, i, int(k)),
+            _Size(
+                cable_db=float(needed[i, k]),
+                enclosure_db=float(enclosure_db[i, k]),
+                frequency_hz=float(frequency_hz[i, line[i, k]]),
+                closes_db=float(20 * np.log10(parts.over[i, k].max())),
+            ),
         )
-    return found_remedies
+        if only_emission[i, k]
+        else NOTHING
+        for i, k in enumerate(chosen)
+    ]
 
 
-def _needed_db(
-    nets: Nets, candidates: Candidates, passive: Passive, bench: Bench
-) -> tuple[Array, Array, Array]:
-    """Attenuation on the cables each candidate needs, at which line, and its excess now. (N, C)"""
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Parts:
+    """Trace, cables and both together over the budget, at every line. (N, C, F) [-]"""
+
+    trace: Array
+    cable: Array
+    over: Array
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Size:
+    """What cables and enclosure have to give, where it is set, and what it closes."""
+
+    cable_db: float
+    enclosure_db: float
+    frequency_hz: float
+    closes_db: float
+
+
+NOTHING = Remedy(
+    remedy="cable filter",
+    amount=None,
+    unit="dB",
+    text="nothing on the cables is enough: another check fails with every candidate",
+)
+
+
+def _parts(nets: Nets, candidates: Candidates, bench: Bench) -> _Parts:
+    """Both mechanisms of every candidate over the budget."""
+    passive = bench.radiation.passive(nets)
     levels = source_levels(nets, candidates, passive, bench.tolerance)
     worst_case = bench.radiation.target.statistic == "worst-case"
-    cable = levels * (passive.cable_up_to if worst_case else passive.cable_expected)[:, None, :]
-    trace = levels * passive.trace[:, None, :]
-    budget = (10 ** (passive.budget_dbuv_per_m / 20) * 1e-6)[:, None, :]
-    over = np.where(passive.lines.exists[:, None, :], passive.over_budget[:, None, :] * levels, 0.0)
+    cable = passive.cable_up_to if worst_case else passive.cable_expected
+    budget = 10 ** (passive.budget_dbuv_per_m / 20) * 1e-6
+    trace, cables, over = (
+        np.where(passive.lines.exists[:, None, :], part[:, None, :] * levels, 0.0)
+        for part in (passive.trace / budget, cable / budget, passive.over_budget)
+    )
+    return _Parts(trace=trace, cable=cables, over=over)
+
+
+def _enclosure_db(parts: _Parts) -> Array:
+    """What brings the trace to half the budgeted power, 0 where it is within alone. (N, C)"""
+    worst = parts.trace.max(axis=2)
     with np.errstate(divide="ignore", invalid="ignore"):
-        room = np.sqrt(np.maximum(budget**2 - trace**2, 0.0))
-        needed = np.where(over > 1, 20 * np.log10(cable / room), 0.0)
-        excess_db = 20 * np.log10(over.max(axis=2))
-    line = np.argmax(needed, axis=2)
-    return needed.max(axis=2), line, excess_db
+        return np.where(worst >= 1, 10 * np.log10(2 * worst**2), 0.0)
+
+
+def _needed_db(parts: _Parts, enclosure_db: Array) -> tuple[Array, Array]:
+    """Attenuation on the cables each candidate needs beside an enclosure, and at which line."""
+    inside = (10 ** (-np.ceil(10 * enclosure_db) / 200))[:, :, None]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        room = np.sqrt(np.maximum(1 - (parts.trace * inside) ** 2, 0.0))
+        needed = np.where(parts.over > 1, 20 * np.log10(parts.cable / room), 0.0)
+    return np.maximum(needed.max(axis=2), 0.0), np.argmax(needed, axis=2)
 
 
 def _beside(nets: Nets, candidates: Candidates, net: int, k: int) -> str:
@@ -129,45 +174,22 @@ def _beside(nets: Nets, candidates: Candidates, net: int, k: int) -> str:
 
 
 def _rounded_up(amount_db: float) -> float:
-    """Up to the next tenth of a decibel."""
-    return float(np.ceil(amount_db * 10 + 1e-6) / 10)
+    """Up to the next tenth of a decibel, 0 for nothing."""
+    return float(np.ceil(amount_db * 10 + 1e-6) / 10) if amount_db > 0 else 0.0
 
 
-def _filter(
-    nets: Nets, candidates: Candidates, net: int, k: int, size: tuple[float, float, float]
-) -> Remedy:
-    """A filter on every cable: attenuation, the line that asks for it, and the excess now."""
-    needed_db, frequency_hz, excess_db = size
-    amount = _rounded_up(needed_db)
-    beside = _beside(nets, candidates, net, k)
+def _filter(beside: str, size: _Size) -> Remedy:
+    """A filter on every cable, with an enclosure where the trace alone is over budget."""
+    amount, enclosure_db = _rounded_up(size.cable_db), _rounded_up(size.enclosure_db)
+    own = f"{amount:.1f} dB more on every cable (set by {size.frequency_hz / 1e6:.0f} MHz)"
+    with_enclosure = size.enclosure_db > 0
+    if with_enclosure:
+        own += f" and {enclosure_db:.1f} dB by the enclosure (the trace alone is over budget)"
     return Remedy(
-        remedy="cable filter",
+        remedy="cable filter and enclosure" if with_enclosure else "cable filter",
         amount=amount,
         unit="dB",
-        closes_db=round(float(excess_db), 2),
-        text=f"{amount:.1f} dB more on every cable (set by {frequency_hz / 1e6:.0f} MHz){beside}",
-    )
-
-
-def _both(nets: Nets, candidates: Candidates, net: int, excess_db: Array) -> Remedy:
-    """As much on every cable and on the enclosure, or nothing that would help."""
-    k = int(np.argmin(excess_db))
-    if not np.isfinite(excess_db[k]):
-        return Remedy(
-            remedy="cable filter",
-            amount=None,
-            unit="dB",
-            text="nothing on the cables is enough: another check fails with every candidate",
-        )
-    amount = _rounded_up(float(excess_db[k]))
-    beside = _beside(nets, candidates, net, k)
-    return Remedy(
-        remedy="cable filter and enclosure",
-        amount=amount,
-        unit="dB",
-        closes_db=round(float(excess_db[k]), 2),
-        text=(
-            f"{amount:.1f} dB more on every cable and {amount:.1f} dB by the enclosure "
-            f"(the trace alone is over budget){beside}"
-        ),
+        enclosure_db=enclosure_db if with_enclosure else None,
+        closes_db=round(size.closes_db, 2),
+        text=own + beside,
     )

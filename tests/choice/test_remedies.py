@@ -86,19 +86,20 @@ def test_what_the_filter_closes_is_the_excess_it_was_sized_for():
     assert filter_of(b).closes_db == pytest.approx(-table.margin[0, 0], abs=0.01)
 
 
-def test_where_the_trace_alone_is_too_loud_cables_and_enclosure_give_the_same_together():
-    def at(attenuation_db):
+def test_where_the_trace_alone_is_too_loud_cables_and_enclosure_together_are_just_enough():
+    def at(cable_db, enclosure_db):
         return loud(
-            attenuation_db,
+            cable_db,
             driver=[driver(setting(ohm=40.0, edge_s=0.2e-9))],
             emission={"limits": ["cispr32-class-b-3m"], "margin": "40 dB"},
-            facts={"enclosure_attenuation_db": attenuation_db},
+            facts={"enclosure_attenuation_db": enclosure_db},
         )
 
-    found = filter_of(at(0.0))
+    found = filter_of(at(0.0, 0.0))
     assert found.remedy == "cable filter and enclosure"
-    assert passes(at(found.amount))
-    assert not passes(at(found.amount - 0.2))
+    assert passes(at(found.amount, found.enclosure_db))
+    assert not passes(at(found.amount - 0.2, found.enclosure_db))
+    assert not passes(at(found.amount, found.enclosure_db - 3.2))  # half the power is the cables'
 
 
 def test_where_another_check_fails_no_filter_is_enough():
