@@ -216,6 +216,7 @@ def _routed_from_pad(
         height_m=np.where(gap_m > 0, 0.0, [line.height_m for line in lines]),
         permittivity=np.array([line.permittivity for line in lines]),
         plane_gap_m=gap_m,
+        strip_width_m=np.array([line.width_m for line in lines]),
     )
     from_pad = with_stub(nets.trees["fast"], _layout(nets), places)
     behind = np.abs(site_transfer(from_pad[0], frequency_hz))
@@ -270,6 +271,7 @@ def _layout(nets: Nets) -> Layout:
         permittivity=np.array([p.line.permittivity for p in pieces]),
         segment_offset=np.asarray(nets.trees["fast"].segment_offset),
         plane_gap_m=gap,
+        strip_width_m=np.array([p.line.width_m for p in pieces]),
     )
 
 
@@ -316,6 +318,7 @@ def _inner_inputs(
         surface_ohm=_column([line.impedance_ohm for line in surface]),
         strip_ohm=_column([m.impedance_ohm for m in main]),
         strip_permittivity=_column([m.permittivity_effective for m in main]),
+        strip_width_m=_column([m.width_m for m in main]),
         plane_gap_m=_column([m.plane_gap_m for m in main]),
         side_distance_m=_column([0.5 * min(size) if s is None else s for s in sides]),
         length_m=_column([f.path.main_length_m for f in facts]),

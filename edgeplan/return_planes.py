@@ -5,8 +5,7 @@ from dataclasses import dataclass
 
 from edgeplan.board import Board, Layer
 from edgeplan.nets import NetFacts
-from edgeplan.physics.routed_imbalance import STRIP_HALF_WIDTH
-from edgeplan.physics.stripline_leakage import outside_fit, stitching_distance_m
+from edgeplan.physics.stripline_leakage import outside_checked, stitching_distance_m
 from edgeplan.results import INNER_OUT_OF_RANGE, PLANE_CHANGES
 from edgeplan.routing import Path, Piece
 from edgeplan.stack import Line
@@ -90,21 +89,24 @@ def _out_of_range(board: Board, facts: NetFacts) -> Iterator[PlaneFinding]:
         (side_m, width_m, piece)
         for piece, start in _with_starts(facts.path)
         for side_m, width_m in _sides(facts, piece, start, size)
-        if piece.line.plane_gap_m > 0 and bool(outside_fit(piece.line.plane_gap_m, width_m, side_m))
+        if piece.line.plane_gap_m > 0
+        and bool(outside_checked(piece.line.plane_gap_m, width_m, side_m, piece.line.width_m))
     ]
     if not found:
         return
     side_m, width_m, piece = min(found, key=lambda each: each[0])
     gap_mm = piece.line.plane_gap_m * 1e3
+    strip_mm = piece.line.width_m * 1e3
     where = f"{max(side_m, 0) * 1e3:.3g} mm from a side"
     yield PlaneFinding(
         rule=INNER_OUT_OF_RANGE,
         where=where,
         text=(
-            f"runs between planes {gap_mm:.3g} mm apart on {piece.line.layer}, {where} of planes "
-            f"{width_m * 1e3:g} mm wide: what leaks there counts by a formula outside its range "
-            "(a quarter of the spacing from the side or more, planes of 30 to 120 mm); move it "
-            "inwards by three spacings"
+            f"runs {strip_mm:.3g} mm wide between planes {gap_mm:.3g} mm apart on "
+            f"{piece.line.layer}, {where} of planes {width_m * 1e3:g} mm wide: what leaks there "
+            "counts by a formula outside its range (a quarter of the spacing from the side or "
+            "more, planes of 30 to 120 mm, a width of 0.05 to 2 spacings); move it inwards by "
+            "three spacings"
         ),
     )
 
@@ -126,7 +128,7 @@ def _sides(
         if facts.net.side_distance_m is not None:
             yield facts.net.side_distance_m, min(size_m)
         return
-    half_strip_m = STRIP_HALF_WIDTH * piece.line.plane_gap_m
+    half_strip_m = 0.5 * piece.line.width_m
     for axis in (0, 1):
         ends = start_m[axis], piece.end_m[axis]
         yield min(*ends, *(size_m[axis] - x for x in ends)) - half_strip_m, size_m[axis]

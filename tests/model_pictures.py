@@ -142,7 +142,7 @@ def _inner() -> Figure:
         strip_m = 0.3 * gap_m
         air_ohm = float(cross_section.stripline_zero_thickness(strip_m, gap_m, 1.0))
         away = np.linspace(0.1, 3.2, 300)
-        model = stripline_leakage.edge_leakage(air_ohm, gap_m, WIDTH_M, away * gap_m)
+        model = stripline_leakage.edge_leakage(air_ohm, gap_m, WIDTH_M, away * gap_m, strip_m)
         label = f"planes {gap_m * 1e3:g} mm apart"
         with np.errstate(divide="ignore"):
             one.plot(away, _decibels(model), f"C{number}", label=label)
@@ -155,10 +155,11 @@ def _inner() -> Figure:
     one.set_ylabel("share of the voltage along the planes, dB")
     one.legend(fontsize=8, title="points: static field solution\nlines: model")
     _grid(one, "planes 60 mm wide, strip 0.3 of their distance")
-    shares = np.array([0.1, 0.2, 0.3, 0.4, 0.6, 0.8, 1.0])
+    shares = np.array([0.05, 0.1, 0.2, 0.3, 0.6, 1.0, 1.5, 2.0])
     other.plot(shares, [_over_field_db(0.4e-3, w * 0.4e-3, 0.4e-3) for w in shares], "C0o-")
     other.set_xlabel("width of the strip over the distance of the planes")
     other.set_ylabel("model over static field solution, dB")
+    other.set_ylim(-3, 3)
     _grid(other, "as far from the side as the planes are apart")
     return figure
 
@@ -166,7 +167,7 @@ def _inner() -> Figure:
 def _over_field_db(gap_m: float, strip_m: float, side_m: float) -> float:
     """Leakage of the model over that of the field solution. [dB]"""
     air_ohm = float(cross_section.stripline_zero_thickness(strip_m, gap_m, 1.0))
-    model = stripline_leakage.edge_leakage(air_ohm, gap_m, WIDTH_M, side_m)
+    model = stripline_leakage.edge_leakage(air_ohm, gap_m, WIDTH_M, side_m, strip_m)
     return float(_decibels(model / leakage_by_field(gap_m, WIDTH_M, strip_m, side_m, air_ohm)))
 
 

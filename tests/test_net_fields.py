@@ -5,6 +5,7 @@ from itertools import pairwise
 import numpy as np
 import pytest
 from build import board, net, nets_of, segment
+from scipy.special import ellipkm1
 
 from edgeplan.emission.mechanism import Cable
 from edgeplan.net_fields import (
@@ -16,6 +17,8 @@ from edgeplan.net_fields import (
     kind_of,
     remarks,
 )
+from edgeplan.physics import stripline_leakage
+from edgeplan.physics.stripline_leakage import edge_leakage
 
 FREQUENCY_HZ = np.array([[30e6, 100e6, 300e6, 700e6, 1e9]])
 CABLES = (Cable(length_m=1.5),) * 2
@@ -77,6 +80,33 @@ def test_a_net_between_planes_radiates_less_than_on_the_surface():
     assert np.all(np.isfinite(cable))
     assert any("3 mm of surface" in text for text in remarks(inner.facts[0]))
     assert remarks(surface.facts[0]) == []
+
+
+def test_between_planes_each_strip_leaks_by_its_own_width():
+    """As pi/2/K; impedance stated, edges alike, below resonance, where their losses count."""
+    stack = [row | ({"z0_ohm": 50.0} if row["layer"] == "L3" else {}) for row in FOUR]
+    found = []
+    for width_m in (0.05e-3, 0.2e-3):
+        y_m = 0.1e-3 + width_m / 2
+        ends = {"start_m": (0.02, y_m), "end_m": (0.08, y_m)}
+        row = segment("U1.1", "U2.1", LENGTH_M, layer="L3", width_m=width_m, **ends)
+        found.append(fields(net(length_m=LENGTH_M), stack=stack, routes=[row])[1][1])
+    gap_m = 2 * 0.11e-3 + 18e-6
+    narrow, wide = (1 / ellipkm1(np.exp(-2 * np.pi * w / gap_m)) for w in (0.05e-3, 0.2e-3))
+    ratio = (found[1] / found[0])[FREQUENCY_HZ <= 100e6]
+    np.testing.assert_allclose(ratio, wide / narrow, rtol=0.005)
+
+
+def test_a_net_without_positions_leaks_by_its_own_width_and_stated_distance(monkeypatch):
+    asked = []
+
+    def recorded(*values):
+        asked.append([float(np.squeeze(value)) for value in values])
+        return edge_leakage(*values)
+
+    monkeypatch.setattr(stripline_leakage, "edge_leakage", recorded)
+    fields(net(length_m=LENGTH_M, layer="L3", width_m=0.15e-3, side_distance_m=1e-3), stack=FOUR)
+    assert [values[-2:] for values in asked] == [[1e-3, 0.15e-3]]
 
 
 @pytest.mark.parametrize("side", ["left", "right"])

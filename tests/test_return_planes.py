@@ -87,7 +87,7 @@ def test_a_change_at_the_resistor_is_seen():
     ("y_m", "count"),
     [
         (0.04, 0),  # the middle of planes 80 mm wide
-        (0.0006, 0),  # 0.6 mm less 0.06 mm of strip is more than a quarter of 0.418 mm
+        (0.0006, 0),  # 0.6 mm less 0.09 mm of strip is more than a quarter of 0.418 mm
         (0.0001, 1),
     ],
 )
@@ -96,6 +96,25 @@ def test_a_piece_between_planes_nearer_to_a_side_than_the_fit_is_told(y_m, count
     found = findings(row)
     assert [f.rule for f in found] == ["inner-layer-out-of-range"] * count
     assert all("of planes 80 mm wide" in f.text for f in found)
+
+
+@pytest.mark.parametrize(
+    ("strip_m", "y_m", "count"),
+    [
+        (0.0200e-3, 0.6e-3, 1),  # planes 0.418 mm apart: 0.05 of that is 0.0209 mm
+        (0.0215e-3, 0.6e-3, 0),
+        (0.82e-3, 0.6e-3, 0),  # 2 of that are 0.836 mm
+        (0.85e-3, 0.6e-3, 1),
+        (0.85e-3, 2e-3, 0),  # more than three spacings inside
+        (0.18e-3, 0.2e-3, 0),  # 0.2 mm less half the strip is more than a quarter, 0.1045 mm
+        (0.20e-3, 0.2e-3, 1),
+    ],
+)
+def test_a_strip_between_planes_is_held_against_the_widths_checked(strip_m, y_m, count):
+    ends = {"start_m": (0.02, y_m), "end_m": (0.06, y_m)}
+    found = findings(segment("U1.1", "U2.1", 0.04, layer="L3", width_m=strip_m, **ends))
+    assert [f.rule for f in found] == ["inner-layer-out-of-range"] * count
+    assert all(f.text.startswith(f"runs {strip_m * 1e3:.3g} mm wide between") for f in found)
 
 
 def test_an_inner_net_without_positions_counts_by_its_stated_distance():

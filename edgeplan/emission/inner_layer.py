@@ -14,11 +14,11 @@ from edgeplan.physics.radiation import finite_board_factor, trace_field_per_ampe
 
 MODEL = Mechanism(
     name="inner_layer",
-    version=1,
+    version=2,
     error_db=cable.MODEL.error_db,
-    source="surface pieces as short traces, leakage of an inner line by a fit to static field"
-    " solutions; the errors are those of trace and cable, no full-wave run has planes on"
-    " both sides",
+    source="surface pieces as short traces, leakage of an inner line in closed form, held"
+    " against static field solutions; the errors are those of trace and cable, no full-wave run"
+    " has planes on both sides",
 )
 BREAKOUT_M = 3e-3  # of each end, where nothing is known: an assumption, to be printed as one
 
@@ -31,8 +31,8 @@ class InnerInputs:
     forward wave (or per any other unit: the result is per that unit); currents count
     towards the receiver. ``breakout_m`` is the surface length at the driver and at the
     receiver; ``surface_*`` the line it is drawn as. ``plane_gap_m`` is the distance of both
-    planes, ``strip_ohm`` and ``strip_permittivity`` the line between them,
-    ``side_distance_m`` from it to the nearest side along the net. The rest as in
+    planes, ``strip_ohm``, ``strip_permittivity`` and ``strip_width_m`` the line between them,
+    ``side_distance_m`` from its edge to the nearest side along the net. The rest as in
     `mechanism.RadiationInputs`.
     """
 
@@ -46,6 +46,7 @@ class InnerInputs:
     surface_ohm: Array
     strip_ohm: Array
     strip_permittivity: Array
+    strip_width_m: Array
     plane_gap_m: Array
     side_distance_m: Array
     length_m: Array
@@ -87,8 +88,8 @@ def field_per_forward_ampere(paths: InnerInputs, frequency_hz: ArrayLike) -> Arr
     ...     far_volt=np.zeros((1, 1)) + 0j, far_ampere=np.ones((1, 1)) + 0j,
     ...     surface_height_m=0.2e-3, surface_permittivity=4.3,
     ...     surface_permittivity_effective=3.2, surface_ohm=50.0, strip_ohm=50.0,
-    ...     strip_permittivity=4.3, plane_gap_m=0.4e-3, side_distance_m=0.02, length_m=0.08,
-    ...     board_length_m=0.1, board_width_m=0.1)
+    ...     strip_permittivity=4.3, strip_width_m=0.12e-3, plane_gap_m=0.4e-3,
+    ...     side_distance_m=0.02, length_m=0.08, board_length_m=0.1, board_width_m=0.1)
     >>> field = field_per_forward_ampere(net, np.array([30e6]))[0, 0]
     >>> print(f"{field / (2 * 131.686e-16 * 30e6**2 * 3e-3 * 0.2e-3):.3f}")
     1.000
@@ -155,8 +156,9 @@ def common_mode_per_forward_ampere(paths: InnerInputs, frequency_hz: ArrayLike) 
     ...     near_volt=one, near_ampere=0 * one, far_volt=one, far_ampere=0 * one,
     ...     surface_height_m=0.2e-3, surface_permittivity=4.3,
     ...     surface_permittivity_effective=3.2, surface_ohm=50.0, strip_ohm=50.0,
-    ...     strip_permittivity=4.3, plane_gap_m=0.4e-3, side_distance_m=0.02, length_m=0.08,
-    ...     board_length_m=0.1, board_width_m=0.1, breakout_m=(0.0, 0.0))
+    ...     strip_permittivity=4.3, strip_width_m=0.12e-3, plane_gap_m=0.4e-3,
+    ...     side_distance_m=0.02, length_m=0.08, board_length_m=0.1, board_width_m=0.1,
+    ...     breakout_m=(0.0, 0.0))
     >>> common_mode_per_forward_ampere(net, np.array([30e6])).one
     array([[0.]])
     """
@@ -209,6 +211,7 @@ def _pieces(
         paths.plane_gap_m,
         paths.board_width_m,
         paths.side_distance_m,
+        paths.strip_width_m,
     )
     return [
         (imbalance.Ends(a, b), surface, (near_volt, after)),

@@ -16,14 +16,15 @@ Array = NDArray[Any]
 class StubPlaces(NamedTuple):
     """Where the stubs of N trees start, and what they run over, all ``(N, ...)``.
 
-    Position of the pad [m], height [m], permittivity [-] and distance of both planes [m] as in
-    `Layout`; None for stubs that all run over one plane.
+    Position of the pad [m], height [m], permittivity [-], distance of both planes [m] and width
+    of the strip [m] as in `Layout`; None for stubs that all run over one plane.
     """
 
     pad_m: Array
     height_m: Array
     permittivity: Array
     plane_gap_m: Array | None = None
+    strip_width_m: Array | None = None
 
 
 def with_stub(trees: Trees, layout: Layout, places: StubPlaces) -> tuple[Trees, Layout]:
@@ -62,6 +63,7 @@ def with_stub(trees: Trees, layout: Layout, places: StubPlaces) -> tuple[Trees, 
     before = offset[:-1]
     longer = offset + np.arange(len(offset))
     gap_m = np.zeros(offset[-1]) if layout.plane_gap_m is None else layout.plane_gap_m
+    strip_m = np.full(offset[-1], np.nan) if layout.strip_width_m is None else layout.strip_width_m
     extended = Trees(
         segment_offset=longer,
         parent=np.insert(np.asarray(trees.parent) + 1, before, -1),
@@ -86,6 +88,9 @@ def with_stub(trees: Trees, layout: Layout, places: StubPlaces) -> tuple[Trees, 
         np.insert(layout.permittivity, before, places.permittivity),
         longer,
         np.insert(gap_m, before, 0.0 if places.plane_gap_m is None else places.plane_gap_m),
+        np.insert(
+            strip_m, before, np.nan if places.strip_width_m is None else places.strip_width_m
+        ),
     )
 
 

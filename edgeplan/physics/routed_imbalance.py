@@ -20,7 +20,6 @@ from edgeplan.physics.tree_currents import EndStates, end_states
 Array = NDArray[Any]
 
 CHUNK = 32768  # net-frequency points whose line states are held
-STRIP_HALF_WIDTH = 0.15  # over the plane gap: of the strip that the leakage was fitted on
 NARROWEST = 0.01  # share of the board over which the charge under a crossing trace is taken
 
 
@@ -165,6 +164,8 @@ def _heights(
         layout.known_height_m().reshape(shape),
     )
     gap_m = np.zeros(shape) if layout.plane_gap_m is None else layout.plane_gap_m.reshape(shape)
+    width = np.nan if layout.strip_width_m is None else layout.strip_width_m.reshape(shape)
+    strip_m = np.broadcast_to(width, shape)
     inner = gap_m > 0
     magnetic, electric = np.zeros(shape), np.zeros(shape)
     for place_m, weight in ((near_m, 1 / 6), ((near_m + far_m) / 2, 2 / 3), (far_m, 1 / 6)):
@@ -172,10 +173,9 @@ def _heights(
         surface = imbalance.imbalance_height(
             impedance, effective, permittivity, height_m, offset_m, width_m
         )
-        side_m = width_m / 2 - offset_m - STRIP_HALF_WIDTH * gap_m
-        leak = edge_leakage(
-            impedance * np.sqrt(effective), np.where(inner, gap_m, 1.0), width_m, side_m
-        )
+        side_m = width_m / 2 - offset_m - strip_m / 2
+        air_ohm, apart_m = impedance * np.sqrt(effective), np.where(inner, gap_m, 1.0)
+        leak = edge_leakage(air_ohm, apart_m, width_m, side_m, strip_m)
         magnetic += weight * np.where(inner, leak, surface.magnetic)
         electric += weight * np.where(inner, leak, surface.electric)
     return imbalance.ImbalanceHeight(magnetic, electric)

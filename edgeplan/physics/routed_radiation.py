@@ -30,7 +30,8 @@ class Layout(NamedTuple):
     Node 0 of each tree ``(N, 2)``, far end of each segment ``(S, 2)`` (it starts where
     its parent ends) [m]; height over the plane [m], 0 where planes on both sides
     leave nothing to radiate, and permittivity of the layer under it, ``(S,)``; distance of
-    both planes from each other [m], 0 for a line over one plane, None if all are.
+    both planes from each other [m], 0 for a line over one plane, None if all are; width
+    of the strips [m], needed between planes only: None leaves what leaks there unknown.
     """
 
     origin_m: Array
@@ -39,6 +40,7 @@ class Layout(NamedTuple):
     permittivity: Array
     segment_offset: Array
     plane_gap_m: Array | None = None
+    strip_width_m: Array | None = None
 
     def take(self, index: ArrayLike) -> "Layout":
         """Layouts of the trees of the given indices.
@@ -58,6 +60,7 @@ class Layout(NamedTuple):
             self.permittivity[rows],
             np.concatenate([[0], np.cumsum(last - first)]),
             None if self.plane_gap_m is None else self.plane_gap_m[rows],
+            None if self.strip_width_m is None else self.strip_width_m[rows],
         )
 
     def known_height_m(self) -> Array:

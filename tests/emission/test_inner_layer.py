@@ -30,6 +30,7 @@ def net(frequency_hz=BAND_HZ, **changes):
         "surface_ohm": 50.0,
         "strip_ohm": 50.0,
         "strip_permittivity": 4.3,
+        "strip_width_m": 0.12e-3,
         "plane_gap_m": 0.4e-3,
         "side_distance_m": 0.02,
         "length_m": 0.08,
@@ -94,7 +95,7 @@ def test_far_from_the_sides_only_the_pieces_drive_the_board():
 def test_at_a_side_the_whole_inner_line_leaks():
     paths = net(breakout_m=(0.0, 0.0), side_distance_m=0.2e-3)
     volts = inner_layer.common_mode_per_forward_ampere(paths, BAND_HZ)
-    leak = stripline_leakage.edge_leakage(50 * np.sqrt(4.3), 0.4e-3, 0.1, 0.2e-3)
+    leak = stripline_leakage.edge_leakage(50 * np.sqrt(4.3), 0.4e-3, 0.1, 0.2e-3, 0.12e-3)
     ends = imbalance.Ends(
         *(imbalance.electrical_position_m(x, 0.15) for x in imbalance.centred_ends(0.08, 0.15))
     )

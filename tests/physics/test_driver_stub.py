@@ -115,9 +115,12 @@ def test_a_stub_at_a_right_angle_is_what_short_dipoles_add_up_to(load_siemens):
 
 def test_a_stub_between_planes_does_not_radiate_by_itself():
     rest = network.point_to_point([0.06], stub_length_m=0.02, receiver_siemens=0.02)
-    between = StubPlaces(np.array([PAD_M]), np.zeros(1), np.full(1, 4.3), np.full(1, 4e-4))
+    between = StubPlaces(
+        np.array([PAD_M]), np.zeros(1), np.full(1, 4.3), np.full(1, 4e-4), np.full(1, 1e-4)
+    )
     _, drawn = with_stub(rest, layout(SITE_M, LOAD_M), between)
     assert drawn.plane_gap_m.tolist() == [4e-4, 0.0]
+    np.testing.assert_array_equal(drawn.strip_width_m, [1e-4, np.nan])
     inner = with_stub(rest, layout(SITE_M, LOAD_M), between)
     field = routed_field_per_volt(*inner, BAND_HZ) / np.abs(site_transfer(inner[0], BAND_HZ))
     alone = routed_field_per_volt(rest, layout(SITE_M, LOAD_M), BAND_HZ)

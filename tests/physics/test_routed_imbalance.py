@@ -36,8 +36,11 @@ def routed(points_mm, *, farad=5e-12, siemens=0.0, delay=6e-9, er=4.3, lengths_m
         stub_line=LineConstants(*np.ones((5, 1))),
     )
     gap_m = None if gap is None else np.full(count, gap)
+    strip_m = None if gap is None else np.full(count, 0.4 * gap)
     height = np.full(count, 2e-4 if gap is None else 0.0)
-    layout = Layout(origin[None], ends, height, np.full(count, er), np.array([0, count]), gap_m)
+    layout = Layout(
+        origin[None], ends, height, np.full(count, er), np.array([0, count]), gap_m, strip_m
+    )
     return trees, layout
 
 
@@ -201,12 +204,18 @@ def test_an_inner_trace_leaks_at_the_side_only():
     np.testing.assert_array_equal(common_mode_per_volt(*middle, BAND_HZ, SIZE_M).right, 0.0)
     leak = common_mode_per_volt(*side, BAND_HZ, SIZE_M).right
     open_side = common_mode_per_volt(*routed([(25, 98.5), (125, 98.5)]), BAND_HZ, SIZE_M).right
-    height = edge_leakage(50 * 6e-9 * SPEED, 1e-3, 0.1, 1.5e-3 - 0.15e-3)
+    height = edge_leakage(50 * 6e-9 * SPEED, 1e-3, 0.1, 1.5e-3 - 0.2e-3, 0.4e-3)
     surface = imbalance.imbalance_height(50, (6e-9 * SPEED) ** 2, 4.3, 2e-4, 0.0485, 0.1).magnetic
     low = BAND_HZ < 60e6
     ratio = leak[0, low] / open_side[0, low]
     assert np.all(ratio < 1.4 * height / surface)
     assert np.all(ratio > 0.7 * height / surface)
+
+
+def test_an_inner_trace_of_unknown_width_is_unknown():
+    trees, layout = routed([(25, 98.5), (125, 98.5)], gap=1e-3)
+    for volts in common_mode_per_volt(trees, layout._replace(strip_width_m=None), BAND_HZ, SIZE_M):
+        assert np.all(np.isnan(volts))
 
 
 def test_an_unknown_net_is_unknown_and_stays_alone():
