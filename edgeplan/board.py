@@ -25,6 +25,10 @@ from edgeplan.units import (
 )
 
 Quantity = TypeVar("Quantity")
+Duration = Annotated[Time, Field(gt=0)]
+Output = Annotated[Resistance, Field(gt=0)]
+Supply = Annotated[Voltage, Field(gt=0)]
+BoardLength = Annotated[Length, Field(gt=0)]
 
 Provenance = Literal["model", "datasheet", "measured", "bound", "assumed", "memory"]
 TimingClass = Literal[
@@ -138,7 +142,7 @@ class BoardFacts(Record):
 
     name: str
     revision: str = ""
-    size_m: tuple[Length, Length] = Field(alias="size")
+    size_m: tuple[BoardLength, BoardLength] = Field(alias="size")
     highest_internal_frequency_hz: Frequency | None = Field(
         alias="highest_internal_frequency", default=None, gt=0
     )
@@ -154,7 +158,7 @@ class EmissionTarget(Record):
     """Limit lines, margin and the level that is judged."""
 
     limits: list[str] = Field(min_length=1)
-    margin_db: Decibel = Field(alias="margin", default=6.0)
+    margin_db: Decibel = Field(alias="margin", default=6.0, ge=0)
     statistic: Literal["expected", "worst-case"] = "expected"
     limit_files: list[str] = Field(default_factory=list)
 
@@ -167,6 +171,12 @@ class Resistors(Record):
     lowest_ohm: Resistance = Field(alias="lowest", default=10.0, gt=0)
     highest_ohm: Resistance = Field(alias="highest", default=470.0, gt=0)
     tolerance: Share = Field(default=0.05, ge=0, lt=1)
+
+    @model_validator(mode="after")
+    def _lowest_is_not_above_highest(self) -> "Resistors":
+        if self.lowest_ohm > self.highest_ohm:
+            raise ValueError("lowest is above highest: no value lies between them")
+        return self
 
 
 class Columns(Record):
@@ -221,7 +231,7 @@ class Interface(Record):
     clock_net: str | None = None
     rate_hz: Frequency | None = Field(alias="rate", default=None, gt=0)
     levels: str
-    supply_v: Range[Voltage] = Field(alias="supply")
+    supply_v: Range[Supply] = Field(alias="supply")
     direction: list[Direction] = Field(default_factory=list)
     skew_s: Time = Field(alias="skew", default=0.0, ge=0)
     jitter_s: Time = Field(alias="jitter", default=0.0, ge=0)
@@ -243,12 +253,12 @@ class Setting(Record):
     """One programmable output state of a driver: resistance and edge are two knobs."""
 
     setting: str
-    resistance_ohm: Range[Resistance] | None = Field(alias="resistance", default=None)
-    resistance_up_ohm: Range[Resistance] | None = Field(alias="resistance_up", default=None)
-    resistance_down_ohm: Range[Resistance] | None = Field(alias="resistance_down", default=None)
-    edge_s: Range[Time] | None = Field(alias="edge", default=None)
-    edge_up_s: Range[Time] | None = Field(alias="edge_up", default=None)
-    edge_down_s: Range[Time] | None = Field(alias="edge_down", default=None)
+    resistance_ohm: Range[Output] | None = Field(alias="resistance", default=None)
+    resistance_up_ohm: Range[Output] | None = Field(alias="resistance_up", default=None)
+    resistance_down_ohm: Range[Output] | None = Field(alias="resistance_down", default=None)
+    edge_s: Range[Duration] | None = Field(alias="edge", default=None)
+    edge_up_s: Range[Duration] | None = Field(alias="edge_up", default=None)
+    edge_down_s: Range[Duration] | None = Field(alias="edge_down", default=None)
     edge_levels: Literal["10-90", "20-80", "30-70", "0-100"] = "10-90"
     edge_shape: Literal["trapezoid", "raised-cosine"] = "trapezoid"
     capacitance_f: Capacitance | Range[Capacitance] | None = Field(

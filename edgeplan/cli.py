@@ -195,11 +195,19 @@ def limits(limit_id: str | None, output: Path) -> int:
     return _put({output: f"{text}\n".encode()}, quiet=True)
 
 
+def _a_number(context: click.Context, parameter: click.Parameter, value: float) -> float:
+    """Refuse what compares with nothing."""
+    if value != value:
+        raise click.BadParameter("nan is not a number of ohms", context, parameter)
+    return value
+
+
 @main.command(epilog="Exit: 0 printed, 2 the file, or with --strict a part of it, is not in order.")
 @click.argument("file", type=click.Path(exists=True, path_type=Path))
 @click.option(
     "--impedance",
     type=click.FloatRange(1, 1000),
+    callback=_a_number,
     default=50.0,
     show_default=True,
     metavar="OHM",

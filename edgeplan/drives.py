@@ -2,12 +2,13 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from math import isnan, nan
+from math import isclose, isnan, nan
 
 from edgeplan.board import Driver, Range, Setting
 
 CORNERS = ("slow", "typical", "fast")
 DIRECTIONS = ("rising", "falling")
+ALIKE = 1e-6  # relative: what the arithmetic on a model's tables leaves between equal edges
 
 # 0-100 % of the waveform edge (raised cosine) and of the spectrum edge (straight ramp) for an
 # edge stated between two levels; raised cosine: t = te (1 - 2 acos(1 - 2 p)/pi) for p to 1 - p.
@@ -66,7 +67,7 @@ class SettingCorners:
 def _alike(first: Quantity, second: Quantity) -> bool:
     """Whether two quantities agree at every corner; values that nobody states agree."""
     pairs = [(first.at(corner), second.at(corner)) for corner in CORNERS]
-    return all(a == b or (isnan(a) and isnan(b)) for a, b in pairs)
+    return all(isclose(a, b, rel_tol=ALIKE) or (isnan(a) and isnan(b)) for a, b in pairs)
 
 
 def _corners(

@@ -63,6 +63,7 @@ class NetState:
     entries: tuple[tuple[str, str, float], ...]
     out_of_reach_hz: tuple[float, ...]
     measured: dict[str, Transfer]
+    surroundings: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -325,6 +326,7 @@ def _provenance(table: CheckTable, facts: NetFacts, state: NetState) -> list[str
     if table.check == "emission":
         found.append("assumed" if facts.net.side_distance_m is None else "datasheet")
         found += [transfer.provenance for transfer in state.measured.values()]
+        found += state.surroundings
     if facts.path.main_line.provenance == "stated":
         found.append("datasheet")
     return sorted(set(found))

@@ -107,10 +107,18 @@ def _with_change(spectrum: Spectrum, passive: Passive, drawn: _Source, own: _Sou
     )
 
 
+def _faster_edge(nets: Nets, state: Candidates) -> str:
+    """Edge with the shorter ramp at the fast corner; rising where both are alike."""
+    if nets.facts[0].timing == "open-drain":
+        return "falling"
+    rise_s, fall_s = (_ramp_s(nets, state, direction) for direction in ("rising", "falling"))
+    return "falling" if fall_s < rise_s else "rising"
+
+
 def _traces(nets: Nets, state: Candidates, tolerance: float, when: When) -> list[Trace]:
-    """Edges at every receiver, slow and fast corner."""
+    """Edges at every receiver, slow and fast corner; of two unlike edges the faster one."""
     facts = nets.facts[0]
-    direction = "falling" if facts.timing == "open-drain" else "rising"
+    direction = _faster_edge(nets, state)
     found = []
     for corner in ("slow", "fast"):
         source = drive(nets, state, corner, direction, tolerance)

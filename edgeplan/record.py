@@ -31,7 +31,7 @@ from edgeplan.evaluate import Bench, evaluate
 from edgeplan.names import natural_key
 from edgeplan.net_fields import INNER, kind_of, remarks
 from edgeplan.nets import Blocked, NetFacts
-from edgeplan.radiated import NONE, Passive, source_levels
+from edgeplan.radiated import NONE, Passive, Radiation, source_levels
 from edgeplan.results import (
     VERDICTS,
     ArrayChoice,
@@ -286,6 +286,7 @@ def _net_states(block: Block, state: State, bench: Bench) -> list[net_record.Net
                 },
                 entries=passive.entries,
                 out_of_reach_hz=beyond[row],
+                surroundings=_surroundings(block.nets.facts[row], bench.radiation),
                 measured={
                     part: transfer.stated
                     for part, replaced in passive.measured.items()
@@ -294,6 +295,20 @@ def _net_states(block: Block, state: State, bench: Bench) -> list[net_record.Net
             )
         )
     return found
+
+
+def _surroundings(facts: NetFacts, radiation: Radiation) -> tuple[str, ...]:
+    """Where what is known of cables and enclosure came from, as far as it acts on a net."""
+    found = set()
+    if not transfers.of_net(radiation.board, facts.net.net, "cable"):
+        filtered = (c for c in radiation.cables if c.attenuation_db or c.series_impedance_ohm)
+        found |= {cable.provenance for cable in filtered}
+    own = radiation.board.file.board
+    if own.enclosure_attenuation_db and not transfers.of_net(
+        radiation.board, facts.net.net, "trace"
+    ):
+        found.add(own.enclosure_provenance)
+    return tuple(sorted(found))
 
 
 def _out_of_reach(

@@ -255,6 +255,8 @@ def _filters(case: Case, levels: Levels, line: int) -> tuple[list[Change], list[
     """More attenuation on every cable: fixed steps, what this line needs, what all lines need."""
     if case.radiation.cable_state == NONE:
         return [], ["the board has no cables to filter"]
+    if case.radiation.passive(case.nets).measured["cable"].is_measured.any():
+        return [], ["what goes onto the cables was measured: their filters are in the transfer"]
     needed_db = _needed_db(levels)
     wanted = {float(needed_db[line]), float(needed_db.max())}
     rounded = {float(np.ceil(db / NEEDED_STEP_DB - 1e-9)) * NEEDED_STEP_DB for db in wanted}

@@ -292,6 +292,11 @@ def test_a_full_disk_behind_the_standard_output_is_no_verdict(tmp_path):
     assert done.stderr == b"error: standard output: No space left on device\n"
 
 
+def _hears_ctrl_c():
+    """Undo what a shell does to the jobs it starts in the background: they ignore Ctrl-C."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)
+
+
 def test_ctrl_c_ends_in_130_and_leaves_the_old_result(tmp_path):
     old = tmp_path / "a.csv"
     old.write_text("old")
@@ -299,6 +304,7 @@ def test_ctrl_c_ends_in_130_and_leaves_the_old_result(tmp_path):
         _command("slow", "plan", tmp_path, "-o", old),
         stdout=subprocess.PIPE,
         stderr=subprocess.PIPE,
+        preexec_fn=_hears_ctrl_c,
     )
     assert process.stderr.readline() == b"judging\n"
     process.send_signal(signal.SIGINT)

@@ -119,3 +119,13 @@ def test_a_driver_gives_its_settings_by_name_and_in_order():
         settings=[Setting(setting=n, resistance_ohm=OHMS, edge_s=1e-9) for n in ("B", "A")],
     )
     assert list(driver_corners(driver)) == ["B", "A"]
+
+
+def test_edges_that_differ_by_the_noise_of_arithmetic_are_alike():
+    plain = {"setting": "A", "resistance_ohm": 30}
+    near, apart = (
+        setting_corners(Setting(**plain, edge_up_s=1e-9, edge_down_s=1e-9 * (1 + share)))
+        for share in (1e-9, 1e-3)
+    )
+    assert near.equal_edges
+    assert not apart.equal_edges

@@ -22,9 +22,10 @@ Array = NDArray[Any]
 # nothing, little, and then fifths. Failing candidates are told apart in fiftieths.
 SHARE_STEPS = np.array([0.0, 0.015, 0.2, 0.4, 0.6, 0.8])
 EXCESS_STEP = 0.02
+WORST_SHARE = -99.0  # 40 dB over a limit; what is worse still counts as this
 # Weights keep the order of preference: a failing net outweighs every cost, a dearer kind of
 # change outweighs any number of cheaper ones on one net, and a share outweighs the value's rank.
-FAIL = 1e12
+FAIL = 1e13
 WAITS = 1e11
 COST = np.array([1e9, 1e8, 1e7, 1e6])
 SHARE = 1e3
@@ -120,7 +121,7 @@ def scores(
         board that works, since a level can still be mended elsewhere and a missed setup not.
     """
     change = candidates.cost @ COST
-    share = np.clip(np.nan_to_num(share, nan=-9.0), -9.0, 1.0)
+    share = np.clip(np.nan_to_num(share, nan=WORST_SHARE), WORST_SHARE, 1.0)
     steps = np.searchsorted(SHARE_STEPS, share, side="right")
     excess = np.round(share / EXCESS_STEP)
     rank = np.array(

@@ -168,7 +168,7 @@ def _layers(entry: Entry, names: Names) -> Iterator[Problem]:
     for piece in entry.pieces:
         if piece.layer is not None and piece.layer not in names.layers:
             hint = instead(piece.layer, names.layers)
-            yield entry.where("layer").problem(f"no layer {piece.layer!r} with copper", hint)
+            yield entry.where("layer").problem(f"no signal layer {piece.layer!r}", hint)
 
 
 def _settings(entry: Entry, name: str, names: Names) -> Iterator[Problem]:

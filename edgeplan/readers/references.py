@@ -59,17 +59,17 @@ class Names:
         """
         # a table in single brackets is told about elsewhere; its name is a name all the same
         data = {key: [value] if isinstance(value, dict) else value for key, value in data.items()}
-        copper = [
+        signals = [
             layer
             for _, layer in found(data, ("stack", EACH))
-            if isinstance(layer, dict) and layer.get("kind") != "dielectric"
+            if isinstance(layer, dict) and layer.get("kind") not in ("dielectric", "plane")
         ]
         drivers = {}
         for path, name in found(data, ("driver", EACH, "name")):
             settings = found(data, (*path[:-1], "settings", EACH, "setting"))
             drivers[str(name)] = tuple(str(setting) for _, setting in settings)
         return cls(
-            layers=[str(layer.get("layer")) for layer in copper],
+            layers=[str(layer.get("layer")) for layer in signals],
             interfaces=_texts(data, ("interface", EACH, "name")),
             drivers=drivers,
             receivers=_texts(data, ("receiver", EACH, "name")),
@@ -137,7 +137,7 @@ def problems(document: Document, names: Names, nets: Collection[str] | None) -> 
     for layer in document.data.get("impedance", {}):
         if layer not in names.layers:
             where = document.where(("impedance", layer))
-            yield where.problem(f"no layer {layer!r} with copper", instead(layer, names.layers))
+            yield where.problem(f"no signal layer {layer!r}", instead(layer, names.layers))
     yield from _ranges(document, document.data, ())
     yield from _renamed_to_nothing(document)
     if nets is not None:
@@ -179,7 +179,8 @@ def _group_names(document: Document, names: Names) -> Iterator[Problem]:
             for name in value.split() if isinstance(value, str) else ():
                 if name not in known:
                     hint = instead(name, known) if key == "layer" else or_add(key, name, known)
-                    yield document.where(path).problem(f"no {key} {name!r}", hint)
+                    what = "signal layer" if key == "layer" else key
+                    yield document.where(path).problem(f"no {what} {name!r}", hint)
 
 
 def or_add(what: str, name: str, known: Iterable[str]) -> str:

@@ -140,7 +140,7 @@ def _piece_problems(piece: _Piece, names: Names | None) -> Iterator[Problem]:
     layer = piece.values["layer"]
     if names is not None and layer not in names.layers:
         hint = instead(layer, names.layers)
-        yield piece.where("layer").problem(f"no layer {layer!r} with copper", hint)
+        yield piece.where("layer").problem(f"no signal layer {layer!r}", hint)
     if piece.values["start"] == piece.values["end"]:
         yield piece.where("end").problem(f"the piece starts and ends at {piece.values['end']!r}")
     x1, y1, x2, y2 = (piece.values.get(name, nan) for name in CORNERS)

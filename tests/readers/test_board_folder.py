@@ -37,8 +37,8 @@ FAULTS = {
         ("nets.csv", 3, 19, "no driver 'd2'"),
         ("nets.csv", 4, 27, "driver 'd1' has no setting 'WAEK'"),
         ("nets.csv", 4, 32, "no receiver 'r2'"),
-        ("nets.csv", 4, 43, "no layer 'L7'"),
-        ("routes.csv", 2, 18, "no layer 'L9'"),
+        ("nets.csv", 4, 43, "no signal layer 'L7'"),
+        ("routes.csv", 2, 18, "no signal layer 'L9'"),
         ("routes.csv", 3, 1, "no net 'CLJ'"),
     ],
     "decimal_comma": [
@@ -163,7 +163,7 @@ FAULTS = {
         ("nets.csv", 1, 79, "no such column: 'Load Pin'"),
         ("nets.csv", 2, 42, "has to be above 0"),
         ("nets.csv", 3, 42, "'NaN'"),
-        ("nets.csv", 3, 46, "no layer 'L3'"),
+        ("nets.csv", 3, 46, "no signal layer 'L3'"),
         ("nets.csv", 4, 4, "no interface 'buss'"),
         ("nets.csv", 4, 9, "'randum' is none of"),
         ("nets.csv", 4, 41, "decimal comma"),
@@ -265,3 +265,22 @@ def test_a_users_limit_table_becomes_a_line_that_the_target_may_name(tmp_path):
     assert line.id == "house"
     assert line.distance_m == 10
     assert line.bands[0].level_dbuv_per_m[0] == 40.5
+
+
+@pytest.mark.parametrize(
+    ("was", "now", "told"),
+    [
+        ('edge = {min = "', 'edge = {min = "-', "has to be above 0"),
+        ('size = ["80 mm"', 'size = ["0 mm"', "has to be above 0"),
+        ("[emission]", '[emission]\nmargin = "-6 dB"', "has to be 0 or more"),
+    ],
+)
+def test_a_value_no_board_can_have_is_refused_at_its_place(tmp_path, was, now, told):
+    shutil.copytree(SMALL, tmp_path / "b")
+    toml = tmp_path / "b" / "board.toml"
+    text = toml.read_text(encoding="utf-8")
+    assert was in text
+    toml.write_text(text.replace(was, now, 1), encoding="utf-8")
+    found = problems_of(tmp_path / "b")
+    assert any(told in problem.message for problem in found)
+    assert {problem.file for problem in found} == {"board.toml"}

@@ -45,7 +45,7 @@ def test_pieces_may_be_written_towards_the_driver():
         ("A,U1.1,b,3,L1\nA,c,U2.1,3,L1\n", "hangs together with no earlier one"),
         ("A,U1.1,b,3,L1\n", "does not touch 'U2.1'"),
         ("A,U1.1,U2.1,,L1\n", "routes.csv:2:1: error: length_mm: the cell is empty"),
-        ("A,U1.1,U2.1,3,L2\n", "no layer 'L2' with copper"),
+        ("A,U1.1,U2.1,3,L2\n", "no signal layer 'L2'"),
         ("B,U1.1,U2.1,3,L1\n", "no net 'B' in nets.csv"),
     ],
 )
