@@ -272,7 +272,7 @@ def test_a_users_limit_table_becomes_a_line_that_the_target_may_name(tmp_path):
     [
         ('edge = {min = "', 'edge = {min = "-', "has to be above 0"),
         ('size = ["80 mm"', 'size = ["0 mm"', "has to be above 0"),
-        ("[emission]", '[emission]\nmargin = "-6 dB"', "has to be 0 or more"),
+        ("[emission]", '[emission]\nmargin = "-6 dB"', "has to be at least 0"),
     ],
 )
 def test_a_value_no_board_can_have_is_refused_at_its_place(tmp_path, was, now, told):
