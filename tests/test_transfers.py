@@ -10,6 +10,7 @@ from build import bench_of, board, clock, driver, nets_of, receiver, setting
 from edgeplan import plan, transfers, verdicts
 from edgeplan.board import MeasuredTransfer, Transfer
 from edgeplan.candidates import list_drawn
+from edgeplan.choice import remedies
 from edgeplan.emission import cable as cable_part
 from edgeplan.evaluate import evaluate
 from edgeplan.net_fields import fields_per_volt
@@ -258,3 +259,15 @@ def test_the_record_names_the_transfer_its_error_its_provenance_and_its_hash(run
     assert check.error.high == pytest.approx(2.0)
     assert "measured" in check.provenance
     assert {"LAMP_CLK_cable.csv", "LAMP_CLK_trace.csv"} <= {i.path for i in own.inputs}
+
+
+def test_a_remedy_asks_less_of_the_transfer_as_filters_are_in_it():
+    def listed(level_db):
+        b = the_board(measured(rows=tuple((f, level_db) for f, _ in FLAT)))
+        nets = nets_of(b)
+        return nets, list_drawn(nets), bench_of(b)
+
+    (found,) = remedies.cable_filter(*listed(-20.0))
+    assert "dB less in the measured transfer of its cables" in found.text
+    for less_db, passes in ((found.amount, True), (found.amount - 0.2, False)):
+        assert evaluate(*listed(-20.0 - less_db)).passes[0, 0] == passes

@@ -91,7 +91,8 @@ def cable_filter(nets: Nets, candidates: Candidates, bench: Bench) -> list[Remed
     enclosure_db = _enclosure_db(parts)
     needed, line = _needed_db(parts, enclosure_db)
     chosen = np.argmin(np.where(only_emission, needed + enclosure_db, np.inf), axis=1)
-    frequency_hz = bench.radiation.passive(nets).lines.frequency_hz
+    passive = bench.radiation.passive(nets)
+    frequency_hz, measured = passive.lines.frequency_hz, passive.measured["cable"].is_measured
     return [
         _filter(
             _beside(nets, candidates, i, int(k)),
@@ -100,6 +101,7 @@ def cable_filter(nets: Nets, candidates: Candidates, bench: Bench) -> list[Remed
                 enclosure_db=float(enclosure_db[i, k]),
                 frequency_hz=float(frequency_hz[i, line[i, k]]),
                 closes_db=float(20 * np.log10(parts.over[i, k].max())),
+                measured=bool(measured[i]),
             ),
         )
         if only_emission[i, k]
@@ -119,12 +121,16 @@ class _Parts:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _Size:
-    """What cables and enclosure have to give, where it is set, and what it closes."""
+    """What cables and enclosure have to give, where it is set, and what it closes.
+
+    Where the part of the cables is ``measured``, their filters are in the measurement.
+    """
 
     cable_db: float
     enclosure_db: float
     frequency_hz: float
     closes_db: float
+    measured: bool
 
 
 NOTHING = Remedy(
@@ -181,7 +187,10 @@ def _rounded_up(amount_db: float) -> float:
 def _filter(beside: str, size: _Size) -> Remedy:
     """A filter on every cable, with an enclosure where the trace alone is over budget."""
     amount, enclosure_db = _rounded_up(size.cable_db), _rounded_up(size.enclosure_db)
-    own = f"{amount:.1f} dB more on every cable (set by {size.frequency_hz / 1e6:.0f} MHz)"
+    where = (
+        "less in the measured transfer of its cables" if size.measured else "more on every cable"
+    )
+    own = f"{amount:.1f} dB {where} (set by {size.frequency_hz / 1e6:.0f} MHz)"
     with_enclosure = size.enclosure_db > 0
     if with_enclosure:
         own += f" and {enclosure_db:.1f} dB by the enclosure (the trace alone is over budget)"

@@ -21,8 +21,8 @@ LINES = st.one_of(
 )
 
 
-def everything_of(content):
-    """Read a file and evaluate all of it."""
+def assert_it_is_read(content):
+    """Read a file, evaluate and render all of it; what is wrong has a line."""
     reading = ibis.read(content, "any.ibs")
     assert all(p.row >= 1 for p in (*reading.errors, *reading.notes))
     part = reading.models.components[0] if reading.models.components else None
@@ -35,13 +35,13 @@ def everything_of(content):
 @settings(max_examples=150, deadline=None, derandomize=True)
 @given(st.binary(max_size=400))
 def test_any_bytes_are_read(content):
-    everything_of(content)
+    assert_it_is_read(content)
 
 
 @settings(max_examples=150, deadline=None, derandomize=True)
 @given(st.lists(LINES, max_size=60), st.sampled_from(["\n", "\r", "\r\n"]))
 def test_lines_in_any_order_are_read(lines, end):
-    everything_of(end.join(lines).encode("latin-1"))
+    assert_it_is_read(end.join(lines).encode("latin-1"))
 
 
 @settings(
@@ -55,4 +55,4 @@ def test_a_regular_file_spoilt_in_places_is_read(data):
         words = lines[at].split() or [""]
         words[data.draw(st.integers(0, len(words) - 1))] = data.draw(WORDS)
         lines[at] = data.draw(st.sampled_from([" ".join(words), "", lines[at] * 2]))
-    everything_of("\n".join(lines).encode("latin-1"))
+    assert_it_is_read("\n".join(lines).encode("latin-1"))
